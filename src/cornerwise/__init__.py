@@ -1,0 +1,1 @@
+"""Interaction energies from charge-voltage data and double-mutant cycles."""

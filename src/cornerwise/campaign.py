@@ -1,0 +1,155 @@
+"""What the user brought, validated and frozen: curves, charges, constructs, settings, the campaign."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, field
+
+import numpy as np
+from numpy.typing import NDArray
+
+from .errors import Origin
+from .mutations import Cycle, CycleRequest, Mutation
+from .units import EnergyUnit, convert_energy
+
+FloatArray = NDArray[np.float64]
+
+
+@dataclass(frozen=True, kw_only=True, slots=True, eq=False)
+class Curve:
+    """One cell's charge-voltage (Q-V) curve, points in rising voltage."""
+
+    construct: str
+    cell: str
+    batch: str | None = None
+    voltage_mv: FloatArray  # (n_points,), strictly rising
+    charge: FloatArray  # (n_points,), the cell's own scale and offset
+    charge_unit: str = ""  # "fC", "pC", "nC", "e0" or "" for an arbitrary scale
+    holding_mv: float | None = None
+    phase: str | None = None  # "on", "off" or not stated
+    origin: Origin = field(default_factory=Origin)
+
+
+@dataclass(frozen=True, kw_only=True, slots=True)
+class MedianSummary:
+    """Median voltage of a construct known only as mean, standard error and number of cells."""
+
+    construct: str
+    median_mv: float
+    sem_mv: float
+    n: int
+    origin: Origin = field(default_factory=Origin)
+
+
+@dataclass(frozen=True, kw_only=True, slots=True)
+class ChargeReplicate:
+    """Total gating charge per channel measured in one cell."""
+
+    construct: str
+    cell: str
+    batch: str | None = None
+    charge_e0: float
+    method: str | None = None
+    origin: Origin = field(default_factory=Origin)
+
+
+@dataclass(frozen=True, kw_only=True, slots=True)
+class ChargeSummary:
+    """Total gating charge per channel known only as mean, standard error and number of values."""
+
+    construct: str
+    charge_e0: float
+    sem_e0: float
+    n: int
+    method: str | None = None
+    origin: Origin = field(default_factory=Origin)
+
+
+@dataclass(frozen=True, kw_only=True, slots=True)
+class StatedCharge:
+    """One total charge for every construct, with its standard uncertainty."""
+
+    value_e0: float
+    sem_e0: float
+
+
+ChargePolicy = StatedCharge | str  # "measured", "wild-type" or a stated value
+
+
+@dataclass(frozen=True, kw_only=True, slots=True)
+class Construct:
+    """One construct with all that was measured on it."""
+
+    label: str
+    mutations: tuple[Mutation, ...]  # against the wild type, background removed, in residue order
+    curves: tuple[Curve, ...] = ()
+    median: MedianSummary | None = None  # never together with curves
+    charge_replicates: tuple[ChargeReplicate, ...] = ()
+    charge: ChargeSummary | None = None  # never together with replicates
+
+
+@dataclass(frozen=True, kw_only=True, slots=True)
+class Settings:
+    """The choices in ``campaign.toml``; every one but `wild_type` has a default."""
+
+    wild_type: str
+    title: str = ""
+    temperature_c: float = 22.0
+    subunits: int = 1
+    energy_unit: EnergyUnit = "kcal/mol"
+    confidence: float = 0.95
+    replicates: int = 10_000
+    seed: int = 1
+    threshold: float | None = None  # energy_unit; None: 1 kcal/mol
+    shortcut_tolerance: float | None = None  # energy_unit; None: 0.5 kcal/mol
+    charge_margin: float = 0.10  # fraction of the wild type's total charge
+    voltage_offset_mv: float = 0.0  # standard uncertainty of an offset common to all curves
+    charge: ChargePolicy = "measured"
+    defaulted: tuple[str, ...] = ()  # keys of campaign.toml the user left out
+
+    @property
+    def energy_threshold(self) -> float:
+        """Size an interaction must exceed to be called coupled, in `energy_unit`."""
+        return self._in_unit(self.threshold, kcal_per_mol=1.0)
+
+    @property
+    def energy_tolerance(self) -> float:
+        """Largest shortcut bias that is acceptable, in `energy_unit`."""
+        return self._in_unit(self.shortcut_tolerance, kcal_per_mol=0.5)
+
+    def _in_unit(self, stated: float | None, *, kcal_per_mol: float) -> float:
+        if stated is not None:
+            return stated
+        return convert_energy(kcal_per_mol, "kcal/mol", self.energy_unit, self.temperature_c)
+
+
+@dataclass(frozen=True, kw_only=True, slots=True)
+class InputFile:
+    """A file that was read, for the record in ``result.json``."""
+
+    name: str
+    sha256: str
+
+
+@dataclass(frozen=True, kw_only=True, slots=True)
+class Campaign:
+    """Everything that was read, checked and put together; the input of every computation."""
+
+    settings: Settings
+    constructs: tuple[Construct, ...]  # the wild type first, then in residue order
+    cycles: tuple[Cycle, ...]
+    requests: tuple[CycleRequest, ...] = ()  # the [[cycle]] entries, empty when cycles were found
+    background: tuple[Mutation, ...] = ()  # carried by every construct
+    inputs: tuple[InputFile, ...] = ()
+
+    def construct(self, label: str) -> Construct:
+        """Return the construct called `label`.
+
+        Raises
+        ------
+        KeyError
+            If there is none.
+        """
+        for construct in self.constructs:
+            if construct.label == label:
+                return construct
+        raise KeyError(label)

@@ -1,0 +1,43 @@
+"""Doubt as data: the flags a cell, a construct or a cycle can carry, each a sentence with its number."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Literal, get_args
+
+FlagCode = Literal[
+    "unsaturated-low",
+    "unsaturated-high",
+    "sloping-plateau",
+    "not-monotonic",
+    "coarse-steps",
+    "noisy",
+    "midpoint-misleads",
+    "few-cells",
+    "single-batch",
+    "charge-shift",
+    "charge-nonadditive",
+    "charge-assumed",
+    "mixed-ranges",
+    "mixed-protocol",
+    "outlying-cell",
+]
+
+FLAG_CODES: tuple[FlagCode, ...] = get_args(FlagCode)
+
+
+@dataclass(frozen=True, kw_only=True, slots=True)
+class Flag:
+    """One doubt about one subject."""
+
+    code: FlagCode
+    subject: str  # "construct/cell", a construct's label or a cycle's name
+    message: str  # one sentence for the user: the number that raised it and what to do
+    value: float | None = None  # the number that raised it, in the unit the message names
+    limit: float | None = None  # the limit it crossed, same unit
+
+
+def codes(flags: tuple[Flag, ...]) -> tuple[FlagCode, ...]:
+    """Codes of `flags`, each once, in the fixed order of `FLAG_CODES`."""
+    present = {flag.code for flag in flags}
+    return tuple(code for code in FLAG_CODES if code in present)
