@@ -1,0 +1,323 @@
+"""Independent sources of error, and quantities that depend on them with known sensitivities.
+
+Everything uncertain in a campaign is one of a list of independent sources: the median voltages of a
+construct, its charges, both together when they come from the same cells, a charge shared by all, an offset
+of the voltage. A derived quantity carries its sensitivity to each component of each source, so whatever
+two quantities share is counted once, in one cycle and across all of them.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Iterable, Mapping, Sequence
+from dataclasses import dataclass, field
+from typing import Literal, NamedTuple, Protocol
+
+import numpy as np
+from numpy.typing import NDArray
+
+from .intervals import Interval, t_interval, t_p_value, welch_satterthwaite
+from .measurements import Sample, Summary
+from .streams import named_stream
+
+FloatArray = NDArray[np.float64]
+BoolArray = NDArray[np.bool_]
+
+
+class Component(NamedTuple):
+    """One uncertain number: what it is and of which construct ('' for a common one)."""
+
+    kind: Literal["median", "truncation", "charge", "charge x median", "stated charge", "voltage offset"]
+    construct: str = ""
+
+
+class Spread(NamedTuple):
+    """A squared standard uncertainty and its degrees of freedom."""
+
+    variance: float
+    dof: float
+
+
+@dataclass(frozen=True, kw_only=True, slots=True)
+class Derived:
+    """A number with its sensitivity to every component it depends on."""
+
+    value: float
+    sensitivities: Mapping[Component, float]
+
+    def interval(self, ledger: Ledger, confidence: float) -> Interval:
+        """Propagated interval at `confidence`."""
+        spread = ledger.spread(self)
+        return t_interval(self.value, math.sqrt(spread.variance), spread.dof, confidence)
+
+    def p_value(self, ledger: Ledger) -> float:
+        """Two-sided p value against 0."""
+        spread = ledger.spread(self)
+        return t_p_value(self.value, math.sqrt(spread.variance), spread.dof)
+
+
+def linear(terms: Iterable[tuple[float, Derived]]) -> Derived:
+    """Weighted sum of derived quantities; what they share is added before it is squared."""
+    value, sensitivities = 0.0, dict[Component, float]()
+    for weight, term in terms:
+        value += weight * term.value
+        for component, sensitivity in term.sensitivities.items():
+            sensitivities[component] = sensitivities.get(component, 0.0) + weight * sensitivity
+    return Derived(value=value, sensitivities=sensitivities)
+
+
+def product(a: Derived, b: Derived) -> Derived:
+    """Product of two derived quantities, to first order in their errors."""
+    return Derived(value=a.value * b.value, sensitivities=linear([(b.value, a), (a.value, b)]).sensitivities)
+
+
+def log_ratio(a: Derived, b: Derived) -> Derived:
+    """Natural logarithm of a / b for positive numbers, to first order in their errors."""
+    sensitivities = linear([(1 / a.value, a), (-1 / b.value, b)]).sensitivities
+    return Derived(value=math.log(a.value / b.value), sensitivities=sensitivities)
+
+
+class Source(Protocol):
+    """What every source of error can say of itself."""
+
+    @property
+    def name(self) -> str:
+        """Words for the budget."""
+        ...
+
+    @property
+    def components(self) -> tuple[Component, ...]:
+        """The numbers it determines, each in no other source."""
+        ...
+
+    def spread(self, gradient: Sequence[float]) -> Spread:
+        """Squared standard uncertainty of ``sum(gradient * components)``."""
+        ...
+
+    def draws(self, rng: np.random.Generator, replicates: int) -> FloatArray:
+        """Joint replicates of the components' means, shape (n_components, replicates)."""
+        ...
+
+
+@dataclass(frozen=True, kw_only=True, slots=True)
+class StatedSource:
+    """One number known as a mean, a standard uncertainty and degrees of freedom."""
+
+    name: str
+    component: Component
+    mean: float
+    std_uncertainty: float
+    dof: float = math.inf
+
+    @property
+    def components(self) -> tuple[Component, ...]:
+        """The one number."""
+        return (self.component,)
+
+    def spread(self, gradient: Sequence[float]) -> Spread:
+        """Squared standard uncertainty of ``gradient[0]`` times the number."""
+        return Spread((gradient[0] * self.std_uncertainty) ** 2, self.dof)
+
+    def draws(self, rng: np.random.Generator, replicates: int) -> FloatArray:
+        """Normal replicates, shape (1, replicates)."""
+        return (self.mean + self.std_uncertainty * rng.standard_normal(replicates))[np.newaxis]
+
+
+@dataclass(frozen=True, kw_only=True, slots=True, eq=False)
+class CellSource:
+    """The cells of one construct: independent of each other, one or more numbers from each.
+
+    A cell need not show every number; each component's mean is over the cells that show it, and two
+    components covary as the cells that show both of them do.
+    """
+
+    name: str
+    components: tuple[Component, ...]
+    values: FloatArray  # (n_components, n_cells), NaN where a cell does not show a number
+    shown: BoolArray = field(init=False)  # (n_components, n_cells)
+    deviations: FloatArray = field(init=False)  # from the component's mean; 0 where not shown
+    counts: FloatArray = field(init=False)  # (n_components,) cells that show it
+    covariance: FloatArray = field(init=False)  # (n_components, n_components), of one cell's numbers
+
+    def __post_init__(self) -> None:
+        shown = np.isfinite(self.values)
+        counts = shown.sum(axis=1).astype(float)
+        filled = np.where(shown, self.values, 0.0)
+        deviations = np.where(shown, filled - (filled.sum(axis=1) / counts)[:, np.newaxis], 0.0)
+        object.__setattr__(self, "shown", shown)
+        object.__setattr__(self, "counts", counts)
+        object.__setattr__(self, "deviations", deviations)
+        object.__setattr__(self, "covariance", _pairwise_covariance(filled, shown))
+
+    @property
+    def _fully_shared(self) -> bool:
+        return bool((self.shown == self.shown[0]).all())
+
+    def spread(self, gradient: Sequence[float]) -> Spread:
+        """Squared standard uncertainty of the weighted sum of means, and its degrees of freedom.
+
+        Notes
+        -----
+        When every cell shows every number the sum is formed cell by cell, with n - 1 degrees of freedom.
+        Otherwise the variance is an estimate from three moments (two variances and the covariance of the
+        shared cells) and its degrees of freedom are ``2 E**2 / Var``, with the variance of the estimate
+        for normal cells from the traces of the centring matrices.
+        """
+        weights = np.asarray(gradient, dtype=float)
+        active = np.flatnonzero(weights != 0)
+        if not len(active):
+            return Spread(0.0, math.inf)
+        if self._fully_shared or len(active) == 1:
+            n = float(self.counts[active[0]])
+            per_cell = np.sum(weights[:, np.newaxis] * self.deviations, axis=0)
+            return Spread(float(np.sum(per_cell**2)) / (n - 1) / n if n > 1 else math.nan, n - 1)
+        return self._partly_shared(weights)
+
+    def _partly_shared(self, weights: FloatArray) -> Spread:
+        i, j = 0, 1
+        n_i, n_j = self.counts
+        if min(n_i, n_j) < 2:
+            return Spread(math.nan, math.nan)
+        both = float((self.shown[i] & self.shown[j]).sum())
+        a, b = weights[i] / n_i, weights[j] / n_j
+        var_i, var_j, cov = self.covariance[i, i], self.covariance[j, j], self.covariance[i, j]
+        variance = a * a * n_i * var_i + b * b * n_j * var_j + 2 * a * b * both * cov
+        p, q, r = a * a * n_i, b * b * n_j, 2 * a * b * both
+        trace = both * (1 - 1 / n_i) * (1 - 1 / n_j) + both * (both - 1) / (n_i * n_j)
+        uncertainty = 2 * p * p * var_i**2 / (n_i - 1) + 2 * q * q * var_j**2 / (n_j - 1)
+        uncertainty += 4 * p * q * cov * cov * trace / ((n_i - 1) * (n_j - 1))
+        if both >= 2:
+            uncertainty += r * r * (var_i * var_j + cov * cov) / (both - 1)
+            uncertainty += 4 * p * r * var_i * cov / (n_i - 1) + 4 * q * r * var_j * cov / (n_j - 1)
+        dof = 2 * variance * variance / uncertainty if uncertainty > 0 else math.inf
+        return Spread(max(variance, 0.0), float(np.clip(dof, 1.0, n_i + n_j - 2)))
+
+    def draws(self, rng: np.random.Generator, replicates: int) -> FloatArray:
+        """Bootstrap replicates of the means: cells resampled, deviations times sqrt(n / (n - 1)).
+
+        Returns
+        -------
+        ndarray, shape (n_components, replicates)
+            A component shown by one cell or none does not vary.
+        """
+        n_cells = self.values.shape[1]
+        picked = rng.integers(0, n_cells, size=(n_cells, replicates))
+        means = np.array([np.mean(row[shown]) for row, shown in zip(self.values, self.shown, strict=True)])
+        sums = np.zeros((len(self.components), replicates))
+        for chosen in picked:  # cell by cell, so that the sum never depends on a linear-algebra library
+            sums += self.deviations[:, chosen]
+        inflate = np.sqrt(self.counts / np.maximum(self.counts - 1, 1)) / self.counts
+        return means[:, np.newaxis] + inflate[:, np.newaxis] * sums
+
+
+def _pairwise_covariance(filled: FloatArray, shown: BoolArray) -> FloatArray:
+    """Covariance of each two rows over the cells that show both; 0 where fewer than two do."""
+    size = len(filled)
+    covariance = np.zeros((size, size))
+    for i in range(size):
+        for j in range(i + 1):
+            both = shown[i] & shown[j]
+            if both.sum() >= 2:
+                x, y = filled[i, both], filled[j, both]
+                covariance[i, j] = np.sum((x - x.mean()) * (y - y.mean())) / (both.sum() - 1)
+                covariance[j, i] = covariance[i, j]
+    # A covariance seen in few shared cells may exceed what the two variances allow.
+    deviation = np.sqrt(np.diag(covariance))
+    limit: FloatArray = np.outer(deviation, deviation)
+    clipped: FloatArray = np.minimum(np.maximum(covariance, -limit), limit)
+    return clipped
+
+
+def cell_source(name: str, samples: Mapping[Component, Sample]) -> CellSource:
+    """One source from samples whose cells may be the same, partly the same or different.
+
+    Parameters
+    ----------
+    name : str
+        Words for the budget.
+    samples : mapping of Component to Sample
+        Cells of the same name are the same cell.
+    """
+    cells = sorted({cell for sample in samples.values() for cell in sample.cells})
+    place = {cell: index for index, cell in enumerate(cells)}
+    values = np.full((len(samples), len(cells)), np.nan)
+    for row, sample in enumerate(samples.values()):
+        values[row, [place[cell] for cell in sample.cells]] = sample.values
+    return CellSource(name=name, components=tuple(samples), values=values)
+
+
+def summary_source(name: str, component: Component, summary: Summary) -> StatedSource:
+    """One source from a mean, a standard error and a number of cells."""
+    return StatedSource(
+        name=name, component=component, mean=summary.mean, std_uncertainty=summary.sem, dof=summary.n - 1
+    )
+
+
+class Contribution(NamedTuple):
+    """What one source adds to a standard uncertainty."""
+
+    source: str
+    contribution: float  # the standard uncertainty it would cause alone, in the unit of the quantity
+    share: float  # of the variance, 0 to 1
+
+
+class Ledger:
+    """All sources of a campaign; knows where each component belongs.
+
+    Parameters
+    ----------
+    sources : sequence of Source
+        Independent of each other.
+    seed : int
+        Of the campaign; each source draws from a stream named after its first component.
+    replicates : int
+        Number of joint replicates.
+    """
+
+    def __init__(self, sources: Sequence[Source], *, seed: int, replicates: int) -> None:
+        self.sources = tuple(sources)
+        self.replicates = replicates
+        self._seed = seed
+        self._place = {
+            component: (number, column)
+            for number, source in enumerate(self.sources)
+            for column, component in enumerate(source.components)
+        }
+        self._draws: dict[int, FloatArray] = {}
+
+    def __contains__(self, component: Component) -> bool:
+        return component in self._place
+
+    def _spreads(self, derived: Derived) -> list[tuple[int, Spread]]:
+        gradients: dict[int, list[float]] = {}
+        for component, sensitivity in derived.sensitivities.items():
+            number, column = self._place[component]
+            gradient = gradients.setdefault(number, [0.0] * len(self.sources[number].components))
+            gradient[column] += sensitivity
+        return [(number, self.sources[number].spread(gradients[number])) for number in sorted(gradients)]
+
+    def spread(self, derived: Derived) -> Spread:
+        """Squared standard uncertainty and Welch-Satterthwaite degrees of freedom of `derived`."""
+        spreads = [spread for _, spread in self._spreads(derived)]
+        variances, dofs = [s.variance for s in spreads], [s.dof for s in spreads]
+        return Spread(math.fsum(variances), welch_satterthwaite(variances, dofs))
+
+    def budget(self, derived: Derived) -> tuple[Contribution, ...]:
+        """Every source's part in the uncertainty of `derived`, the largest first."""
+        spreads = [(self.sources[number].name, spread.variance) for number, spread in self._spreads(derived)]
+        total = math.fsum(variance for _, variance in spreads)
+        parts = [
+            Contribution(name, math.sqrt(variance), variance / total if total > 0 else 0.0)
+            for name, variance in spreads
+        ]
+        return tuple(sorted(parts, key=lambda part: (-part.contribution, part.source)))
+
+    def draws(self, component: Component) -> FloatArray:
+        """Replicates of one component, shape (replicates,), jointly with all others."""
+        number, column = self._place[component]
+        if number not in self._draws:
+            source = self.sources[number]
+            kind, construct = source.components[0]
+            rng = named_stream(self._seed, f"{kind}|{construct}")
+            self._draws[number] = source.draws(rng, self.replicates)
+        return self._draws[number][column]
