@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterable
 from dataclasses import dataclass
 from typing import Literal, get_args
 
@@ -32,12 +33,13 @@ class Flag:
 
     code: FlagCode
     subject: str  # "construct/cell", a construct's label or a cycle's name
+    construct: str | None = None  # the construct it is about; None for a cycle
     message: str  # one sentence for the user: the number that raised it and what to do
     value: float | None = None  # the number that raised it, in the unit the message names
     limit: float | None = None  # the limit it crossed, same unit
 
 
-def codes(flags: tuple[Flag, ...]) -> tuple[FlagCode, ...]:
-    """Codes of `flags`, each once, in the fixed order of `FLAG_CODES`."""
-    present = {flag.code for flag in flags}
+def codes(flags: Iterable[Flag], also: Iterable[str] = ()) -> tuple[FlagCode, ...]:
+    """Codes of `flags` and those in `also`, each once, in the fixed order of `FLAG_CODES`."""
+    present = {flag.code for flag in flags} | set(also)
     return tuple(code for code in FLAG_CODES if code in present)

@@ -77,7 +77,9 @@ def _few_cells(label: str, what: str, n: int) -> list[Flag]:
     )
     if n < 2:
         message = f"{what} of {label} rest on {n} usable cells; an uncertainty needs 2 or more"
-    return [Flag(code="few-cells", subject=label, message=message, value=n, limit=FEWEST_CELLS)]
+    return [
+        Flag(code="few-cells", subject=label, construct=label, message=message, value=n, limit=FEWEST_CELLS)
+    ]
 
 
 def _single_batch(construct: Construct) -> list[Flag]:
@@ -88,7 +90,8 @@ def _single_batch(construct: Construct) -> list[Flag]:
         f"all cells of {construct.label} come from batch {batches.pop()}: differences between batches "
         "cannot be told from the mutation; record the construct in a second batch"
     )
-    return [Flag(code="single-batch", subject=construct.label, message=message, value=1, limit=2)]
+    label = construct.label
+    return [Flag(code="single-batch", subject=label, construct=label, message=message, value=1, limit=2)]
 
 
 def _median(construct: Construct, readings: tuple[CellReading, ...]) -> Sample | Summary:

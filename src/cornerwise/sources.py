@@ -202,7 +202,9 @@ class CellSource:
         """
         n_cells = self.values.shape[1]
         picked = rng.integers(0, n_cells, size=(n_cells, replicates))
-        means = np.array([np.mean(row[shown]) for row, shown in zip(self.values, self.shown, strict=True)])
+        means: FloatArray = np.array(
+            [np.mean(row[shown]) for row, shown in zip(self.values, self.shown, strict=True)]
+        )
         sums = np.zeros((len(self.components), replicates))
         for chosen in picked:  # cell by cell, so that the sum never depends on a linear-algebra library
             sums += self.deviations[:, chosen]
@@ -213,7 +215,7 @@ class CellSource:
 def _pairwise_covariance(filled: FloatArray, shown: BoolArray) -> FloatArray:
     """Covariance of each two rows over the cells that show both; 0 where fewer than two do."""
     size = len(filled)
-    covariance = np.zeros((size, size))
+    covariance: FloatArray = np.zeros((size, size))
     for i in range(size):
         for j in range(i + 1):
             both = shown[i] & shown[j]
@@ -320,4 +322,5 @@ class Ledger:
             kind, construct = source.components[0]
             rng = named_stream(self._seed, f"{kind}|{construct}")
             self._draws[number] = source.draws(rng, self.replicates)
-        return self._draws[number][column]
+        drawn: FloatArray = self._draws[number][column]
+        return drawn

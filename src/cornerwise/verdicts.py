@@ -35,26 +35,24 @@ def charge_verdict(equivalence: Interval, difference: Interval, margin: float) -
     return "changed" if difference.excludes(1.0) else "unresolved"
 
 
-def shortcut_verdict(
-    corners: Sequence[ChargeVerdict], bias: Interval | None, tolerance: float
-) -> ShortcutVerdict:
+def shortcut_verdict(corners: Sequence[ChargeVerdict], bias: Interval, tolerance: float) -> ShortcutVerdict:
     """Judge whether medians alone would have given the interaction.
 
     Parameters
     ----------
     corners : sequence of {"equal", "changed", "unresolved", "assumed"}
         Charge verdicts of the mutants of the cycle.
-    bias : Interval or None
-        Interval of the shortcut's bias; None when it cannot be formed.
+    bias : Interval
+        Interval of the shortcut's bias; NaN limits when it cannot be formed.
     tolerance : float
         Largest bias that is acceptable, same unit.
     """
-    if "changed" in corners or (bias is not None and bias.outside(-tolerance, tolerance)):
+    if "changed" in corners or bias.outside(-tolerance, tolerance):
         return "invalid"
     if "assumed" in corners:
         return "untested"
     shown_equal = all(verdict == "equal" for verdict in corners)
-    if shown_equal and bias is not None and bias.inside(-tolerance, tolerance):
+    if shown_equal and bias.inside(-tolerance, tolerance):
         return "valid"
     return "unresolved"
 
@@ -68,13 +66,24 @@ def interaction_verdict(interval: Interval, threshold: float) -> InteractionVerd
     return "uncoupled" if interval.inside(-threshold, threshold) else "unresolved"
 
 
-def favours(interaction: float, interval: Interval) -> Favours | None:
+def favours(interaction: float, interval: Interval, order: int) -> Favours | None:
     """State the native interaction favours; None while its sign is not known.
+
+    Parameters
+    ----------
+    interaction : float
+        Interaction energy of the cycle, any unit.
+    interval : Interval
+        Its interval, same unit.
+    order : int
+        Number of mutations of the cycle.
 
     Notes
     -----
-    Positive: the resting state over the activated one. A difference between two states, never a contact.
+    The energy e that the native residues' joint interaction adds to the wild type's activation free
+    energy enters the cycle with the wild type's sign: I = (-1)**order e. A positive e favours the resting
+    state. It is a difference between two states, never a contact.
     """
     if not interval.excludes(0.0):
         return None
-    return "resting" if interaction > 0 else "activated"
+    return "resting" if interaction * (-1) ** order > 0 else "activated"

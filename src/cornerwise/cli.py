@@ -1,0 +1,171 @@
+"""The command line: each command reads, calls one public function, renders and exits."""
+
+from __future__ import annotations
+
+import sys
+import time
+from collections.abc import Callable
+from pathlib import Path
+from typing import Annotated
+
+import typer
+from typer.core import TyperGroup
+
+from .errors import CornerwiseError, DataRefused
+
+_PATIENCE_S = 1.0
+
+
+class _Boundary(TyperGroup):
+    """The one place where an error becomes a message and an exit code."""
+
+    def invoke(self, ctx: object) -> object:
+        try:
+            return super().invoke(ctx)  # type: ignore[arg-type]
+        except CornerwiseError as error:
+            _report(error)
+            raise SystemExit(error.exit_code) from None
+        except BrokenPipeError:  # the reader of a pipe went away; nothing is wrong
+            sys.stderr.close()
+            raise SystemExit(0) from None
+
+
+app = typer.Typer(
+    cls=_Boundary,
+    no_args_is_help=True,
+    pretty_exceptions_enable=False,
+    rich_markup_mode=None,
+    context_settings={"help_option_names": ["-h", "--help"]},
+)
+
+_Campaign = Annotated[Path, typer.Argument(metavar="PATH", help="Campaign folder, or one .xlsx workbook.")]
+_Json = Annotated[bool, typer.Option("--json", help="Print JSON on stdout instead of a table.")]
+
+
+def _report(error: CornerwiseError) -> None:
+    if isinstance(error, DataRefused):
+        from .render.problems import print_problems
+
+        print_problems(error, sys.stderr)
+    else:
+        print(f"cornerwise: {error}", file=sys.stderr)
+
+
+def _progress() -> Callable[[str, int, int], None]:
+    """Report to stderr once the work has taken longer than a second, and then each further second."""
+    last = time.monotonic()
+
+    def report(step: str, done: int, total: int) -> None:
+        nonlocal last
+        if time.monotonic() - last >= _PATIENCE_S:
+            last = time.monotonic()
+            print(f"cornerwise: {step}, {done} of {total}", file=sys.stderr, flush=True)
+
+    return report
+
+
+def _version(asked: bool) -> None:
+    if asked:
+        from importlib.metadata import version
+
+        print(f"cornerwise {version('cornerwise')}")
+        raise typer.Exit
+
+
+@app.callback()
+def _cornerwise(
+    _: Annotated[
+        bool, typer.Option("--version", callback=_version, is_eager=True, help="Print the version and exit.")
+    ] = False,
+) -> None:
+    """Interaction energies from charge-voltage data and double-mutant cycles.
+
+    For example:
+
+      cornerwise new trial                     a filled-in campaign to start from
+
+      cornerwise check trial                   read and judge the data
+
+      cornerwise couple trial --out results    the coupling table and its files
+
+    Exit codes: 0 done, 1 a fault of the program, 2 a wrong call, 3 the data were refused.
+    """
+
+
+@app.command()
+def new(
+    folder: Annotated[Path, typer.Argument(metavar="DIR", help="New or empty folder.")],
+) -> None:
+    """Write a small campaign of invented data to overwrite with your own.
+
+    For example:
+
+      cornerwise new trial && cornerwise couple trial
+    """
+    from .starter import new_campaign
+
+    for name in new_campaign(folder):
+        print(folder / name)
+
+
+@app.command()
+def check(path: _Campaign, as_json: _Json = False) -> None:
+    """Read and judge the data; compute no energy and write nothing.
+
+    For example:
+
+      cornerwise check trial
+
+      cornerwise check trial.xlsx --json
+    """
+    from . import read, survey
+    from .render.machine import survey_json
+    from .render.terminal import print_survey
+
+    found = survey(read(path), _progress())
+    if as_json:
+        print(survey_json(found), end="")
+    else:
+        print_survey(found, sys.stdout)
+
+
+@app.command()
+def couple(
+    path: _Campaign,
+    out: Annotated[
+        Path | None, typer.Option(metavar="DIR", help="Write result.json and the CSV tables into DIR.")
+    ] = None,
+    force: Annotated[bool, typer.Option("--force", help="Replace DIR as a whole if it exists.")] = False,
+    as_json: _Json = False,
+) -> None:
+    """Compute every cycle's interaction energy, print the coupling table and write its files.
+
+    For example:
+
+      cornerwise couple trial
+
+      cornerwise couple trial --out results --force
+
+      cornerwise couple trial.xlsx --json > result.json
+    """
+    from . import couple as run
+    from . import read
+    from .render.files import check_destination, result_files, write_folder
+    from .render.terminal import print_result
+
+    if out is not None:
+        check_destination(out, force=force)
+    result = run(read(path), _progress())
+    if as_json:
+        print(result.to_json(), end="")
+    else:
+        print_result(result, sys.stdout)
+    if out is not None:
+        files = result_files(result)
+        write_folder(files, out, force=force)
+        print(f"cornerwise: wrote {', '.join(files)} into {out}", file=sys.stderr)
+
+
+def main() -> None:
+    """Entry point of the ``cornerwise`` command."""
+    app()

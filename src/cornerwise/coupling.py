@@ -1,0 +1,85 @@
+"""From a campaign to a result: the one function that runs every step."""
+
+from __future__ import annotations
+
+import platform
+from collections.abc import Callable, Sequence
+from importlib.metadata import version
+
+from .campaign import Campaign, Settings, StatedCharge
+from .construct_rows import cell_rows, construct_row
+from .energies import EnergyBook
+from .interaction_rows import Corners, interaction_rows
+from .measurements import Measurement, measure
+from .result import BudgetRow, CellRow, ConstructRow, InteractionRow, Result, Table
+
+_RECORDED_VERSIONS = ("cornerwise", "numpy", "scipy", "statsmodels", "pandas")
+
+Progress = Callable[[str, int, int], None]
+
+
+def _versions() -> dict[str, str]:
+    return {"python": platform.python_version(), **{name: version(name) for name in _RECORDED_VERSIONS}}
+
+
+def _notes(measurements: Sequence[Measurement], settings: Settings) -> tuple[str, ...]:
+    """Decisions that follow from the settings and that a reader of the numbers should know of."""
+    notes = []
+    measured = [m.label for m in measurements if m.charge_e0 is not None and m.label != settings.wild_type]
+    if settings.charge != "measured" and measured:
+        shared = "the stated" if isinstance(settings.charge, StatedCharge) else "the wild type's"
+        notes.append(
+            f"energies use {shared} total charge for every construct as the settings ask; the measured "
+            f"charges of {', '.join(measured)} serve only for charge verdicts and the shortcut's bias"
+        )
+    if settings.subunits > 1:
+        notes.append(
+            f"every energy is per channel; the protein has {settings.subunits} subunits and each carries "
+            "the mutations, so an energy per subunit is that of the channel divided by "
+            f"{settings.subunits}, and it has not been divided here"
+        )
+    return tuple(notes)
+
+
+def couple(campaign: Campaign, progress: Progress | None = None) -> Result:
+    """Compute the interaction energy of every cycle with its uncertainty and verdicts.
+
+    Parameters
+    ----------
+    campaign : Campaign
+        What was read; see `cornerwise.read`.
+    progress : callable, optional
+        Called with a step's name, how much of it is done and how much there is.
+
+    Returns
+    -------
+    Result
+        Tables of interactions, constructs, cells and the uncertainty budget, with flags and settings. The
+        same campaign gives the same result to the last bit.
+    """
+
+    def step(name: str) -> Callable[[int, int], None] | None:
+        return None if progress is None else lambda done, total: progress(name, done, total)
+
+    settings = campaign.settings
+    measured = measure(campaign, step("median voltages"))
+    measurements = {measurement.label: measurement for measurement in measured}
+    book = EnergyBook(measured, settings)
+    described = [construct_row(measurement, book, measurements, settings) for measurement in measured]
+    rows = {row.construct: row for row, _ in described}
+    corners = Corners(measurements=measurements, rows=rows)
+    interactions, budget, flags = interaction_rows(
+        campaign.cycles, book, corners, settings, step("interactions")
+    )
+    return Result(
+        settings=settings,
+        background=tuple(map(str, campaign.background)),
+        interactions=Table(InteractionRow, interactions),
+        constructs=Table(ConstructRow, list(rows.values())),
+        cells=Table(CellRow, [row for measurement in measured for row in cell_rows(measurement)]),
+        budget=Table(BudgetRow, budget),
+        flags=(*(flag for _, own in described for flag in own), *flags),
+        notes=_notes(measured, settings),
+        inputs=campaign.inputs,
+        versions=_versions(),
+    )

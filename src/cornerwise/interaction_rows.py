@@ -1,0 +1,206 @@
+"""Rows of the interaction and budget tables: intervals, ranks and verdicts of every cycle."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Callable, Mapping, Sequence
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from .campaign import Settings
+from .energies import EnergyBook
+from .flags import Flag, codes
+from .interactions import Interaction, interact, interaction_draws, rank_intervals, strength_ranks
+from .intervals import (
+    Interval,
+    adjusted_p_values,
+    expanded_percentile_interval,
+    t_interval,
+    t_p_value,
+    t_quantile,
+)
+from .measurements import Measurement, protocol_flags
+from .mutations import Cycle
+from .result import BudgetRow, ConstructRow, InteractionRow, available
+from .sources import Derived
+from .verdicts import favours, interaction_verdict, shortcut_verdict
+
+FloatArray = NDArray[np.float64]
+
+_NOT_AVAILABLE = Interval(math.nan, math.nan)
+
+
+@dataclass(frozen=True, kw_only=True, slots=True)
+class Corners:
+    """What the rows of cycles need to know of their constructs."""
+
+    measurements: Mapping[str, Measurement]
+    rows: Mapping[str, ConstructRow]
+
+
+@dataclass(frozen=True, kw_only=True, slots=True, eq=False)
+class _Judged:
+    """One cycle before it is compared with the others."""
+
+    interaction: Interaction
+    std_uncertainty: float
+    dof: float
+    interval: Interval
+    boot: Interval
+    p_value: float
+    deviations: FloatArray  # of the draws from the estimate, widened to Student's t; (n_replicates,)
+
+
+def _judge(cycle: Cycle, book: EnergyBook, settings: Settings) -> _Judged:
+    interaction = interact(cycle, book, settings.wild_type)
+    value = interaction.energy.value
+    spread = book.ledger.spread(interaction.energy)
+    u, level = math.sqrt(spread.variance), settings.confidence
+    draws = interaction_draws(cycle, book)
+    stretch = t_quantile(0.5 + level / 2, spread.dof) / t_quantile(0.5 + level / 2, math.inf)
+    return _Judged(
+        interaction=interaction,
+        std_uncertainty=u,
+        dof=spread.dof,
+        interval=t_interval(value, u, spread.dof, level),
+        boot=expanded_percentile_interval(value, draws, spread.dof, level),
+        p_value=t_p_value(value, u, spread.dof),
+        deviations=stretch * (draws - value),
+    )
+
+
+def _ranks(judged: Sequence[_Judged], confidence: float) -> list[tuple[int | None, int | None, int | None]]:
+    """Rank and its limits of every cycle; None where the energy is not available."""
+    known = [i for i, one in enumerate(judged) if math.isfinite(one.std_uncertainty)]
+    ranks: list[tuple[int | None, int | None, int | None]] = [(None, None, None)] * len(judged)
+    if not known:
+        return ranks
+    values = [judged[i].interaction.energy.value for i in known]
+    draws = np.array([judged[i].interaction.energy.value + judged[i].deviations for i in known])
+    limits = rank_intervals(draws, confidence)
+    for i, rank, (low, high) in zip(known, strength_ranks(values), limits, strict=True):
+        ranks[i] = (rank, min(low, rank), max(high, rank))
+    return ranks
+
+
+def _limits(derived: Derived | None, book: EnergyBook, confidence: float) -> Interval:
+    return _NOT_AVAILABLE if derived is None else derived.interval(book.ledger, confidence)
+
+
+def _value(derived: Derived | None) -> float | None:
+    return None if derived is None else available(derived.value)
+
+
+def _nonadditive(interaction: Interaction, limits: Interval, per_e0_mv: float, unit: str) -> tuple[Flag, ...]:
+    if interaction.charge is None or not limits.excludes(0.0):
+        return ()
+    j, name = interaction.charge.value, interaction.cycle.name
+    message = (
+        f"the total charges around {name} do not add up (J = {j:+.2f} e0, interval {limits.low:.2f} to "
+        f"{limits.high:.2f}): its interaction energy changes by {-10 * per_e0_mv * j:+.2g} {unit} for every "
+        "+10 mV and a common voltage error does not cancel; state the voltage beside the energy"
+    )
+    return (Flag(code="charge-nonadditive", subject=name, message=message, value=j, limit=0.0),)
+
+
+def _row(
+    one: _Judged,
+    ranks: tuple[int | None, int | None, int | None],
+    p_adjusted: float,
+    book: EnergyBook,
+    corners: Corners,
+    settings: Settings,
+) -> tuple[InteractionRow, tuple[Flag, ...]]:
+    interaction, cycle = one.interaction, one.interaction.cycle
+    labels = [corner.label for corner in cycle.corners]
+    charges = _limits(interaction.charge, book, settings.confidence)
+    own = _nonadditive(interaction, charges, book.per_e0_mv, settings.energy_unit)
+    own += protocol_flags(cycle.name, tuple(corners.measurements[label].construct for label in labels))
+    bias = _limits(interaction.shortcut_bias, book, settings.confidence)
+    verdicts = [v for label in labels if (v := corners.rows[label].charge_verdict) is not None]
+    tolerance = settings.energy_tolerance
+    inherited = {code for label in labels for code in corners.rows[label].flags}
+    row = InteractionRow(
+        cycle=cycle.name,
+        order=cycle.order,
+        mutations=tuple(map(str, cycle.mutations)),
+        wild_type=settings.wild_type,
+        corners=tuple((corner.label, corner.sign) for corner in cycle.corners),
+        interaction=available(interaction.energy.value),
+        energy_unit=settings.energy_unit,
+        std_uncertainty=available(one.std_uncertainty),
+        dof=available(one.dof),
+        low=available(one.interval.low),
+        high=available(one.interval.high),
+        boot_low=available(one.boot.low),
+        boot_high=available(one.boot.high),
+        p_value=available(one.p_value),
+        p_adjusted=available(p_adjusted),
+        shortcut=available(interaction.shortcut.value),
+        shortcut_bias=_value(interaction.shortcut_bias),
+        shortcut_bias_low=available(bias.low),
+        shortcut_bias_high=available(bias.high),
+        shortcut_verdict=shortcut_verdict(verdicts, bias, tolerance),
+        charge_interaction_e0=_value(interaction.charge),
+        charge_interaction_low=available(charges.low),
+        charge_interaction_high=available(charges.high),
+        interaction_verdict=interaction_verdict(one.interval, settings.energy_threshold),
+        favours=favours(interaction.energy.value, one.interval, cycle.order),
+        rank=ranks[0],
+        rank_low=ranks[1],
+        rank_high=ranks[2],
+        flags=codes(own, also=inherited),
+    )
+    return row, own
+
+
+def _budget_rows(one: _Judged, book: EnergyBook) -> list[BudgetRow]:
+    return [
+        BudgetRow(
+            cycle=one.interaction.cycle.name,
+            source=part.source,
+            contribution=available(part.contribution),
+            share=available(part.share),
+        )
+        for part in book.ledger.budget(one.interaction.energy)
+    ]
+
+
+def interaction_rows(
+    cycles: Sequence[Cycle],
+    book: EnergyBook,
+    corners: Corners,
+    settings: Settings,
+    progress: Callable[[int, int], None] | None = None,
+) -> tuple[list[InteractionRow], list[BudgetRow], list[Flag]]:
+    """Rows of every cycle, their uncertainty budgets and the flags of the cycles themselves.
+
+    Parameters
+    ----------
+    cycles : sequence of Cycle
+        In the order the rows shall have.
+    book : EnergyBook
+        Energies of the campaign.
+    corners : Corners
+        Measurements and rows of the constructs.
+    settings : Settings
+        Confidence, threshold, tolerance and unit.
+    progress : callable, optional
+        Called with the number of cycles done and their total.
+    """
+    judged = []
+    for count, cycle in enumerate(cycles, start=1):
+        judged.append(_judge(cycle, book, settings))
+        if progress is not None:
+            progress(count, len(cycles))
+    adjusted = adjusted_p_values([one.p_value for one in judged])
+    ranks = _ranks(judged, settings.confidence)
+    rows, budget, flags = [], list[BudgetRow](), list[Flag]()
+    for one, rank, p_adjusted in zip(judged, ranks, adjusted, strict=True):
+        row, own = _row(one, rank, p_adjusted, book, corners, settings)
+        rows.append(row)
+        flags.extend(own)
+        budget.extend(_budget_rows(one, book))
+    return rows, budget, flags

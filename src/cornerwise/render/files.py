@@ -1,0 +1,92 @@
+"""The files of ``--out``: written beside their place and moved there as a whole."""
+
+from __future__ import annotations
+
+import shutil
+import tempfile
+from collections.abc import Mapping
+from pathlib import Path
+
+from ..errors import UsageError
+from ..result import Result, Row, Table
+
+
+def check_destination(folder: Path, *, force: bool) -> None:
+    """Refuse a destination that would be overwritten unasked, before anything is computed.
+
+    Raises
+    ------
+    UsageError
+        If `folder` exists and `force` is False, or if it is a file, or its parent does not exist.
+    """
+    if folder.exists() and not folder.is_dir():
+        raise UsageError(f"{folder} is a file; give a folder to write to")
+    if folder.exists() and not force:
+        raise UsageError(f"{folder} exists; use --force to replace it as a whole, or give another folder")
+    if not folder.absolute().parent.is_dir():
+        raise UsageError(f"{folder.absolute().parent} is not a folder; make it first")
+
+
+def _csv(table: Table[Row]) -> str:
+    # The shortest digits that give the same float back; integers and text as they are; nothing for None.
+    return table.to_frame().astype(object).to_csv(index=False, lineterminator="\n")
+
+
+def result_files(result: Result) -> dict[str, str]:
+    """Name and text of every file of a result."""
+    return {
+        "result.json": result.to_json(),
+        "interactions.csv": _csv(result.interactions),
+        "constructs.csv": _csv(result.constructs),
+        "cells.csv": _csv(result.cells),
+        "budget.csv": _csv(result.budget),
+    }
+
+
+def write_folder(files: Mapping[str, str], folder: Path, *, force: bool = False) -> None:
+    r"""Write text files into `folder`, all of them or none.
+
+    Parameters
+    ----------
+    files : mapping of str to str
+        File name to text, written as UTF-8 with ``\n`` line ends.
+    folder : Path
+        Appears, or is replaced, as a whole once every file is complete.
+    force : bool, optional
+        Replace an existing folder.
+
+    Raises
+    ------
+    UsageError
+        As `check_destination`, or if the place cannot be written.
+    """
+    check_destination(folder, force=force)
+    folder = folder.absolute()
+    try:
+        fresh = Path(tempfile.mkdtemp(prefix=f".{folder.name}-", dir=folder.parent))
+    except OSError as error:
+        raise UsageError(f"cannot write beside {folder}: {error.strerror}") from error
+    try:
+        for name, text in files.items():
+            (fresh / name).write_bytes(text.encode("utf-8"))
+        fresh.chmod(0o755)
+        _move_into_place(fresh, folder)
+    except OSError as error:
+        raise UsageError(f"cannot write {folder}: {error.strerror}; nothing was changed") from error
+    finally:
+        shutil.rmtree(fresh, ignore_errors=True)
+
+
+def _move_into_place(fresh: Path, folder: Path) -> None:
+    if not folder.exists():
+        fresh.rename(folder)
+        return
+    # A folder cannot be swapped for another in one step: keep the old one until the new one is there.
+    aside = fresh.with_name(f"{fresh.name}-old")
+    folder.rename(aside)
+    try:
+        fresh.rename(folder)
+    except OSError:
+        aside.rename(folder)
+        raise
+    shutil.rmtree(aside, ignore_errors=True)

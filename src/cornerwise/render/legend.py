@@ -1,0 +1,63 @@
+"""The sentences that go with every table and figure: formula, sign, unit, settings."""
+
+from __future__ import annotations
+
+from ..campaign import Settings, StatedCharge
+
+FORMULA = "I = sum over the corners of s F Q Vm; s = (-1)^(order - mutations in the corner)"
+SIGN_OF_PAIR = (
+    "I > 0: the native pair's interaction favours the resting state over the activated one; "
+    "I < 0: the activated one"
+)
+SIGN_OF_ODD_ORDER = "orders 3, 5, ...: the wild type enters with a minus sign, so read the two the other way"
+CAUTION = "a coupling energy is a difference between two states and no proof of a contact"
+
+
+def sign_sentences(orders: set[int]) -> list[str]:
+    """What the sign of I means for cycles of these orders."""
+    odd = [SIGN_OF_ODD_ORDER] if any(order % 2 for order in orders) else []
+    return [SIGN_OF_PAIR, *odd]
+
+
+def unit_phrase(settings: Settings) -> str:
+    """Unit of energies with the reminder that it is per channel."""
+    return f"{settings.energy_unit} per channel"
+
+
+def percent(fraction: float) -> str:
+    """Fraction as a percentage without needless decimals."""
+    return f"{100 * fraction:.10g} %"
+
+
+def _charge_words(settings: Settings) -> str:
+    if isinstance(settings.charge, StatedCharge):
+        return f"{{ value_e0 = {settings.charge.value_e0:g}, sem_e0 = {settings.charge.sem_e0:g} }}"
+    return f'"{settings.charge}"'
+
+
+def setting_values(settings: Settings) -> dict[str, str]:
+    """Every key of ``campaign.toml`` with the value in force, as it would be written there."""
+    return {
+        "title": f'"{settings.title}"',
+        "wild_type": f'"{settings.wild_type}"',
+        "temperature_C": f"{settings.temperature_c:g}",
+        "subunits": str(settings.subunits),
+        "energy_unit": f'"{settings.energy_unit}"',
+        "confidence": f"{settings.confidence:g}",
+        "replicates": str(settings.replicates),
+        "seed": str(settings.seed),
+        "threshold": f"{settings.energy_threshold:.4g}",
+        "shortcut_tolerance": f"{settings.energy_tolerance:.4g}",
+        "charge_margin": f"{settings.charge_margin:g}",
+        "voltage_offset_mV": f"{settings.voltage_offset_mv:g}",
+        "charge": _charge_words(settings),
+    }
+
+
+def settings_sentences(settings: Settings) -> list[str]:
+    """Two sentences: what the user set, and what was left to its default."""
+    values = setting_values(settings)
+    stated = [f"{key} = {value}" for key, value in values.items() if key not in settings.defaulted]
+    default = [f"{key} = {values[key]}" for key in values if key in settings.defaulted and key != "title"]
+    sentences = [f"Set: {', '.join(stated)}"]
+    return [*sentences, f"Defaults: {', '.join(default)}"] if default else sentences

@@ -1,0 +1,24 @@
+"""What another program reads on stdout."""
+
+from __future__ import annotations
+
+import dataclasses
+import json
+
+from ..surveying import Survey
+
+SURVEY_SCHEMA = "cornerwise-survey/1"
+
+
+def survey_json(found: Survey) -> str:
+    """Text of a survey as JSON, full precision."""
+    document = {
+        "schema": SURVEY_SCHEMA,
+        "settings": dataclasses.asdict(found.settings),
+        "background": found.background,
+        "constructs": [dataclasses.asdict(row) for row in found.constructs],
+        "cycles": found.cycles,
+        "incomplete": [{"construct": label, "lacks": missing} for label, missing in found.incomplete],
+        "flags": [dataclasses.asdict(flag) for flag in found.flags],
+    }
+    return json.dumps(document, indent=1, ensure_ascii=False, allow_nan=False) + "\n"

@@ -1,0 +1,223 @@
+"""What a person reads at a terminal or through a pipe."""
+
+from __future__ import annotations
+
+import string
+from collections import Counter
+from collections.abc import Iterator, Sequence
+from contextlib import contextmanager
+from typing import IO
+
+from rich.console import Console
+from rich.table import Table as Grid
+from rich.text import Text
+
+from ..flags import FLAG_CODES, Flag
+from ..result import InteractionRow, Result
+from ..surveying import Survey, SurveyRow
+from .legend import CAUTION, FORMULA, percent, settings_sentences, sign_sentences, unit_phrase
+from .rounding import span, with_uncertainty
+
+_VERDICT_STYLE = {
+    "coupled": "bold",
+    "detected": "bold",
+    "valid": "green",
+    "invalid": "red",
+    "untested": "yellow",
+    "unresolved": "dim",
+    "uncoupled": "",
+}
+
+
+_UNCUT = 1_000_000  # columns; nothing wraps at this width
+
+
+@contextmanager
+def screen_on(stream: IO[str]) -> Iterator[Console]:
+    """Console on `stream`; off a terminal it writes plain text that is never cut, wrapped or padded."""
+    if stream.isatty():
+        yield Console(file=stream, markup=False, highlight=False, emoji=False)
+        return
+    screen = Console(file=stream, width=_UNCUT, markup=False, highlight=False, emoji=False)
+    with screen.capture() as captured:
+        yield screen
+    stream.writelines(f"{line.rstrip()}\n" for line in captured.get().splitlines())
+
+
+def _plus_minus(screen: Console) -> str:
+    try:
+        "±".encode(screen.encoding)
+    except (UnicodeEncodeError, LookupError):
+        return "+/-"
+    return "±"
+
+
+def _grid(headers: Sequence[tuple[str, bool]]) -> Grid:
+    """Table without rules; each header with whether its column is numeric."""
+    grid = Grid(box=None, padding=(0, 1, 0, 0), pad_edge=False, header_style="bold")
+    for header, numeric in headers:
+        grid.add_column(Text(header), justify="right" if numeric else "left", overflow="fold")
+    return grid
+
+
+def _marks(flags: Sequence[str]) -> dict[str, str]:
+    """A letter for every code that occurs, in the fixed order of the codes."""
+    letters = [*string.ascii_lowercase]
+    present = [code for code in FLAG_CODES if code in set(flags)]
+    return dict(zip(present, letters, strict=False))
+
+
+def _verdict(word: str) -> Text:
+    return Text(word, style=_VERDICT_STYLE[word])
+
+
+def _interaction_grid(result: Result, marks: dict[str, str], plus_minus: str) -> Grid:
+    unit, level = result.settings.energy_unit, percent(result.settings.confidence)
+    grid = _grid(
+        [
+            ("cycle", False),
+            (f"I ({unit})", True),
+            (f"{level} interval", True),
+            ("favours", False),
+            ("verdict", False),
+            ("shortcut", False),
+            ("flags", False),
+        ]
+    )
+    for row in by_strength(result.interactions):
+        grid.add_row(
+            Text(row.cycle),
+            Text(with_uncertainty(row.interaction, row.std_uncertainty, plus_minus)),
+            Text(span((row.low, row.high), row.std_uncertainty)),
+            Text(row.favours or "-"),
+            _verdict(row.interaction_verdict),
+            _verdict(row.shortcut_verdict),
+            Text(" ".join(marks[code] for code in row.flags)),
+        )
+    return grid
+
+
+def by_strength(rows: Sequence[InteractionRow]) -> list[InteractionRow]:
+    """Rows by rank, those without a rank last."""
+    return sorted(rows, key=lambda row: (row.rank is None, row.rank or 0))
+
+
+def _flag_lines(flags: Sequence[Flag], marks: dict[str, str]) -> list[tuple[str, str]]:
+    """Mark and sentence of each code and construct; cells of one construct share a line."""
+    lines: list[tuple[str, str]] = []
+    for code, mark in marks.items():
+        own = [flag for flag in flags if flag.code == code]
+        groups = Counter(_group(flag) for flag in own)
+        seen: set[str] = set()
+        for flag in own:
+            group = _group(flag)
+            if group in seen:
+                continue
+            seen.add(group)
+            more = groups[group] - 1
+            others = f" (and {more} more of its cells)" if more else ""
+            lines.append((mark, f"{code}: {flag.message}{others}"))
+    return lines
+
+
+def _group(flag: Flag) -> str:
+    """What a flag is about, its cell left out: flags of one construct's cells belong together."""
+    return flag.construct or flag.subject
+
+
+def _print_lines(screen: Console, lines: Sequence[str]) -> None:
+    for line in lines:
+        screen.print(Text(line))
+
+
+def _print_flags(screen: Console, flags: Sequence[Flag], marks: dict[str, str]) -> None:
+    grid = Grid.grid(padding=(0, 1, 0, 0))
+    for mark, sentence in _flag_lines(flags, marks):
+        grid.add_row(Text(f" {mark}"), Text(sentence))
+    if marks:
+        screen.print()
+        screen.print(Text("Flags", style="bold"))
+        screen.print(grid)
+
+
+def print_result(result: Result, stream: IO[str]) -> None:
+    """Coupling table, flags, formula, sign, unit and settings.
+
+    Parameters
+    ----------
+    result : Result
+        What `cornerwise.couple` returned.
+    stream : text stream
+        At a terminal the table is fitted to its width; elsewhere the text is plain and never cut.
+    """
+    with screen_on(stream) as screen:
+        _show_result(result, screen)
+
+
+def _show_result(result: Result, screen: Console) -> None:
+    marks = _marks([code for row in result.interactions for code in row.flags])
+    relevant = _flags_of_cycles(result)
+    if result.settings.title:
+        screen.print(Text(result.settings.title, style="bold"))
+    _print_lines(screen, [f"Interaction energies I in {unit_phrase(result.settings)}, strongest first"])
+    screen.print()
+    screen.print(_interaction_grid(result, marks, _plus_minus(screen)))
+    _print_flags(screen, relevant, marks)
+    screen.print()
+    orders = {row.order for row in result.interactions}
+    background = (
+        [f"Background of every construct: {'/'.join(result.background)}"] if result.background else []
+    )
+    notes = [f"Note: {note}" for note in result.notes]
+    _print_lines(screen, [FORMULA, *sign_sentences(orders), CAUTION, *background, *notes])
+    screen.print()
+    _print_lines(screen, settings_sentences(result.settings))
+
+
+def _flags_of_cycles(result: Result) -> list[Flag]:
+    """Flags of the cycles and of the constructs and cells that take part in one."""
+    labels = {label for row in result.interactions for label, _ in row.corners}
+    cycles = {row.cycle for row in result.interactions}
+    return [
+        flag
+        for flag in result.flags
+        if (flag.construct in labels if flag.construct else flag.subject in cycles)
+    ]
+
+
+def _survey_line(row: SurveyRow, marks: dict[str, str], plus_minus: str) -> list[Text]:
+    cells = str(row.cells_used)
+    if row.cells_set_aside:
+        cells += f" of {row.cells_used + row.cells_set_aside}"
+    charges = "" if row.charge_n is None else f" ({row.charge_n})"
+    median_u, charge_u = row.median_sem_mv, row.charge_sem_e0
+    return [
+        Text(row.construct),
+        Text(cells),
+        Text(with_uncertainty(row.median_mv, median_u, plus_minus)),
+        Text(with_uncertainty(row.charge_e0, charge_u, plus_minus) + charges),
+        Text(" ".join(marks[code] for code in row.flags)),
+    ]
+
+
+def print_survey(survey: Survey, stream: IO[str]) -> None:
+    """One line a construct, the flags in words, the cycles that can be formed and those that cannot."""
+    with screen_on(stream) as screen:
+        _show_survey(survey, screen)
+
+
+def _show_survey(survey: Survey, screen: Console) -> None:
+    marks = _marks([flag.code for flag in survey.flags])
+    grid = _grid(
+        [("construct", False), ("cells", True), ("Vm (mV)", True), ("Q (e0), (n)", True), ("flags", False)]
+    )
+    for row in survey.constructs:
+        grid.add_row(*_survey_line(row, marks, _plus_minus(screen)))
+    screen.print(grid)
+    _print_flags(screen, survey.flags, marks)
+    screen.print()
+    lines = [f"{len(survey.cycles)} complete cycles: {', '.join(survey.cycles)}"]
+    lines += [f"{label}: no cycle, it lacks {', '.join(missing)}" for label, missing in survey.incomplete]
+    if survey.background:
+        lines.append(f"Background of every construct: {'/'.join(survey.background)}")
+    _print_lines(screen, [*lines, "Vm, Q: mean ± standard error over cells; no energy was computed"])
