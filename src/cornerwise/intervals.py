@@ -68,9 +68,10 @@ def welch_satterthwaite(variances: Sequence[float], dofs: Sequence[float]) -> fl
     18.999
     """
     total = math.fsum(variances)
-    spread = math.fsum(v * v / nu for v, nu in zip(variances, dofs, strict=True) if v != 0)
-    if math.isnan(total) or math.isnan(spread):
+    known = [(v, nu) for v, nu in zip(variances, dofs, strict=True) if v != 0]
+    if math.isnan(total) or not all(nu > 0 for _, nu in known):
         return math.nan
+    spread = math.fsum(v * v / nu for v, nu in known)
     return total * total / spread if spread > 0 else math.inf
 
 
