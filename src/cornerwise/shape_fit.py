@@ -1,0 +1,264 @@
+"""Least squares for one shape shared by several cells, each with its own gain, offset and shift.
+
+Gain and offset are linear and are solved for exactly at every step (variable projection); the shift of a
+cell touches no other cell and is eliminated from the normal equations, so that each step solves a system no
+larger than the shape. The shape has a weak normal prior, without which a free sum of sigmoids now and then
+invents a slow component that runs off the end of the data. Sums are elementwise, not matrix products, so
+that the number of threads of the linear algebra library changes no digit.
+
+References
+----------
+Golub GH, Pereyra V (1973). SIAM J Numer Anal 10, 413-432; Marquardt DW (1963). J SIAM 11, 431-441. (Both
+cited from memory for the methods' names.)
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import NamedTuple
+
+import numpy as np
+
+from .shapes import Family, FloatArray
+
+_LARGEST_STEP_MV = 40.0
+_FROZEN = 1e12  # stiffness that holds a parameter at its bound
+_STEPS = 40
+_TINY = 1e-14
+
+
+class Cells(NamedTuple):
+    """Curves of one construct, padded to one length."""
+
+    v_mv: FloatArray  # (n_cells, n_points)
+    y: FloatArray  # (n_cells, n_points), each cell scaled to about 0..1
+    weight: FloatArray  # (n_cells, n_points), 0 for padding
+    from_zero: bool = False  # the low plateau is known to be 0 and is not fitted
+
+    @property
+    def points(self) -> int:
+        """Number of measured points."""
+        return int((self.weight > 0).sum())
+
+
+@dataclass(frozen=True, kw_only=True, slots=True, eq=False)
+class Prior:
+    """Where a shape's parameters may be and where they probably are."""
+
+    mean: FloatArray  # (n_parameters,)
+    sd: FloatArray  # (n_parameters,)
+    low: FloatArray  # (n_parameters,)
+    high: FloatArray  # (n_parameters,)
+    variance: float  # of the noise; what a deviation of one sd from the mean costs
+
+    @property
+    def precision(self) -> FloatArray:
+        """Stiffness in the units of the sum of squares."""
+        return self.variance / self.sd**2
+
+
+@dataclass(frozen=True, kw_only=True, slots=True, eq=False)
+class PooledFit:
+    """One family fitted to all cells."""
+
+    family: Family
+    theta: FloatArray  # (n_parameters,)
+    shift_mv: FloatArray  # (n_cells,)
+    gain: FloatArray  # (n_cells,)
+    offset: FloatArray  # (n_cells,)
+    residual: FloatArray  # (n_cells, n_points)
+    sum_of_squares: float
+    information: FloatArray  # (n_parameters, n_parameters), shifts eliminated, prior included
+    coupling: FloatArray  # (n_parameters, n_cells), shape against shift
+    shift_information: FloatArray  # (n_cells,)
+    departure: FloatArray  # (n_cells, n_points, n_parameters): what a cell's own shape would change
+    prior: Prior
+
+    @property
+    def median_mv(self) -> FloatArray:
+        """Median voltage of each cell (mV), shape (n_cells,)."""
+        return self.shift_mv + self.family.median_mv(self.theta)
+
+    @property
+    def median_by_shape(self) -> FloatArray:
+        """Derivative of each cell's median by the shape, its shift following; (n_parameters, n_cells)."""
+        return self.family.median_gradient(self.theta)[:, None] - self.coupling / self.shift_information
+
+
+class _Linearised(NamedTuple):
+    """Everything at one point of the search; the leading axis is the batch of starts."""
+
+    gain: FloatArray  # (b, c)
+    offset: FloatArray  # (b, c)
+    residual: FloatArray  # (b, c, n)
+    by_shift: FloatArray  # (b, c, n), gain and offset projected out
+    by_shape: FloatArray  # (b, p, c, n), gain and offset projected out
+
+
+class _Normal(NamedTuple):
+    shape: FloatArray  # (b, p, p)
+    coupling: FloatArray  # (b, p, c)
+    shift: FloatArray  # (b, c)
+    shape_pull: FloatArray  # (b, p)
+    shift_pull: FloatArray  # (b, c)
+
+
+def fit_shape(
+    cells: Cells,
+    family: Family,
+    starts: FloatArray,
+    shift_mv: FloatArray,
+    prior: Prior,
+    *,
+    tolerance: float = 1e-5,
+) -> PooledFit:
+    """Fit one family from several starts and keep the best.
+
+    Parameters
+    ----------
+    cells : Cells
+        The construct's curves.
+    family : Family
+        What to fit.
+    starts : ndarray, shape (n_starts, n_parameters)
+        Parameter vectors to start from.
+    shift_mv : ndarray, shape (n_cells,)
+        Shifts to start from (mV).
+    prior : Prior
+        Bounds and weak prior.
+    tolerance : float, default 1e-5
+        Relative gain of the sum of squares below which the search ends.
+
+    Returns
+    -------
+    PooledFit
+    """
+    theta = np.clip(starts, prior.low, prior.high)
+    theta, shift = _search(
+        cells, family, theta, np.repeat(shift_mv[None], len(theta), axis=0), prior, tolerance
+    )
+    return _describe(cells, family, theta, shift, prior)
+
+
+def _search(
+    cells: Cells, family: Family, theta: FloatArray, shift: FloatArray, prior: Prior, tolerance: float
+) -> tuple[FloatArray, FloatArray]:
+    """Levenberg-Marquardt over a batch of starts; ends when the best of them has converged."""
+    damping = np.full(len(theta), 1e-2)
+    here = _linearise(cells, family, theta, shift)
+    cost = _cost(cells, here, theta, prior)
+    for step in range(_STEPS):
+        normal = _normal(cells, here, theta, prior)
+        new_theta, new_shift = _move(normal, theta, shift, damping, prior, family.step_limit)
+        there = _linearise(cells, family, new_theta, new_shift)
+        new_cost = _cost(cells, there, new_theta, prior)
+        better = new_cost <= cost
+        small = np.where(better, cost - new_cost < tolerance * cost, damping > 1e6)
+        theta = np.where(better[:, None], new_theta, theta)
+        shift = np.where(better[:, None], new_shift, shift)
+        here = _Linearised(*(_pick(better, new, old) for new, old in zip(there, here, strict=True)))
+        cost = np.where(better, new_cost, cost)
+        damping = np.clip(np.where(better, damping * 0.1, damping * 6.0), 1e-10, 1e8)
+        best = int(np.argmin(cost))
+        if (small[best] and step > 2) or cost[best] <= _TINY**2:
+            break
+    return theta[best], shift[best]
+
+
+def _pick(better: np.ndarray, new: FloatArray, old: FloatArray) -> FloatArray:
+    return np.where(better.reshape((-1,) + (1,) * (new.ndim - 1)), new, old)
+
+
+def _linearise(cells: Cells, family: Family, theta: FloatArray, shift: FloatArray) -> _Linearised:
+    """Solve for gains and offsets and project them out of the derivatives."""
+    w, total = cells.weight, cells.weight.sum(axis=-1)
+    values = family.values(cells.v_mv[None] - shift[:, :, None], theta)
+    fitted = 0.0 if cells.from_zero else 1.0
+    q_mean = fitted * (w * values.q).sum(axis=-1) / total
+    y_mean = fitted * (w * cells.y).sum(axis=-1) / total
+    q = values.q - q_mean[..., None]
+    y = cells.y - y_mean[:, None]
+    norm = (w * q * q).sum(axis=-1) + _TINY**2  # a shape that is flat over a cell's range has no gain
+    gain = (w * q * y).sum(axis=-1) / norm
+    unit, wq = fitted * w / total[:, None], w * q / norm[..., None]
+    slope = -gain[..., None] * values.slope
+    by_shift = _project(slope, unit, wq, q)
+    by_shape = _project(gain[:, None, :, None] * values.gradient, unit, wq[:, None], q[:, None])
+    return _Linearised(gain, y_mean - gain * q_mean, y - gain[..., None] * q, by_shift, by_shape)
+
+
+def _project(x: FloatArray, unit: FloatArray, wq: FloatArray, q: FloatArray) -> FloatArray:
+    """Part of `x` that neither an offset nor a gain can imitate."""
+    x = x - (unit * x).sum(axis=-1)[..., None]
+    return np.asarray(x - (wq * x).sum(axis=-1)[..., None] * q, dtype=np.float64)
+
+
+def _cost(cells: Cells, here: _Linearised, theta: FloatArray, prior: Prior) -> FloatArray:
+    misfit = (cells.weight * here.residual**2).sum(axis=(-1, -2))
+    return np.asarray(misfit + (prior.precision * (theta - prior.mean) ** 2).sum(axis=-1), dtype=np.float64)
+
+
+def _normal(cells: Cells, here: _Linearised, theta: FloatArray, prior: Prior) -> _Normal:
+    """Normal equations; the ridge keeps a cell or a parameter the data do not touch from being singular."""
+    w, ridge = cells.weight, _TINY * cells.points
+    weighted = w * here.by_shape
+    flat = weighted.reshape(*weighted.shape[:2], -1)
+    shape = np.einsum("bpk,bqk->bpq", flat, here.by_shape.reshape(flat.shape))
+    diagonal = np.arange(shape.shape[1])
+    shape[:, diagonal, diagonal] += prior.precision + ridge
+    w_shift = w * here.by_shift
+    return _Normal(
+        shape=shape,
+        coupling=(weighted * here.by_shift[:, None]).sum(axis=-1),
+        shift=(w_shift * here.by_shift).sum(axis=-1) + ridge * _TINY,
+        shape_pull=(weighted * here.residual[:, None]).sum(axis=(-1, -2))
+        - prior.precision * (theta - prior.mean),
+        shift_pull=(w_shift * here.residual).sum(axis=-1),
+    )
+
+
+def _move(
+    normal: _Normal,
+    theta: FloatArray,
+    shift: FloatArray,
+    damping: FloatArray,
+    prior: Prior,
+    limit: FloatArray,
+) -> tuple[FloatArray, FloatArray]:
+    """One damped step, inside the bounds."""
+    k = np.arange(theta.shape[1])
+    held = (theta <= prior.low) & (normal.shape_pull < 0) | (theta >= prior.high) & (normal.shape_pull > 0)
+    stiff_shift = normal.shift * (1.0 + damping[:, None])
+    relative = normal.coupling / stiff_shift[:, None]
+    matrix = normal.shape - np.einsum("bpc,bqc->bpq", relative, normal.coupling)
+    matrix[:, k, k] += damping[:, None] * normal.shape[:, k, k] + np.where(held, _FROZEN, 0.0)
+    pull = normal.shape_pull - (relative * normal.shift_pull[:, None]).sum(axis=-1)
+    step = np.linalg.solve(matrix, np.where(held, 0.0, pull)[..., None])[..., 0]
+    new_theta = np.clip(theta + np.clip(step, -limit, limit), prior.low, prior.high)
+    follow = normal.shift_pull - (normal.coupling * (new_theta - theta)[:, :, None]).sum(axis=1)
+    new_shift = shift + np.clip(follow / stiff_shift, -_LARGEST_STEP_MV, _LARGEST_STEP_MV)
+    return new_theta, new_shift
+
+
+def _describe(cells: Cells, family: Family, theta: FloatArray, shift: FloatArray, prior: Prior) -> PooledFit:
+    """Collect what the averaging needs at the optimum."""
+    here = _linearise(cells, family, theta[None], shift[None])
+    normal = _normal(cells, here, theta[None], prior)
+    coupling, shift_information = normal.coupling[0], normal.shift[0]
+    information = normal.shape[0] - np.einsum("pc,qc->pq", coupling / shift_information, coupling)
+    along = coupling / shift_information
+    departure = here.by_shape[0] - along[:, :, None] * here.by_shift[0][None]
+    return PooledFit(
+        family=family,
+        theta=theta,
+        shift_mv=shift,
+        gain=here.gain[0],
+        offset=here.offset[0],
+        residual=here.residual[0],
+        sum_of_squares=float((cells.weight * here.residual[0] ** 2).sum()),
+        information=information,
+        coupling=coupling,
+        shift_information=shift_information,
+        departure=np.moveaxis(departure, 0, -1),
+        prior=prior,
+    )
