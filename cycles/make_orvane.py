@@ -46,7 +46,7 @@ PAIRS = {  # interaction energy, total charge of the double mutant
     "E197Q/K232Q": (0.0, 13.0),  # opposite charges that do not hold on to each other
     "E154Q/R226Q": (2.5, 9.0),  # a salt bridge to a sensor charge: total charge drops
     "E154Q/R223Q": (0.0, 11.6),  # the charge of the double does not add up
-    "F188A/Y241A": (-1.7, 13.1),  # an aromatic pair that favours the activated state
+    "F188A/Y241A": (-1.2, 13.1),  # an aromatic pair that favours the activated state
     "S205A/N250A": (0.3, 12.7),  # three cells: nothing can be said
     "E197Q/R229K": (-2.2, 12.9),  # recorded over a range that ends too early
     "F188A/K232Q": (0.2, 13.1),  # total charge of the double never measured
@@ -75,7 +75,7 @@ class Recording:
     step_mv: float = 10.0
     noise: float = 0.01  # standard deviation of a point, fraction of the whole charge
     cell_sd_mv: float = 1.4  # between cells
-    charge_sd: float = 0.035  # between cells, fraction
+    charge_sd: float = 0.025  # between cells, fraction
     leak_per_mv: float = 0.0  # slope left on both plateaus, fraction of the whole charge
     biphasic: bool = False
     days: tuple[str, ...] = ("day 1", "day 2")

@@ -80,28 +80,28 @@ def _cornerwise(
 ) -> None:
     """Interaction energies from charge-voltage data and double-mutant cycles.
 
+    \b
     For example:
+      cornerwise new trial                    a filled-in campaign to start from
+      cornerwise check trial                  read and judge the data
+      cornerwise couple trial --out results   the coupling table and its files
 
-      cornerwise new trial                     a filled-in campaign to start from
-
-      cornerwise check trial                   read and judge the data
-
-      cornerwise couple trial --out results    the coupling table and its files
-
-    Exit codes: 0 done, 1 a fault of the program, 2 a wrong call, 3 the data were refused.
-    """
+    \b
+    Exit codes: 0 done, 1 a fault of the program, 2 a wrong call,
+    3 the data were refused.
+    """  # noqa: D301 - the \b keeps the lines below it as they are
 
 
 @app.command()
 def new(
     folder: Annotated[Path, typer.Argument(metavar="DIR", help="New or empty folder.")],
 ) -> None:
-    """Write a small campaign of invented data to overwrite with your own.
+    """Write a small invented campaign to overwrite with your own.
 
+    \b
     For example:
-
       cornerwise new trial && cornerwise couple trial
-    """
+    """  # noqa: D301
     from .starter import new_campaign
 
     for name in new_campaign(folder):
@@ -110,14 +110,13 @@ def new(
 
 @app.command()
 def check(path: _Campaign, as_json: _Json = False) -> None:
-    """Read and judge the data; compute no energy and write nothing.
+    """Read and judge the data; compute no energy, write nothing.
 
+    \b
     For example:
-
       cornerwise check trial
-
       cornerwise check trial.xlsx --json
-    """
+    """  # noqa: D301
     from . import read, survey
     from .render.machine import survey_json
     from .render.terminal import print_survey
@@ -138,16 +137,16 @@ def couple(
     force: Annotated[bool, typer.Option("--force", help="Replace DIR as a whole if it exists.")] = False,
     as_json: _Json = False,
 ) -> None:
-    """Compute every cycle's interaction energy, print the coupling table and write its files.
+    """Compute the interaction energies of all cycles.
 
+    Prints the coupling table; with --out also writes result.json and the CSV tables.
+
+    \b
     For example:
-
       cornerwise couple trial
-
       cornerwise couple trial --out results --force
-
       cornerwise couple trial.xlsx --json > result.json
-    """
+    """  # noqa: D301
     from . import couple as run
     from . import read
     from .render.files import check_destination, result_files, write_folder

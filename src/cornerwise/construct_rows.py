@@ -33,11 +33,15 @@ def _charge_judgement(
     return ratio, difference, charge_verdict(equivalence, difference, settings.charge_margin)
 
 
+_TAKEN_FROM = {"wild type": "the wild type's", "stated": "the stated one", "measured": "the wild type's"}
+
+
 def _charge_flags(label: str, verdict: ChargeVerdict | None, row: ConstructRow, wild_type: str) -> list[Flag]:
     if verdict == "assumed":
+        taken = _TAKEN_FROM[row.charge_source]
         message = (
-            f"the total charge of {label} was never measured and is taken to be that of {row.charge_source}; "
-            "measure it, or report the interaction as resting on that assumption"
+            f"the total charge of {label} was never measured and is taken to be {taken}; measure it, or say "
+            "that the interaction rests on this assumption"
         )
         return [Flag(code="charge-assumed", subject=label, construct=label, message=message)]
     if verdict == "changed" and row.charge_ratio is not None:

@@ -34,6 +34,7 @@ class Flag:
     code: FlagCode
     subject: str  # "construct/cell", a construct's label or a cycle's name
     construct: str | None = None  # the construct it is about; None for a cycle
+    cell: str | None = None  # the cell of that construct it is about; None for the whole construct
     message: str  # one sentence for the user: the number that raised it and what to do
     value: float | None = None  # the number that raised it, in the unit the message names
     limit: float | None = None  # the limit it crossed, same unit

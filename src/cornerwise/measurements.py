@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -116,9 +116,21 @@ def _charge(construct: Construct) -> Sample | Summary | None:
     )
 
 
-def _measure(construct: Construct) -> Measurement:
+def _readings(construct: Construct) -> tuple[CellReading, ...]:
+    """Read the curves in the order of the cells' names, each flag marked with its construct and cell."""
+    if not construct.curves:
+        return ()
     curves = sorted(construct.curves, key=lambda curve: curve.cell)
-    readings = read_construct(curves) if curves else ()
+    return tuple(_marked(reading) for reading in read_construct(curves))
+
+
+def _marked(reading: CellReading) -> CellReading:
+    flags = (replace(flag, construct=reading.construct, cell=reading.cell) for flag in reading.flags)
+    return replace(reading, flags=tuple(flags))
+
+
+def _measure(construct: Construct) -> Measurement:
+    readings = _readings(construct)
     median, charge = _median(construct, readings), _charge(construct)
     flags = _few_cells(construct.label, "the median voltages", median.n)
     if charge is not None:

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import string
-from collections import Counter
 from collections.abc import Iterator, Sequence
 from contextlib import contextmanager
 from typing import IO
@@ -103,26 +102,26 @@ def by_strength(rows: Sequence[InteractionRow]) -> list[InteractionRow]:
 
 
 def _flag_lines(flags: Sequence[Flag], marks: dict[str, str]) -> list[tuple[str, str]]:
-    """Mark and sentence of each code and construct; cells of one construct share a line."""
-    lines: list[tuple[str, str]] = []
+    """Mark and sentence of each code: the first subject in full, the others with their number."""
+    lines = []
     for code, mark in marks.items():
-        own = [flag for flag in flags if flag.code == code]
-        groups = Counter(_group(flag) for flag in own)
-        seen: set[str] = set()
-        for flag in own:
-            group = _group(flag)
-            if group in seen:
-                continue
-            seen.add(group)
-            more = groups[group] - 1
-            others = f" (and {more} more of its cells)" if more else ""
-            lines.append((mark, f"{code}: {flag.message}{others}"))
+        groups: dict[str, list[Flag]] = {}
+        for flag in flags:
+            if flag.code == code:
+                groups.setdefault(flag.construct or flag.subject, []).append(flag)
+        (_, first), *others = groups.items()
+        more = f" ({len(first) - 1} more of its cells too)" if len(first) > 1 else ""
+        likewise = f"; likewise {', '.join(_short(*other) for other in others)}" if others else ""
+        named = first[0].message if first[0].cell is None else f"{first[0].subject}: {first[0].message}"
+        lines.append((mark, f"{code}: {named}{more}{likewise}"))
     return lines
 
 
-def _group(flag: Flag) -> str:
-    """What a flag is about, its cell left out: flags of one construct's cells belong together."""
-    return flag.construct or flag.subject
+def _short(subject: str, flags: Sequence[Flag]) -> str:
+    """A subject with what raised the flag: its number, or how many of its cells carry it."""
+    if flags[0].cell is not None:
+        return f"{subject} ({len(flags)} cell{'s' if len(flags) > 1 else ''})"
+    return subject if flags[0].value is None else f"{subject} ({flags[0].value:.3g})"
 
 
 def _print_lines(screen: Console, lines: Sequence[str]) -> None:
