@@ -16,9 +16,11 @@ _THREE_LETTER = {
 }  # fmt: skip
 _ONE_LETTER = frozenset(_THREE_LETTER.values())
 
-_SUBSTITUTION = re.compile(r"([A-Z])([1-9]\d*)([A-Z])")
-_HGVS = re.compile(r"([A-Z][a-z]{2})([1-9]\d*)([A-Z][a-z]{2})")
+_SUBSTITUTION = re.compile(r"([A-Z])([1-9][0-9]*)([A-Z])")
+_HGVS = re.compile(r"([A-Z][a-z]{2})([1-9][0-9]*)([A-Z][a-z]{2})")
 _SEPARATORS = re.compile(r"[+/;:\s]+")
+
+HIGHEST_LISTED_ORDER = 6  # of a cycle whose missing constructs are named one by one
 
 Mutations = frozenset["Mutation"]
 
@@ -213,12 +215,33 @@ def find_cycles(labels: Mapping[Mutations, str]) -> tuple[Cycle, ...]:
     tuple of Cycle
         By order, then in residue order.
     """
-    candidates = sorted((m for m in labels if len(m) >= 2), key=_by_order_then_residue)
+    # Without as many constructs as corners there is no need to list the corners, 2**order of them.
+    fitting = (m for m in labels if len(m) >= 2 and 2 ** len(m) <= len(labels))
+    candidates = sorted(fitting, key=_by_order_then_residue)
     return tuple(complete_cycle(m, labels) for m in candidates if not missing_corners(m, labels))
 
 
 def incomplete_cycles(labels: Mapping[Mutations, str]) -> tuple[tuple[str, tuple[str, ...]], ...]:
-    """Constructs with two or more mutations whose cycle lacks a corner, and what is missing."""
+    """Find the constructs with two or more mutations whose cycle lacks a corner, and what is missing.
+
+    Parameters
+    ----------
+    labels : mapping of frozenset of Mutation to str
+        The construct that carries exactly these mutations; the wild type carries none.
+
+    Returns
+    -------
+    tuple of (str, tuple of str)
+        Label, and the missing constructs as `missing_corners` names them; beyond order
+        `HIGHEST_LISTED_ORDER` their number alone. By order, then in residue order.
+    """
     candidates = sorted((m for m in labels if len(m) >= 2), key=_by_order_then_residue)
-    lacking = ((labels[m], missing_corners(m, labels)) for m in candidates)
+    lacking = ((labels[m], _named_or_counted(m, labels)) for m in candidates)
     return tuple((label, missing) for label, missing in lacking if missing)
+
+
+def _named_or_counted(mutations: Mutations, labels: Mapping[Mutations, str]) -> tuple[str, ...]:
+    if len(mutations) <= HIGHEST_LISTED_ORDER:
+        return missing_corners(mutations, labels)
+    missing = 2 ** len(mutations) - sum(1 for present in labels if present <= mutations)
+    return (f"{missing} constructs",) if missing else ()

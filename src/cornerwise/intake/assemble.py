@@ -1,0 +1,74 @@
+"""From settings and tables to the campaign."""
+
+from __future__ import annotations
+
+from collections import defaultdict
+
+from ..campaign import Campaign, ChargeReplicate, Construct, Curve
+from ..mutations import Mutation
+from .checks import check
+from .cycles import cycles_of
+from .findings import Findings
+from .labels import Genotypes, read_genotypes
+from .parts import Parts
+
+
+def assemble(parts: Parts, findings: Findings) -> Campaign:
+    """Put the campaign together.
+
+    Parameters
+    ----------
+    parts : Parts
+        All that was read.
+    findings : Findings
+        Takes everything that does not fit together or is missing.
+
+    Returns
+    -------
+    Campaign
+        To be used only if there are no findings.
+    """
+    genotypes = read_genotypes(parts.seen, parts.settings.wild_type, parts.listed, findings)
+    check(parts, genotypes.aliases, findings)
+    known = parts.settings.wild_type in parts.seen
+    cycles = (
+        cycles_of(parts.requests, genotypes, parts.document, findings)
+        if known and parts.whole and genotypes.whole
+        else ()
+    )
+    return Campaign(
+        settings=parts.settings,
+        constructs=_constructs(parts, genotypes),
+        cycles=cycles,
+        requests=parts.requests,
+        background=genotypes.background,
+        inputs=parts.inputs,
+    )
+
+
+def _constructs(parts: Parts, genotypes: Genotypes) -> tuple[Construct, ...]:
+    """The wild type, then by number of mutations and residue order."""
+    curves: dict[str, list[Curve]] = defaultdict(list)
+    for curve in parts.curves.curves:
+        curves[curve.construct].append(curve)
+    replicates: dict[str, list[ChargeReplicate]] = defaultdict(list)
+    for replicate in parts.charges.replicates:
+        replicates[replicate.construct].append(replicate)
+    medians = {median.construct: median for median in parts.medians.medians}
+    charges = {charge.construct: charge for charge in parts.charges.summaries}
+    in_order = sorted(genotypes.by_label.items(), key=lambda item: _order(item[1]))
+    return tuple(
+        Construct(
+            label=label,
+            mutations=mutations,
+            curves=tuple(curves[label]),
+            median=medians.get(label),
+            charge_replicates=tuple(replicates[label]),
+            charge=charges.get(label),
+        )
+        for label, mutations in in_order
+    )
+
+
+def _order(mutations: tuple[Mutation, ...]) -> tuple[int, list[tuple[bool, int, str]]]:
+    return len(mutations), [mutation.residue_order for mutation in mutations]

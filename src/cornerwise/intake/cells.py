@@ -1,0 +1,176 @@
+"""From points to the curve of each cell, refusing what cannot be a charge-voltage curve."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from .. import plausible
+from ..campaign import Curve, FloatArray
+from ..errors import Origin
+from .findings import Findings, shown
+from .table import IntArray, Table, TextArray, factorize
+
+
+@dataclass(frozen=True, kw_only=True, slots=True, eq=False)
+class Points:
+    """All points of a table, flat; every array has shape (n_points,)."""
+
+    table: Table
+    construct: TextArray
+    cell: TextArray
+    voltage_mv: FloatArray
+    charge: FloatArray
+    index: IntArray  # row index in the table
+    column: IntArray  # index of the column that holds the charge
+    wide: bool
+    charge_unit: str = ""
+    batch: TextArray
+    holding_mv: FloatArray
+    phase: TextArray
+
+    def origin(self, point: int) -> Origin:
+        """Return the place of a point's charge; in the wide layout, that of its cell's header."""
+        raw = self.table.raw
+        row = raw.header_row if self.wide else int(raw.rows[self.index[point]])
+        return Origin(file=raw.file, row=row, column=raw.header[self.column[point]])
+
+
+def curves_of(points: Points, findings: Findings) -> tuple[Curve, ...]:
+    """Put together the curve of each cell.
+
+    Parameters
+    ----------
+    points : Points
+        All points, in any order.
+    findings : Findings
+        Takes cells with two batches, holding voltages or phases, and curves that cannot be.
+
+    Returns
+    -------
+    tuple of Curve
+        By construct and cell label; points in rising voltage. Cells with a fault are left out.
+    """
+    named = np.flatnonzero((points.construct != "") & (points.cell != ""))
+    sound = np.isfinite(points.voltage_mv) & np.isfinite(points.charge)
+    curves, narrow = [], []
+    for members in _cells(points, named):
+        curve = _curve(points, members)
+        if _steady(points, members) and sound[members].all():
+            fault = _shape_fault(curve, whole=points.table.raw.whole)
+            if fault == "narrow":
+                narrow.append(curve)
+            elif fault is not None:
+                _refuse_shape(curve, fault, findings)
+            else:
+                curves.append(curve)
+    _refuse_narrow(points, narrow, others=len(curves), findings=findings)
+    return tuple(sorted(curves, key=lambda curve: (curve.construct, curve.cell)))
+
+
+def _cells(points: Points, named: IntArray) -> list[IntArray]:
+    """Points of each cell, in rising voltage."""
+    if not named.size:
+        return []
+    cells, cell_labels = factorize(points.cell[named])
+    group = factorize(points.construct[named])[0] * len(cell_labels) + cells
+    order = np.lexsort((points.voltage_mv[named], group))
+    starts = np.flatnonzero(np.diff(group[order])) + 1
+    return np.split(named[order], starts)
+
+
+def _curve(points: Points, members: IntArray) -> Curve:
+    first = int(members[np.argmin(points.index[members])])
+    holding = float(points.holding_mv[first])
+    return Curve(
+        construct=str(points.construct[first]),
+        cell=str(points.cell[first]),
+        batch=str(points.batch[first]) or None,
+        voltage_mv=points.voltage_mv[members],
+        charge=points.charge[members],
+        charge_unit=points.charge_unit,
+        holding_mv=None if np.isnan(holding) else holding,
+        phase=str(points.phase[first]) or None,
+        origin=points.origin(first),
+    )
+
+
+def _steady(points: Points, members: IntArray) -> bool:
+    """Whether all points of a cell share batch, holding voltage and phase; if not, a fault each."""
+    first = int(members[np.argmin(points.index[members])])
+    steady = True
+    for base, values in (("batch", points.batch), ("holding", points.holding_mv), ("phase", points.phase)):
+        own = values[members]
+        same = (own == values[first]) | ((own != own) & (values[first] != values[first]))
+        if not same.all():
+            steady = False
+            other = int(members[~same][np.argmin(points.index[members[~same]])])
+            points.table.refuse(
+                int(points.index[other]),
+                base,
+                found=f"{_said(values[other])} for the cell {_name(points, first)}, which has "
+                f"{_said(values[first])} in row {points.table.raw.rows[points.index[first]]}",
+                expected=f"one {base} for all points of a cell",
+                remedy="correct the value, or give the second recording a cell label of its own",
+            )
+    return steady
+
+
+def _said(value: object) -> str:
+    return shown("" if value != value else str(value))
+
+
+def _name(points: Points, point: int) -> str:
+    return f"{points.construct[point]}/{points.cell[point]}"
+
+
+def _shape_fault(curve: Curve, *, whole: bool) -> str | None:
+    if len(curve.voltage_mv) < plausible.FEWEST_POINTS:
+        return "short" if whole else None
+    if plausible.too_narrow(curve.voltage_mv):
+        return "narrow"
+    judged = plausible.direction(curve.charge)
+    return None if judged == "rises" else judged
+
+
+def _refuse_shape(curve: Curve, fault: str, findings: Findings) -> None:
+    name = f"{curve.construct}/{curve.cell}"
+    found, expected, remedy = {
+        "short": (
+            f"{len(curve.voltage_mv)} points of the cell {name}",
+            f"at least {plausible.FEWEST_POINTS} points",
+            "add the other voltages or delete the cell",
+        ),
+        "flat": (
+            f"a flat curve: the charge of the cell {name} does not rise beyond its scatter",
+            "charge that rises with voltage",
+            "delete the cell, or correct its charges",
+        ),
+        "falls": (
+            f"a curve that falls: the charge of the cell {name} decreases with voltage",
+            "charge that rises with voltage, from resting to activated",
+            "flip the sign of the charges (or of the voltages, whichever is turned round)",
+        ),
+    }[fault]
+    findings.add(curve.origin, found=found, expected=expected, remedy=remedy)
+
+
+def _refuse_narrow(points: Points, narrow: list[Curve], *, others: int, findings: Findings) -> None:
+    """Refuse curves inside a few millivolts; told once when it is every curve of the table."""
+    expected = f"a curve over more than {plausible.NARROWEST_RANGE_MV:g} mV"
+    header = points.table.header("voltage")
+    remedy = "correct the voltages of this cell"
+    if points.table.unit("voltage") == "mV":
+        remedy = "if the values are volts, name the column voltage_V"
+    if len(narrow) > 1 and not others:
+        low = min(float(curve.voltage_mv[0]) for curve in narrow)
+        high = max(float(curve.voltage_mv[-1]) for curve in narrow)
+        found = f"all {len(narrow)} curves inside a few mV, between {low:g} and {high:g} mV"
+        findings.add(points.table.raw.header_origin(header), found=found, expected=expected, remedy=remedy)
+        return
+    for curve in narrow:
+        low, high = float(curve.voltage_mv[0]), float(curve.voltage_mv[-1])
+        found = f"the whole curve of the cell {curve.construct}/{curve.cell} between {low:g} and {high:g} mV"
+        place = Origin(file=curve.origin.file, row=curve.origin.row, column=header)
+        findings.add(place, found=found, expected=expected, remedy=remedy)

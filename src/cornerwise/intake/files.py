@@ -1,0 +1,115 @@
+"""Which files of a folder make up a campaign, and their bytes."""
+
+from __future__ import annotations
+
+import hashlib
+from collections import defaultdict
+from pathlib import Path
+
+from ..campaign import InputFile
+from ..errors import Origin
+from .findings import Findings, listing, nearest, shown
+
+TABLES = ("curves", "medians", "charges")
+SUFFIXES = (".csv", ".tsv", ".xlsx")
+CAMPAIGN_FILE = "campaign.toml"
+MOST_BYTES = 200_000_000
+
+_TABLE_LIKE = (*SUFFIXES, ".xls", ".xlsm", ".xlsb", ".ods", ".tab", ".dat", ".txt")
+
+
+def locate(folder: Path, findings: Findings) -> dict[str, Path]:
+    """Find the files of a campaign.
+
+    Parameters
+    ----------
+    folder : Path
+        The campaign's folder. Upper and lower case in file names do not matter. Folders, hidden files and
+        files that are no tables are passed over, and so are tables whose names resemble none of the known.
+    findings : Findings
+        Takes a missing ``campaign.toml``, two files of one table, names that are nearly right.
+
+    Returns
+    -------
+    dict of str to Path
+        ``campaign`` and the tables that are there.
+    """
+    files = sorted(p for p in folder.iterdir() if p.is_file() and not p.name.startswith((".", "~$")))
+    known: dict[str, list[Path]] = defaultdict(list)
+    for path in files:
+        stem, suffix = path.stem.casefold(), path.suffix.casefold()
+        if path.name.casefold() == CAMPAIGN_FILE:
+            known["campaign"].append(path)
+        elif stem in TABLES and suffix in SUFFIXES:
+            known[stem].append(path)
+        else:
+            _judge_stray(path, findings)
+    for name, paths in known.items():
+        if len(paths) > 1:
+            findings.add(
+                Origin(file=paths[-1].name),
+                found=f"the files {' and '.join(path.name for path in paths)}",
+                expected=f"one file for {name}",
+                remedy="delete one, or move it out of the folder",
+            )
+    if "campaign" not in known:
+        _refuse_missing_campaign(files, findings)
+    if not {"curves", "medians"} & known.keys():
+        findings.add(
+            Origin(),
+            found="neither curves nor medians in the folder",
+            expected=f"a table curves or medians, as {listing(SUFFIXES)}",
+            remedy="add curves.csv",
+        )
+    return {name: known[name][0] for name in ("campaign", *TABLES) if name in known}
+
+
+def read_bytes(path: Path, findings: Findings) -> tuple[bytes, InputFile] | None:
+    """Read a file and take its SHA-256; None when that fails, which is a fault."""
+    origin = Origin(file=path.name)
+    try:
+        size = path.stat().st_size
+        data = path.read_bytes() if size <= MOST_BYTES else b""
+    except OSError as error:
+        findings.add(
+            origin, found=f"a file that cannot be opened ({error.strerror})", expected="a readable file",
+            remedy="check its permissions and whether another program holds it",
+        )  # fmt: skip
+        return None
+    if size > MOST_BYTES:
+        findings.add(
+            origin, found=f"{size / 1e6:.0f} MB", expected=f"at most {MOST_BYTES / 1e6:.0f} MB",
+            remedy="keep one point per voltage step, not the recorded traces",
+        )  # fmt: skip
+        return None
+    return data, InputFile(name=path.name, sha256=hashlib.sha256(data).hexdigest())
+
+
+def _judge_stray(path: Path, findings: Findings) -> None:
+    """Refuse a table that was most likely meant to be read."""
+    stem, suffix = path.stem.casefold(), path.suffix.casefold()
+    if suffix not in _TABLE_LIKE:
+        return
+    names = ("campaign", *TABLES)
+    inside = next((name for name in names if name in stem and (stem == name or suffix != ".txt")), None)
+    close = inside or nearest(stem, names)
+    if close is None:
+        return
+    allowed = CAMPAIGN_FILE if close == "campaign" else listing(f"{close}{ending}" for ending in SUFFIXES)
+    findings.add(
+        Origin(file=path.name),
+        found=f"the file {shown(path.name)}, which is not read",
+        expected=allowed,
+        remedy="save it under this name if it belongs to the campaign, else move it out of the folder",
+    )
+
+
+def _refuse_missing_campaign(files: list[Path], findings: Findings) -> None:
+    others = [path.name for path in files if path.suffix.casefold() == ".toml"]
+    close = nearest(CAMPAIGN_FILE, others) or (others[0] if len(others) == 1 else None)
+    findings.add(
+        Origin(file=CAMPAIGN_FILE),
+        found="no such file",
+        expected=f"a file {CAMPAIGN_FILE} that names at least the wild type",
+        remedy=f"rename {close}" if close else 'write one with the line wild_type = "WT"',
+    )

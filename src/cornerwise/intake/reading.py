@@ -1,0 +1,166 @@
+"""From a path to a campaign: the one public entry of this room.
+
+A campaign is a folder with ``campaign.toml`` and the tables ``curves``, ``medians`` and ``charges``, each as
+``.csv``, ``.tsv`` or ``.xlsx`` and each once; or one workbook, see `cornerwise.intake.workbook`.
+"""
+
+from __future__ import annotations
+
+import os
+import re
+import tomllib
+from collections.abc import Mapping
+from dataclasses import dataclass
+from pathlib import Path
+
+from ..campaign import Campaign, InputFile
+from ..errors import DataRefused, Origin
+from . import text, workbook
+from .assemble import assemble
+from .book import open_book
+from .curves import CurvesRead, read_curves
+from .files import TABLES, locate, read_bytes
+from .findings import Findings
+from .header import RawTable
+from .listed import cycle_requests, listed_mutations
+from .parts import Parts
+from .settings import Document, read_settings
+from .summaries import ChargesRead, MediansRead, read_charges, read_medians
+
+_LINE = re.compile(r"\(at line (\d+), column \d+\)")
+
+
+@dataclass(frozen=True, kw_only=True, slots=True)
+class Source:
+    """A campaign's files opened: the settings and the tables as text."""
+
+    document: Document | None  # None when it could not be read
+    tables: Mapping[str, RawTable | None]  # those that are there; None when one could not be read
+    inputs: tuple[InputFile, ...]
+
+
+def read(path: str | os.PathLike[str]) -> Campaign:
+    """Read and check a campaign.
+
+    Parameters
+    ----------
+    path : str or path-like
+        A folder with ``campaign.toml`` and tables, or one ``.xlsx`` workbook.
+
+    Returns
+    -------
+    Campaign
+        The validated campaign; the order of rows, of files and of ``[[cycle]]`` entries does not show.
+
+    Raises
+    ------
+    DataRefused
+        If anything is wrong, with every problem found: file, row, column, what stands there, what should
+        stand there, and the way out.
+    """
+    findings = Findings()
+    campaign = _campaign(_open(Path(path), findings), findings)
+    if findings or campaign is None:
+        raise DataRefused(findings.in_order())
+    return campaign
+
+
+def _open(path: Path, findings: Findings) -> Source | None:
+    if path.is_dir():
+        return _open_folder(path, findings)
+    if path.is_file() and path.suffix.casefold() == ".xlsx":
+        return _open_workbook(path, findings)
+    found, remedy = "nothing under this path", "check the path"
+    if path.exists():
+        found = "a file that is no .xlsx workbook"
+        remedy = "give the folder that holds campaign.toml and the tables, or save the workbook as .xlsx"
+    findings.add(
+        Origin(file=str(path)),
+        found=found,
+        expected="a campaign: a folder or an .xlsx workbook",
+        remedy=remedy,
+    )
+    return None
+
+
+def _open_folder(folder: Path, findings: Findings) -> Source:
+    paths = locate(folder, findings)
+    document: Document | None = None
+    tables: dict[str, RawTable | None] = {}
+    inputs: list[InputFile] = []
+    for name, path in paths.items():
+        findings.take_up(path.name)
+        contents = read_bytes(path, findings)
+        if contents is not None:
+            inputs.append(contents[1])
+        if name == "campaign":
+            document = None if contents is None else _toml(contents[0], path.name, findings)
+        else:
+            tables[name] = None if contents is None else _table(contents[0], path, name, findings)
+    return Source(document=document, tables=tables, inputs=tuple(inputs))
+
+
+def _open_workbook(path: Path, findings: Findings) -> Source | None:
+    contents = read_bytes(path, findings)
+    if contents is None:
+        return None
+    book = open_book(contents[0], path.name, findings)
+    if book is None:
+        return None
+    with book:
+        document = workbook.read_document(book, findings)
+        tables = workbook.read_tables(book, TABLES, findings)
+    return Source(document=document, tables=tables, inputs=(contents[1],))
+
+
+def _toml(data: bytes, name: str, findings: Findings) -> Document | None:
+    decoded = text.decode(data, name, findings)
+    if decoded is None:
+        return None
+    try:
+        return Document(values=tomllib.loads(decoded), file=name)
+    except tomllib.TOMLDecodeError as error:
+        message = str(error)
+        line = _LINE.search(message)
+        row = int(line[1]) if line else decoded.count("\n") + 1
+        found = f"a line that is no TOML ({_LINE.sub('', message).strip()})"
+        findings.add(
+            Origin(file=name, row=row), found=found, expected='lines such as wild_type = "WT"',
+            remedy="put text in quotes, write numbers with a decimal point and each key once",
+        )  # fmt: skip
+        return None
+
+
+def _table(data: bytes, path: Path, name: str, findings: Findings) -> RawTable | None:
+    if path.suffix.casefold() != ".xlsx":
+        decoded = text.decode(data, path.name, findings)
+        return None if decoded is None else text.split(decoded, path.name, findings)
+    book = open_book(data, path.name, findings)
+    if book is None:
+        return None
+    with book:
+        return workbook.read_single_table(book, name, findings)
+
+
+def _campaign(source: Source | None, findings: Findings) -> Campaign | None:
+    """Make everything of the tables that can be made, so that every fault is found."""
+    if source is None:
+        return None
+    tables = source.tables
+    charges, medians, curves = (tables.get(name) for name in ("charges", "medians", "curves"))
+    curves_read = read_curves(curves, findings) if curves else CurvesRead(whole="curves" not in tables)
+    medians_read = read_medians(medians, findings) if medians else MediansRead(whole="medians" not in tables)
+    charges_read = read_charges(charges, findings) if charges else ChargesRead(whole="charges" not in tables)
+    if source.document is None:
+        return None
+    settings = read_settings(source.document, findings)
+    listed = listed_mutations(source.document, findings)
+    requests = cycle_requests(source.document, findings)
+    if settings is None:
+        return None
+    parts = Parts(
+        document=source.document, settings=settings, listed=listed, requests=requests,
+        curves=curves_read, medians=medians_read, charges=charges_read,
+        charges_file=charges.file if charges else None, inputs=source.inputs,
+    )  # fmt: skip
+    return assemble(parts, findings)

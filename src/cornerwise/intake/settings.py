@@ -1,0 +1,242 @@
+"""The keys of ``campaign.toml``: types, ranges, defaults, and the lists of mutations and of cycles."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Callable, Mapping
+from dataclasses import dataclass, field
+from typing import Any
+
+from .. import plausible
+from ..campaign import ChargePolicy, Settings, StatedCharge
+from ..errors import Origin
+from ..units import ENERGY_UNITS
+from .findings import Findings, listing, nearest, shown
+
+CHARGE_WORDS = ("measured", "wild-type")
+
+
+@dataclass(frozen=True, kw_only=True, slots=True)
+class Document:
+    """The content of ``campaign.toml``, or of the sheets that stand for it."""
+
+    values: Mapping[str, object]
+    file: str
+    rows: Mapping[tuple[str | int, ...], tuple[str, int]] = field(default_factory=dict)  # place in a workbook
+
+    def origin(self, *path: str | int) -> Origin:
+        """Return the place of a key, named by its path."""
+        file, row = self.rows.get(path, (self.file, None))
+        names = [f"entry {part + 1}" if isinstance(part, int) else part for part in path]
+        return Origin(file=file, row=row, column=" ".join(names) or None)
+
+
+@dataclass(frozen=True, kw_only=True, slots=True)
+class Rule:
+    """How a key is named, read and judged."""
+
+    key: str
+    attribute: str  # of `Settings`
+    read: Callable[[object], object]  # the value; raises ValueError if it is none
+    expected: str
+    remedy: str = "correct the value"
+
+
+def _text(value: object) -> str:
+    if not isinstance(value, str):
+        raise ValueError
+    return value
+
+
+def _label(value: object) -> str:
+    label = _text(value).strip()
+    if not label or not label.isprintable():
+        raise ValueError
+    return label
+
+
+def _number(value: object) -> float:
+    if isinstance(value, bool) or not isinstance(value, int | float) or not math.isfinite(value):
+        raise ValueError
+    return float(value)
+
+
+def _whole(least: int, most: float = math.inf) -> Callable[[object], int]:
+    def read(value: object) -> int:
+        if isinstance(value, bool) or not isinstance(value, int) or not least <= value <= most:
+            raise ValueError
+        return value
+
+    return read
+
+
+def _where(allowed: Callable[[float], bool]) -> Callable[[object], float]:
+    def read(value: object) -> float:
+        number = _number(value)
+        if not allowed(number):
+            raise ValueError
+        return number
+
+    return read
+
+
+def _energy_unit(value: object) -> str:
+    if value not in ENERGY_UNITS:
+        raise ValueError
+    return str(value)
+
+
+_LOW_C, _HIGH_C = plausible.TEMPERATURE_RANGE_C
+_POSITIVE = _where(lambda number: number > 0)
+
+RULES = (
+    Rule(key="title", attribute="title", read=_text, expected="text in quotes"),
+    Rule(
+        key="wild_type", attribute="wild_type", read=_label, expected="the wild type's label, in quotes",
+        remedy="write the label as it stands in the tables",
+    ),
+    Rule(
+        key="temperature_C", attribute="temperature_c", read=_where(plausible.possible_temperature),
+        expected=f"a temperature from {_LOW_C:g} to {_HIGH_C:g} degrees Celsius",
+        remedy="correct the value; subtract 273.15 if it is in kelvin",
+    ),
+    Rule(key="subunits", attribute="subunits", read=_whole(1), expected="a whole number, at least 1"),
+    Rule(
+        key="energy_unit", attribute="energy_unit", read=_energy_unit,
+        expected=listing(f'"{unit}"' for unit in ENERGY_UNITS),
+    ),
+    Rule(
+        key="confidence", attribute="confidence", read=_where(lambda number: 0.5 < number < 1),
+        expected="a number above 0.5 and below 1", remedy="write 0.95 for 95 %",
+    ),
+    Rule(
+        key="replicates", attribute="replicates", read=_whole(1000, 1_000_000),
+        expected="a whole number from 1000 to 1000000",
+    ),
+    Rule(key="seed", attribute="seed", read=_whole(0), expected="a whole number, not negative"),
+    Rule(
+        key="threshold", attribute="threshold", read=_POSITIVE,
+        expected="an energy above 0, in the campaign's energy_unit",
+    ),
+    Rule(
+        key="shortcut_tolerance", attribute="shortcut_tolerance", read=_POSITIVE,
+        expected="an energy above 0, in the campaign's energy_unit",
+    ),
+    Rule(
+        key="charge_margin", attribute="charge_margin", read=_where(lambda number: 0 < number < 1),
+        expected="a fraction above 0 and below 1", remedy="write 0.10 for 10 %",
+    ),
+    Rule(
+        key="voltage_offset_mV", attribute="voltage_offset_mv",
+        read=_where(lambda number: 0 <= number <= plausible.VOLTAGE_LIMIT_MV),
+        expected="a standard uncertainty in mV, not negative",
+    ),
+)  # fmt: skip
+
+KEYS = (*(rule.key for rule in RULES), "charge")
+TABLES = ("mutations", "cycle")
+
+
+def read_settings(document: Document, findings: Findings) -> Settings | None:
+    """Read every key but the tables of mutations and cycles.
+
+    Parameters
+    ----------
+    document : Document
+        The content of the file.
+    findings : Findings
+        Takes unknown keys, wrong types and values out of range.
+
+    Returns
+    -------
+    Settings or None
+        None only if the wild type is not named; keys at fault have their defaults.
+    """
+    for key in document.values:
+        if key not in (*KEYS, *TABLES):
+            _refuse_key(document.origin(key), key, (*KEYS, *TABLES), findings)
+    values: dict[str, Any] = {}
+    for rule in RULES:
+        if rule.key in document.values:
+            try:
+                values[rule.attribute] = rule.read(document.values[rule.key])
+            except ValueError:
+                found = say(document.values[rule.key])
+                origin = document.origin(rule.key)
+                findings.add(origin, found=found, expected=rule.expected, remedy=rule.remedy)
+    if "charge" in document.values:
+        values["charge"] = _charge_policy(document, findings)
+    if "wild_type" not in document.values:
+        findings.add(
+            document.origin("wild_type"),
+            found="no wild type",
+            expected="the label of the construct that all others are compared with",
+            remedy='add a line such as wild_type = "WT"',
+        )
+    if "wild_type" not in values:
+        return None
+    defaulted = tuple(key for key in KEYS if key not in document.values)
+    return Settings(**values, defaulted=defaulted)
+
+
+def say(value: object) -> str:
+    """Name a value and, when it is no text, its kind."""
+    match value:
+        case str():
+            return f"the text {shown(value)}" if value.strip() else "an empty text"
+        case bool():
+            return f"the truth value {str(value).lower()}"
+        case int() | float():
+            return f"the number {value}"
+        case Mapping():
+            return "a table"
+        case list():
+            return "a list"
+    return f"the value {value}"
+
+
+def _refuse_key(origin: Origin, key: str, known: tuple[str, ...], findings: Findings) -> None:
+    close = nearest(key, known)
+    findings.add(
+        origin,
+        found=f"the unknown key {shown(key)}",
+        expected=f"only the keys {', '.join(known)}",
+        remedy=f"did you mean {close}?" if close else "delete it",
+    )
+
+
+def _charge_policy(document: Document, findings: Findings) -> ChargePolicy:
+    stated = document.values["charge"]
+    if stated in CHARGE_WORDS:
+        return str(stated)
+    if isinstance(stated, Mapping):
+        return _stated_charge(document, stated, findings)
+    close = nearest(stated, CHARGE_WORDS) if isinstance(stated, str) else None
+    findings.add(
+        document.origin("charge"),
+        found=say(stated),
+        expected='"measured", "wild-type" or a table such as { value_e0 = 13.0, sem_e0 = 0.5 }',
+        remedy=f'did you mean "{close}"?' if close else "choose one of the three",
+    )
+    return "measured"
+
+
+def _stated_charge(document: Document, stated: Mapping[str, object], findings: Findings) -> ChargePolicy:
+    keys = ("value_e0", "sem_e0")
+    for key in stated:
+        if key not in keys:
+            _refuse_key(document.origin("charge", key), key, keys, findings)
+    possible = _where(plausible.possible_total_charge)
+    rules = (
+        (keys[0], possible, f"a charge per channel above 0, at most {plausible.CHARGE_LIMIT_E0:g} e0"),
+        (keys[1], _where(lambda number: number >= 0), "its standard uncertainty in e0, not negative"),
+    )
+    values: list[float] = []
+    for key, read, expected in rules:
+        try:
+            values.append(read(stated.get(key)))
+        except ValueError:
+            found = say(stated[key]) if key in stated else f"no {key}"
+            remedy = "write charge = { value_e0 = 13.0, sem_e0 = 0.5 } with your own values"
+            findings.add(document.origin("charge", key), found=found, expected=expected, remedy=remedy)
+    return StatedCharge(value_e0=values[0], sem_e0=values[1]) if len(values) == 2 else "measured"

@@ -1,0 +1,207 @@
+"""Text files to fields: the encoding, the delimiter, and the number of fields in every row.
+
+Encodings: UTF-8 and UTF-16, with a byte-order mark or (told by the zero bytes) without one; whatever is
+no valid UTF-8 is read as cp1252. Delimiter: the comma, the semicolon or the tab, whichever turns the
+header into the most known column names. Lines that are empty, hold delimiters only, or begin with ``#``
+are passed over; a label that begins with ``#`` must stand in quotes. Rows are counted as in a text
+editor, from 1. A quoted field may not run over the end of its line.
+"""
+
+from __future__ import annotations
+
+import codecs
+import csv
+
+import numpy as np
+
+from ..errors import Origin
+from .findings import Findings, shown
+from .header import RawTable
+from .table import SPREADSHEET_ERRORS
+
+DELIMITERS = {",": "commas", ";": "semicolons", "\t": "tabs"}
+MOST_ROWS = 5_000_000
+
+_MARKS = (
+    (codecs.BOM_UTF32_LE, "utf-32"),
+    (codecs.BOM_UTF32_BE, "utf-32"),
+    (codecs.BOM_UTF8, "utf-8-sig"),
+    (codecs.BOM_UTF16_LE, "utf-16"),
+    (codecs.BOM_UTF16_BE, "utf-16"),
+)
+_COLUMN_WORDS = frozenset(
+    ("construct", "cell", "batch", "voltage", "charge", "holding", "phase", "median", "sem", "n", "method")
+)
+
+
+def encoding_of(data: bytes) -> str:
+    """Name the encoding of a file's bytes."""
+    for mark, encoding in _MARKS:
+        if data.startswith(mark):
+            return encoding
+    even, odd = data[0:4096:2].count(0), data[1:4096:2].count(0)
+    if even or odd:
+        return "utf-16-le" if odd > even else "utf-16-be"
+    try:
+        data.decode("utf-8")
+    except UnicodeDecodeError:
+        return "cp1252"
+    return "utf-8"
+
+
+def decode(data: bytes, file: str, findings: Findings) -> str | None:
+    """Turn the bytes of a file into text with plain line ends; None when that fails, which is a fault."""
+    encoding = encoding_of(data)
+    try:
+        text = data.decode(encoding)
+    except UnicodeDecodeError as error:
+        findings.add(
+            Origin(file=file, row=data[: error.start].count(b"\n") + 1),
+            found=f"bytes that are no text ({encoding})",
+            expected="text in UTF-8, UTF-16 or cp1252",
+            remedy="save the file as UTF-8 text",
+        )
+        return None
+    return text.replace("\r\n", "\n").replace("\r", "\n")
+
+
+def split(text: str, file: str, findings: Findings) -> RawTable | None:
+    """Split a table into its fields.
+
+    Parameters
+    ----------
+    text : str
+        The file, with plain line ends.
+    file : str
+        Its name, for the faults.
+    findings : Findings
+        Takes rows with a wrong number of fields, unclosed quotes, a missing header.
+
+    Returns
+    -------
+    RawTable or None
+        None if no header could be read. Rows that were refused are left out.
+    """
+    lines = [_without_comment(line) for line in text.split("\n")]
+    first = next((number for number, line in enumerate(lines) if line.strip(" \t,;")), None)
+    if first is None:
+        refuse_empty(file, findings)
+        return None
+    if len(lines) > MOST_ROWS:
+        refuse_long(file, len(lines), findings)
+        return None
+    delimiter = sniff(lines[first])
+    records = _records(lines, delimiter, file, findings)
+    if not records or records[0][0] != first + 1:
+        return None
+    if len(records[0][1]) < 2:
+        _refuse_single_column(file, first + 1, lines[first], findings)
+        return None
+    return tabulate(records, delimiter, file, findings)
+
+
+def sniff(header: str) -> str:
+    """Return the delimiter that turns a header line into the most known column names.
+
+    Examples
+    --------
+    >>> sniff("voltage_mV,E181A;R212Q/c1,E181A;R212Q/c2")
+    ','
+    """
+
+    def score(delimiter: str) -> tuple[int, int]:
+        fields = next(csv.reader([header], delimiter=delimiter), [])
+        known = [field for field in fields if field.strip().partition("_")[0].casefold() in _COLUMN_WORDS]
+        return len(known), len(fields)
+
+    return max(DELIMITERS, key=score)
+
+
+def tabulate(records: list[tuple[int, list[str]]], delimiter: str, file: str, findings: Findings) -> RawTable:
+    """Put records of row number and fields, the header first, into columns; refuse uneven rows."""
+    header_row, header = records[0]
+    even = [(row, fields) for row, fields in records[1:] if len(fields) == len(header)]
+    if len(even) < len(records) - 1:
+        _refuse_uneven(records, delimiter, file, findings)
+    columns = list(zip(*(fields for _, fields in even), strict=True)) or [()] * len(header)
+    named = [
+        index for index, name in enumerate(header) if name.strip() or any(map(str.strip, columns[index]))
+    ]
+    return RawTable(
+        file=file,
+        header=tuple(header[index].strip() for index in named),
+        header_row=header_row,
+        rows=np.array([row for row, _ in even], dtype=np.int64),
+        columns=tuple(columns[index] for index in named),
+        delimiter=delimiter,
+        whole=len(even) == len(records) - 1,
+    )
+
+
+def _without_comment(line: str) -> str:
+    return "" if line.startswith("#") and not line.startswith(SPREADSHEET_ERRORS) else line
+
+
+def _records(lines: list[str], delimiter: str, file: str, findings: Findings) -> list[tuple[int, list[str]]]:
+    """Row number and fields of each line that holds anything, until a quote is left open."""
+    reader = csv.reader(lines, delimiter=delimiter, strict=True)
+    records: list[tuple[int, list[str]]] = []
+    before = 0
+    try:
+        for fields in reader:
+            if reader.line_num > before + 1:
+                raise csv.Error("a quoted field runs over the end of the line")
+            before = reader.line_num
+            if any(map(str.strip, fields)):
+                records.append((before, fields))
+    except csv.Error as error:
+        findings.add(
+            Origin(file=file, row=before + 1),
+            found=f"a row that cannot be split ({error})",
+            expected="each quoted field closed on its own line",
+            remedy="close the quote, or double it inside a quoted field; rows below were not read",
+        )
+        records = records[:1] if not records else [*records, (before + 1, [])]
+    return records
+
+
+def _refuse_uneven(
+    records: list[tuple[int, list[str]]], delimiter: str, file: str, findings: Findings
+) -> None:
+    expected = len(records[0][1])
+    remedy = "put text that holds the delimiter in quotes"
+    if delimiter == ",":
+        remedy += "; with decimal commas, separate the fields with semicolons"
+    for row, fields in records[1:]:
+        if fields and len(fields) != expected:
+            findings.add(
+                Origin(file=file, row=row),
+                found=f"{len(fields)} field{'s' * (len(fields) != 1)} separated by {DELIMITERS[delimiter]}",
+                expected=f"{expected}, as in the header",
+                remedy=remedy,
+            )
+
+
+def refuse_empty(file: str, findings: Findings) -> None:
+    """Refuse a table without a header."""
+    findings.add(
+        Origin(file=file), found="no header", expected="a header and one row per value",
+        remedy="fill in the file or delete it",
+    )  # fmt: skip
+
+
+def refuse_long(file: str, rows: int, findings: Findings) -> None:
+    """Refuse a table with too many rows."""
+    findings.add(
+        Origin(file=file), found=f"{rows} rows", expected=f"at most {MOST_ROWS} rows",
+        remedy="keep one point per voltage step, not the recorded traces",
+    )  # fmt: skip
+
+
+def _refuse_single_column(file: str, row: int, line: str, findings: Findings) -> None:
+    findings.add(
+        Origin(file=file, row=row),
+        found=f"a single column, {shown(line)}",
+        expected="a header separated by commas, semicolons or tabs",
+        remedy="save the table with one of these delimiters",
+    )
