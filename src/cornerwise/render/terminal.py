@@ -215,7 +215,8 @@ def _show_survey(survey: Survey, screen: Console) -> None:
     screen.print(grid)
     _print_flags(screen, survey.flags, marks)
     screen.print()
-    lines = [f"{len(survey.cycles)} complete cycles: {', '.join(survey.cycles)}"]
+    count = len(survey.cycles)
+    lines = [f"{count} complete cycle{'' if count == 1 else 's'}: {', '.join(survey.cycles)}"]
     lines += [f"{label}: no cycle, it lacks {', '.join(missing)}" for label, missing in survey.incomplete]
     if survey.background:
         lines.append(f"Background of every construct: {'/'.join(survey.background)}")

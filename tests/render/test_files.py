@@ -1,0 +1,111 @@
+import csv
+import json
+import math
+from pathlib import Path
+
+import pandas as pd
+import pytest
+from builders import campaign, construct
+
+from cornerwise.coupling import couple
+from cornerwise.errors import UsageError
+from cornerwise.render.files import check_destination, result_files, write_folder
+from cornerwise.result import Result
+
+# Written out again, so that a changed column is noticed.
+COLUMNS = {
+    "interactions.csv": (
+        "cycle,order,mutations,wild_type,interaction,energy_unit,std_uncertainty,dof,low,high,boot_low,"
+        "boot_high,p_value,p_adjusted,shortcut,shortcut_bias,shortcut_bias_low,shortcut_bias_high,"
+        "shortcut_verdict,charge_interaction_e0,charge_interaction_low,charge_interaction_high,"
+        "interaction_verdict,favours,rank,rank_low,rank_high,flags"
+    ),
+    "constructs.csv": (
+        "construct,mutations,cells,median_mV,median_sem_mV,charge_e0,charge_sem_e0,charge_n,charge_source,"
+        "energy,energy_unit,std_uncertainty,dof,low,high,charge_ratio,charge_ratio_low,charge_ratio_high,"
+        "charge_verdict,flags"
+    ),
+    "cells.csv": ("construct,cell,batch,median_mV,midpoint_mV,low_plateau,high_plateau,points,used,flags"),
+    "budget.csv": "cycle,source,contribution,share",
+}
+
+
+@pytest.fixture(scope="module")
+def result() -> Result:
+    medians = {"WT": -40.0, "E5A": -33.0, "R9Q": -52.0, "E5A/R9Q": -20.0}
+    constructs = [
+        construct(label, [m - 1, m, m + 0.7], None if label == "R9Q" else [13.0, 12.5, 13.3])
+        for label, m in medians.items()
+    ]
+    return couple(campaign(constructs))
+
+
+@pytest.mark.parametrize("name", COLUMNS)
+def test_columns_are_exactly_these(result: Result, name: str) -> None:
+    assert result_files(result)[name].splitlines()[0] == COLUMNS[name]
+
+
+def test_nothing_is_rounded_and_nothing_that_does_not_apply_is_zero(result: Result) -> None:
+    (row,) = csv.DictReader(result_files(result)["interactions.csv"].splitlines())
+    one = result.interactions[0]
+    for key in ("interaction", "std_uncertainty", "dof", "low", "boot_high", "p_value"):
+        assert float(row[key]) == getattr(one, key)
+    assert row["shortcut_bias"] == row["charge_interaction_e0"] == ""
+    assert row["order"] == "2"
+    assert row["rank"] == "1"
+    assert row["flags"] == " ".join(one.flags)
+    constructs = list(csv.DictReader(result_files(result)["constructs.csv"].splitlines()))
+    assert [line["cells"] for line in constructs] == ["3"] * 4
+    assert constructs[0]["charge_ratio"] == constructs[0]["charge_verdict"] == ""
+    assert constructs[2]["charge_source"] == "wild type"
+
+
+def test_text_is_ascii_apart_from_labels(result: Result) -> None:
+    assert all(text.isascii() for name, text in result_files(result).items() if name.endswith(".csv"))
+
+
+def test_csv_and_json_agree(result: Result) -> None:
+    document = json.loads(result.to_json())
+    frame = result.constructs.to_frame()
+    for row, energy in zip(document["constructs"], frame["energy"], strict=True):
+        assert row["energy"] == energy or (row["energy"] is None and math.isnan(energy))
+
+
+def test_frames_have_missing_values_not_text(result: Result) -> None:
+    frame = result.to_frame()
+    assert list(frame.columns) == COLUMNS["interactions.csv"].split(",")
+    assert pd.isna(frame["shortcut_bias"].iloc[0])
+
+
+def test_an_existing_folder_is_kept_unless_forced(tmp_path: Path) -> None:
+    folder = tmp_path / "out"
+    write_folder({"a.txt": "first"}, folder)
+    (folder / "mine.txt").write_text("kept")
+    with pytest.raises(UsageError, match="use --force"):
+        write_folder({"a.txt": "second"}, folder)
+    assert (folder / "a.txt").read_text() == "first"
+    write_folder({"b.txt": "third"}, folder, force=True)
+    assert sorted(path.name for path in folder.iterdir()) == ["b.txt"]
+    assert [path.name for path in tmp_path.iterdir()] == ["out"]
+
+
+def test_a_failed_write_leaves_the_earlier_result(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    folder = tmp_path / "out"
+    write_folder({"a.txt": "first"}, folder)
+
+    def full(self: Path, data: bytes) -> int:
+        raise OSError(28, "No space left on device")
+
+    monkeypatch.setattr(Path, "write_bytes", full)
+    with pytest.raises(UsageError, match="No space left on device; nothing was changed"):
+        write_folder({"a.txt": "second"}, folder, force=True)
+    assert (folder / "a.txt").read_text() == "first"
+    assert [path.name for path in tmp_path.iterdir()] == ["out"]
+
+
+def test_destination_is_checked_before_anything_is_computed(tmp_path: Path) -> None:
+    (tmp_path / "file").write_text("")
+    with pytest.raises(UsageError, match="is a file"):
+        check_destination(tmp_path / "file", force=True)
+    with pytest.raises(UsageError, match="is not a folder; make it first"):
+        check_destination(tmp_path / "no" / "out", force=False)
