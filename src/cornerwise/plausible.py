@@ -37,7 +37,7 @@ from numpy.typing import NDArray
 from scipy.optimize import isotonic_regression
 from scipy.special import betaincc
 
-from .campaign import FloatArray
+FloatArray = NDArray[np.float64]
 
 VOLTAGE_LIMIT_MV = 500.0  # membranes break down well before; common practice, no source
 NARROWEST_RANGE_MV = 5.0  # a curve inside this holds volts in a millivolt column

@@ -23,7 +23,7 @@ from ..errors import Origin
 from .findings import Findings, shown
 from .header import RawTable
 from .table import SPREADSHEET_ERRORS
-from .text import MOST_ROWS, refuse_empty, refuse_long, tabulate
+from .text import MOST_ROWS, Record, refuse_empty, refuse_long, tabulate
 
 TEXT_COLUMNS = ("construct", "cell", "batch", "phase", "method", "name", "mutations")
 MOST_UNPACKED_BYTES = 2_000_000_000
@@ -185,22 +185,22 @@ def read_sheet(book: Book, title: str, findings: Findings) -> RawTable | None:
     header = [str(value).strip() if isinstance(value, str) else "" for value in rows[0][1]]
     labels = {index for index, name in enumerate(header) if name in TEXT_COLUMNS}
     displayed = book.formats(title, _numbers_among_labels(rows[1:], labels))
-    records: list[tuple[int, list[str]]] = []
+    records: list[Record] = []
+    lost: list[str] = []
     for number, values in rows:
-        fields: list[str] = []
-        for index, value in enumerate(values):
-            text = cell_text(value, displayed.get((number, index), "General"))
-            if isinstance(text, Refusal) or index >= len(header):
-                column = (
-                    header[index] if index < len(header) and header[index] else get_column_letter(index + 1)
-                )
-                refuse_cell(Origin(file=file, row=number, column=column), text, findings)
-            else:
-                fields.append(text)
-        records.append(
-            (number, fields + [""] * (len(header) - len(values)) if len(fields) == len(values) else [])
-        )
-    return tabulate(records, "", file, findings) if records[0][1] else None
+        texts = [cell_text(value, displayed.get((number, i), "General")) for i, value in enumerate(values)]
+        faulty = [i for i, text in enumerate(texts) if isinstance(text, Refusal) or i >= len(header)]
+        for index in faulty:
+            name = header[index] if index < len(header) else ""
+            origin = Origin(file=file, row=number, column=name or get_column_letter(index + 1))
+            refuse_cell(origin, texts[index], findings)
+        if faulty:
+            lost.append("\n".join(texts))
+        else:
+            records.append((number, texts + [""] * (len(header) - len(texts))))
+    if not records or records[0][0] != rows[0][0]:
+        return None
+    return tabulate(records, "", file, findings, lost=lost)
 
 
 class Refusal(str):

@@ -30,6 +30,10 @@ class Points:
     holding_mv: FloatArray
     phase: TextArray
 
+    def label_origin(self, point: int) -> Origin:
+        """Return the place of a point's construct; in the wide layout, that of its cell's header."""
+        return self.origin(point) if self.wide else self.table.origin(int(self.index[point]), "construct")
+
     def origin(self, point: int) -> Origin:
         """Return the place of a point's charge; in the wide layout, that of its cell's header."""
         raw = self.table.raw
@@ -58,7 +62,7 @@ def curves_of(points: Points, findings: Findings) -> tuple[Curve, ...]:
     for members in _cells(points, named):
         curve = _curve(points, members)
         if _steady(points, members) and sound[members].all():
-            fault = _shape_fault(curve, whole=points.table.raw.whole)
+            fault = _shape_fault(curve, points.table.raw.lost)
             if fault == "narrow":
                 narrow.append(curve)
             elif fault is not None:
@@ -125,9 +129,9 @@ def _name(points: Points, point: int) -> str:
     return f"{points.construct[point]}/{points.cell[point]}"
 
 
-def _shape_fault(curve: Curve, *, whole: bool) -> str | None:
+def _shape_fault(curve: Curve, lost: tuple[str, ...]) -> str | None:
     if len(curve.voltage_mv) < plausible.FEWEST_POINTS:
-        return "short" if whole else None
+        return None if any(curve.cell in text for text in lost) else "short"
     if plausible.too_narrow(curve.voltage_mv):
         return "narrow"
     judged = plausible.direction(curve.charge)

@@ -22,10 +22,8 @@ def check(parts: Parts, aliases: frozenset[str], findings: Findings) -> None:
     _check_medians(parts, findings)
     _check_batches(parts, findings)
     _check_charges(parts, findings)
-    if parts.curves.whole and parts.medians.whole:
-        _check_voltages(parts, aliases, findings)
-        if parts.charges.whole:
-            _check_names(parts, findings)
+    _check_voltages(parts, aliases, findings)
+    _check_names(parts, findings)
 
 
 def _check_medians(parts: Parts, findings: Findings) -> None:
@@ -44,7 +42,7 @@ def _check_voltages(parts: Parts, aliases: frozenset[str], findings: Findings) -
     """Charges alone say nothing of an energy."""
     with_voltages = {**parts.curves.seen, **parts.medians.seen}
     for label, origin in parts.charges.seen.items():
-        if label not in with_voltages and label not in aliases:
+        if label not in aliases and parts.surely_without(label, parts.curves, parts.medians):
             close = nearest(label, with_voltages)
             findings.add(
                 origin,
@@ -72,7 +70,7 @@ def _check_batches(parts: Parts, findings: Findings) -> None:
 def _check_charges(parts: Parts, findings: Findings) -> None:
     """The charge policy finds the charges it needs."""
     policy, wild_type = parts.settings.charge, parts.settings.wild_type
-    if not isinstance(policy, str) or not parts.charges.whole or wild_type in parts.charges.seen:
+    if not isinstance(policy, str) or not parts.surely_without(wild_type, parts.charges):
         return
     state_one = (
         "state one charge for all in campaign.toml: charge = { value_e0 = 13.0, sem_e0 = 0.5 }, your values"
@@ -97,11 +95,12 @@ def _check_charges(parts: Parts, findings: Findings) -> None:
 def _check_names(parts: Parts, findings: Findings) -> None:
     """The labels in campaign.toml are those of constructs."""
     known = parts.seen
+    tables = (parts.curves, parts.medians, parts.charges)
     wild_type = parts.settings.wild_type
-    if wild_type not in known:
+    if parts.surely_without(wild_type, *tables):
         _refuse_name(parts.document.origin("wild_type"), "the wild type", wild_type, known, findings)
     for label in parts.listed:
-        if label not in known:
+        if parts.surely_without(label, *tables):
             _refuse_name(parts.document.origin("mutations", label), "mutations of", label, known, findings)
 
 

@@ -43,7 +43,8 @@ class CurvesRead:
 
     curves: tuple[Curve, ...] = ()
     seen: dict[str, Origin] = field(default_factory=dict)  # construct: where it is first named
-    whole: bool = True  # False when something could not be read, so that nothing may be called missing
+    lost: tuple[str, ...] = ()  # text that could not be read; what it names may not be called missing
+    readable: bool = True  # False when nothing could be read
 
 
 def read_curves(raw: RawTable, findings: Findings) -> CurvesRead:
@@ -65,12 +66,14 @@ def read_curves(raw: RawTable, findings: Findings) -> CurvesRead:
     wide = not {"construct", "cell"} & set(raw.header) and any("/" in header for header in raw.header)
     points = _wide_points(raw, findings) if wide else _tidy_points(raw, findings)
     if points is None:
-        return CurvesRead(whole=False)
+        return CurvesRead(readable=False)
     labels, first = np.unique(points.construct.astype(str), return_index=True)
     seen = {
-        str(label): points.origin(int(point)) for label, point in zip(labels, first, strict=True) if label
+        str(label): points.label_origin(int(point))
+        for label, point in zip(labels, first, strict=True)
+        if label
     }
-    return CurvesRead(curves=curves_of(points, findings), seen=seen, whole=raw.whole)
+    return CurvesRead(curves=curves_of(points, findings), seen=seen, lost=raw.lost)
 
 
 def _tidy_points(raw: RawTable, findings: Findings) -> Points | None:
@@ -83,7 +86,7 @@ def _tidy_points(raw: RawTable, findings: Findings) -> Points | None:
     table.check_decimal_mark()
     if not table.readable:
         return None
-    _refuse_repeated(table, construct, cell, voltage)
+    voltage = _once_only(table, construct, cell, voltage)
     n = len(table)
     return Points(
         table=table, construct=construct, cell=cell, voltage_mv=voltage, charge=charge, wide=False,
@@ -102,7 +105,7 @@ def _wide_points(raw: RawTable, findings: Findings) -> Points | None:
     if not table.readable or len(columns) < len(names):
         return None
     no_label = np.full(len(table), "", dtype=object)
-    _refuse_repeated(table, no_label, no_label, voltage)
+    voltage = _once_only(table, no_label, no_label, voltage)
     n, cells = len(table), [name for name in names.values() if name is not None]
     nothing = np.full(charge.size, "", dtype=object)
     return Points(
@@ -160,12 +163,14 @@ def _phases(table: Table) -> TextArray:
     return phase
 
 
-def _refuse_repeated(table: Table, construct: TextArray, cell: TextArray, voltage_mv: FloatArray) -> None:
-    """Refuse a second point of one cell at one voltage."""
+def _once_only(table: Table, construct: TextArray, cell: TextArray, voltage_mv: FloatArray) -> FloatArray:
+    """Refuse a second point of one cell at one voltage; return the voltages with NaN in its place."""
     group = factorize(construct)[0] * (len(cell) + 1) + factorize(cell)[0]
     order = np.lexsort((np.arange(len(table)), voltage_mv, group))
     same = (np.diff(group[order]) == 0) & (np.diff(voltage_mv[order]) == 0)
+    once = voltage_mv.copy()
     for place in np.flatnonzero(same) + 1:
+        once[order[place]] = np.nan
         table.refuse(
             int(order[place]),
             "voltage",
@@ -174,3 +179,4 @@ def _refuse_repeated(table: Table, construct: TextArray, cell: TextArray, voltag
             expected="each voltage once in a cell",
             remedy="delete one of them, average them, or give the second recording a cell label of its own",
         )
+    return once

@@ -30,9 +30,21 @@ class Parts:
     @property
     def seen(self) -> dict[str, Origin]:
         """Every construct named in a table, and where first."""
-        return {**self.charges.seen, **self.medians.seen, **self.curves.seen}
+        seen: dict[str, Origin] = {}
+        for table in (self.curves, self.medians, self.charges):
+            for label, origin in table.seen.items():
+                seen.setdefault(label, origin)
+        return seen
 
     @property
     def whole(self) -> bool:
-        """Whether every table could be read in full, so that something may be called missing."""
-        return self.curves.whole and self.medians.whole and self.charges.whole
+        """Whether every table could be read in full."""
+        tables = (self.curves, self.medians, self.charges)
+        return all(table.readable and not table.lost for table in tables)
+
+    def surely_without(self, label: str, *tables: CurvesRead | MediansRead | ChargesRead) -> bool:
+        """Whether none of `tables` names the construct `label`, nor may have in what could not be read."""
+        return all(
+            table.readable and label not in table.seen and not any(label in text for text in table.lost)
+            for table in tables
+        )

@@ -148,9 +148,13 @@ def _campaign(source: Source | None, findings: Findings) -> Campaign | None:
         return None
     tables = source.tables
     charges, medians, curves = (tables.get(name) for name in ("charges", "medians", "curves"))
-    curves_read = read_curves(curves, findings) if curves else CurvesRead(whole="curves" not in tables)
-    medians_read = read_medians(medians, findings) if medians else MediansRead(whole="medians" not in tables)
-    charges_read = read_charges(charges, findings) if charges else ChargesRead(whole="charges" not in tables)
+    curves_read = read_curves(curves, findings) if curves else CurvesRead(readable="curves" not in tables)
+    medians_read = (
+        read_medians(medians, findings) if medians else MediansRead(readable="medians" not in tables)
+    )
+    charges_read = (
+        read_charges(charges, findings) if charges else ChargesRead(readable="charges" not in tables)
+    )
     if source.document is None:
         return None
     settings = read_settings(source.document, findings)

@@ -86,6 +86,9 @@ def _energy_unit(value: object) -> str:
     return str(value)
 
 
+# Stands for a policy that was refused, so that no charges are called for in its name.
+_UNKNOWN_CHARGE = StatedCharge(value_e0=1.0, sem_e0=0.0)
+
 _LOW_C, _HIGH_C = plausible.TEMPERATURE_RANGE_C
 _POSITIVE = _where(lambda number: number > 0)
 
@@ -218,7 +221,7 @@ def _charge_policy(document: Document, findings: Findings) -> ChargePolicy:
         expected='"measured", "wild-type" or a table such as { value_e0 = 13.0, sem_e0 = 0.5 }',
         remedy=f'did you mean "{close}"?' if close else "choose one of the three",
     )
-    return "measured"
+    return _UNKNOWN_CHARGE
 
 
 def _stated_charge(document: Document, stated: Mapping[str, object], findings: Findings) -> ChargePolicy:
@@ -239,4 +242,4 @@ def _stated_charge(document: Document, stated: Mapping[str, object], findings: F
             found = say(stated[key]) if key in stated else f"no {key}"
             remedy = "write charge = { value_e0 = 13.0, sem_e0 = 0.5 } with your own values"
             findings.add(document.origin("charge", key), found=found, expected=expected, remedy=remedy)
-    return StatedCharge(value_e0=values[0], sem_e0=values[1]) if len(values) == 2 else "measured"
+    return StatedCharge(value_e0=values[0], sem_e0=values[1]) if len(values) == 2 else _UNKNOWN_CHARGE

@@ -49,7 +49,8 @@ class MediansRead:
 
     medians: tuple[MedianSummary, ...] = ()
     seen: dict[str, Origin] = field(default_factory=dict)  # construct: where it is first named
-    whole: bool = True  # False when something could not be read, so that nothing may be called missing
+    lost: tuple[str, ...] = ()  # text that could not be read; what it names may not be called missing
+    readable: bool = True  # False when nothing could be read
 
 
 @dataclass(frozen=True, kw_only=True, slots=True)
@@ -59,7 +60,8 @@ class ChargesRead:
     replicates: tuple[ChargeReplicate, ...] = ()
     summaries: tuple[ChargeSummary, ...] = ()
     seen: dict[str, Origin] = field(default_factory=dict)
-    whole: bool = True
+    lost: tuple[str, ...] = ()
+    readable: bool = True
 
 
 def read_medians(raw: RawTable, findings: Findings) -> MediansRead:
@@ -80,8 +82,8 @@ def read_medians(raw: RawTable, findings: Findings) -> MediansRead:
         )
         for i in rows
     )  # fmt: skip
-    whole = raw.whole and table.readable
-    return MediansRead(medians=tuple(medians), seen=_first_named(table, construct), whole=whole)
+    seen = _first_named(table, construct)
+    return MediansRead(medians=tuple(medians), seen=seen, lost=raw.lost, readable=table.readable)
 
 
 def read_charges(raw: RawTable, findings: Findings) -> ChargesRead:
@@ -91,11 +93,11 @@ def read_charges(raw: RawTable, findings: Findings) -> ChargesRead:
     ``charge_e0``, ``sem_e0``, ``n``. A table with a column ``cell`` holds replicates.
     """
     if refused_raw_charge(raw, findings):
-        return ChargesRead(whole=False)
+        return ChargesRead(readable=False)
     if "cell" in raw.header:
         if {"sem_e0", "n"} & set(raw.header):
             _refuse_both_kinds(raw, findings)
-            return ChargesRead(whole=False)
+            return ChargesRead(readable=False)
         return _read_replicates(Table(raw, REPLICATE_FIELDS, findings))
     return _read_summaries(Table(raw, SUMMARY_FIELDS, findings))
 
@@ -112,9 +114,9 @@ def _read_replicates(table: Table) -> ChargesRead:
         )
         for i in np.flatnonzero((construct != "") & (cell != "") & np.isfinite(charge))
     )  # fmt: skip
-    whole = table.raw.whole and table.readable
     in_order = tuple(sorted(replicates, key=lambda replicate: (replicate.construct, replicate.cell)))
-    return ChargesRead(replicates=in_order, seen=_first_named(table, construct), whole=whole)
+    seen = _first_named(table, construct)
+    return ChargesRead(replicates=in_order, seen=seen, lost=table.raw.lost, readable=table.readable)
 
 
 def _read_summaries(table: Table) -> ChargesRead:
@@ -129,8 +131,8 @@ def _read_summaries(table: Table) -> ChargesRead:
         )
         for i in np.flatnonzero((construct != "") & np.isfinite(charge) & np.isfinite(sem) & np.isfinite(n))
     )  # fmt: skip
-    whole = table.raw.whole and table.readable
-    return ChargesRead(summaries=tuple(summaries), seen=_first_named(table, construct), whole=whole)
+    seen = _first_named(table, construct)
+    return ChargesRead(summaries=tuple(summaries), seen=seen, lost=table.raw.lost, readable=table.readable)
 
 
 def _charges(table: Table) -> FloatArray:

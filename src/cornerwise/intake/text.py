@@ -11,6 +11,7 @@ from __future__ import annotations
 
 import codecs
 import csv
+from collections.abc import Sequence
 
 import numpy as np
 
@@ -21,6 +22,8 @@ from .table import SPREADSHEET_ERRORS
 
 DELIMITERS = {",": "commas", ";": "semicolons", "\t": "tabs"}
 MOST_ROWS = 5_000_000
+
+Record = tuple[int, list[str]]  # row number and fields
 
 _MARKS = (
     (codecs.BOM_UTF32_LE, "utf-32"),
@@ -83,21 +86,20 @@ def split(text: str, file: str, findings: Findings) -> RawTable | None:
         None if no header could be read. Rows that were refused are left out.
     """
     lines = [_without_comment(line) for line in text.split("\n")]
-    first = next((number for number, line in enumerate(lines) if line.strip(" \t,;")), None)
-    if first is None:
-        refuse_empty(file, findings)
-        return None
     if len(lines) > MOST_ROWS:
         refuse_long(file, len(lines), findings)
         return None
-    delimiter = sniff(lines[first])
-    records = _records(lines, delimiter, file, findings)
-    if not records or records[0][0] != first + 1:
+    first = next((line for line in lines if line), "")
+    delimiter = sniff(first)
+    records, lost = _records(lines, delimiter, file, findings)
+    if not records:
+        if not lost:
+            refuse_empty(file, findings)
         return None
     if len(records[0][1]) < 2:
-        _refuse_single_column(file, first + 1, lines[first], findings)
+        _refuse_single_column(file, records[0][0], first, findings)
         return None
-    return tabulate(records, delimiter, file, findings)
+    return tabulate(records, delimiter, file, findings, lost=lost)
 
 
 def sniff(header: str) -> str:
@@ -117,16 +119,32 @@ def sniff(header: str) -> str:
     return max(DELIMITERS, key=score)
 
 
-def tabulate(records: list[tuple[int, list[str]]], delimiter: str, file: str, findings: Findings) -> RawTable:
-    """Put records of row number and fields, the header first, into columns; refuse uneven rows."""
+def tabulate(
+    records: list[Record], delimiter: str, file: str, findings: Findings, *, lost: Sequence[str] = ()
+) -> RawTable:
+    """Put records, the header first, into columns; refuse uneven rows.
+
+    Parameters
+    ----------
+    records : list of (int, list of str)
+        Row number and fields.
+    delimiter : str
+        What separated the fields; "" in a workbook.
+    file : str
+        Its name, for the faults.
+    findings : Findings
+        Takes rows with another number of fields than the header.
+    lost : sequence of str
+        Text of rows that were left out before.
+    """
     header_row, header = records[0]
     even = [(row, fields) for row, fields in records[1:] if len(fields) == len(header)]
     if len(even) < len(records) - 1:
-        _refuse_uneven(records, delimiter, file, findings)
+        uneven = [(row, fields) for row, fields in records[1:] if len(fields) != len(header)]
+        _refuse_uneven(uneven, len(header), delimiter, file, findings)
+        lost = [*lost, *("\n".join(fields) for _, fields in uneven)]
     columns = list(zip(*(fields for _, fields in even), strict=True)) or [()] * len(header)
-    named = [
-        index for index, name in enumerate(header) if name.strip() or any(map(str.strip, columns[index]))
-    ]
+    named = [i for i, name in enumerate(header) if name.strip() or any(map(str.strip, columns[i]))]
     return RawTable(
         file=file,
         header=tuple(header[index].strip() for index in named),
@@ -134,18 +152,22 @@ def tabulate(records: list[tuple[int, list[str]]], delimiter: str, file: str, fi
         rows=np.array([row for row, _ in even], dtype=np.int64),
         columns=tuple(columns[index] for index in named),
         delimiter=delimiter,
-        whole=len(even) == len(records) - 1,
+        lost=tuple(lost),
     )
 
 
 def _without_comment(line: str) -> str:
-    return "" if line.startswith("#") and not line.startswith(SPREADSHEET_ERRORS) else line
+    """`line`, or nothing if it is a comment or holds delimiters only."""
+    comment = line.startswith("#") and not line.startswith(SPREADSHEET_ERRORS)
+    return "" if comment or not line.strip(" \t,;") else line
 
 
-def _records(lines: list[str], delimiter: str, file: str, findings: Findings) -> list[tuple[int, list[str]]]:
-    """Row number and fields of each line that holds anything, until a quote is left open."""
+def _records(
+    lines: list[str], delimiter: str, file: str, findings: Findings
+) -> tuple[list[Record], list[str]]:
+    """Row number and fields of each line that holds anything; what stands below an open quote is lost."""
     reader = csv.reader(lines, delimiter=delimiter, strict=True)
-    records: list[tuple[int, list[str]]] = []
+    records: list[Record] = []
     before = 0
     try:
         for fields in reader:
@@ -161,25 +183,23 @@ def _records(lines: list[str], delimiter: str, file: str, findings: Findings) ->
             expected="each quoted field closed on its own line",
             remedy="close the quote, or double it inside a quoted field; rows below were not read",
         )
-        records = records[:1] if not records else [*records, (before + 1, [])]
-    return records
+        return records, lines[before:]
+    return records, []
 
 
 def _refuse_uneven(
-    records: list[tuple[int, list[str]]], delimiter: str, file: str, findings: Findings
+    uneven: list[Record], expected: int, delimiter: str, file: str, findings: Findings
 ) -> None:
-    expected = len(records[0][1])
     remedy = "put text that holds the delimiter in quotes"
     if delimiter == ",":
         remedy += "; with decimal commas, separate the fields with semicolons"
-    for row, fields in records[1:]:
-        if fields and len(fields) != expected:
-            findings.add(
-                Origin(file=file, row=row),
-                found=f"{len(fields)} field{'s' * (len(fields) != 1)} separated by {DELIMITERS[delimiter]}",
-                expected=f"{expected}, as in the header",
-                remedy=remedy,
-            )
+    for row, fields in uneven:
+        findings.add(
+            Origin(file=file, row=row),
+            found=f"{len(fields)} field{'s' * (len(fields) != 1)} separated by {DELIMITERS[delimiter]}",
+            expected=f"{expected}, as in the header",
+            remedy=remedy,
+        )
 
 
 def refuse_empty(file: str, findings: Findings) -> None:

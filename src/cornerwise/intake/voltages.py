@@ -13,18 +13,18 @@ _EXPECTED = f"voltages between -{plausible.VOLTAGE_LIMIT_MV:g} and {plausible.VO
 
 
 def read_voltages(table: Table, base: str, *, empty: bool = False) -> FloatArray:
-    """Read a column of voltages in mV, shape (n_rows,); NaN where it holds no number.
+    """Read a column of voltages in mV, shape (n_rows,); NaN where it holds none that is possible.
 
     Volts are rounded to the picovolt, so that -0.12 V is -120 mV and nothing near it.
     """
     voltage = table.numbers(base, empty=empty)
     if base in table and table.unit(base) == "V":
         voltage = np.round(voltage * constants.kilo, 9)
-    refuse_beyond_limit(table, base, voltage)
-    return voltage
+    _refuse_beyond_limit(table, base, voltage)
+    return np.where(plausible.beyond_voltage_limit(voltage), np.nan, voltage)
 
 
-def refuse_beyond_limit(table: Table, base: str, voltage_mv: FloatArray) -> None:
+def _refuse_beyond_limit(table: Table, base: str, voltage_mv: FloatArray) -> None:
     """Refuse impossible voltages; a column that is mostly so has the wrong unit and is told once."""
     beyond = np.flatnonzero(plausible.beyond_voltage_limit(voltage_mv))
     if len(beyond) > max(2, len(voltage_mv) // 2):
