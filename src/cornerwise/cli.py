@@ -2,8 +2,10 @@
 
 from __future__ import annotations
 
+import os
 import sys
 import time
+import traceback
 from collections.abc import Callable
 from pathlib import Path
 from typing import Annotated
@@ -26,7 +28,7 @@ class _Boundary(TyperGroup):
             _report(error)
             raise SystemExit(error.exit_code) from None
         except BrokenPipeError:  # the reader of a pipe went away; nothing is wrong
-            sys.stderr.close()
+            os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
             raise SystemExit(0) from None
 
 
@@ -167,4 +169,9 @@ def couple(
 
 def main() -> None:
     """Entry point of the ``cornerwise`` command."""
-    app()
+    try:
+        app()
+    except Exception:  # whatever is left is no message for the user but a fault of ours
+        traceback.print_exc()
+        print("cornerwise: this is a fault of the program, please report it", file=sys.stderr)
+        raise SystemExit(CornerwiseError.exit_code) from None

@@ -1,0 +1,154 @@
+"""The command line as its user meets it."""
+
+import json
+import os
+import subprocess
+import sys
+from pathlib import Path
+
+import pytest
+from typer.testing import CliRunner, Result
+
+import cornerwise
+from cornerwise.cli import app
+
+CYCLES = Path(__file__).parents[1] / "cycles"
+PUBLISHED = CYCLES / "published-medians"
+
+
+def _run(*words: object) -> Result:
+    return CliRunner().invoke(app, [str(word) for word in words])
+
+
+def test_new_check_and_couple_work_on_each_other(tmp_path: Path) -> None:
+    trial = tmp_path / "trial"
+    assert _run("new", trial).exit_code == 0
+    assert sorted(p.name for p in trial.iterdir()) == ["campaign.toml", "charges.csv", "curves.csv"]
+    checked = _run("check", trial)
+    assert checked.exit_code == 0
+    assert "1 complete cycle: D171N/K232Q" in checked.stdout
+    coupled = _run("couple", trial, "--out", tmp_path / "results")
+    assert coupled.exit_code == 0
+    assert "D171N/K232Q" in coupled.stdout
+    assert "wrote result.json" in coupled.stderr
+    written = sorted(p.name for p in (tmp_path / "results").iterdir())
+    assert written == ["budget.csv", "cells.csv", "constructs.csv", "interactions.csv", "result.json"]
+
+
+def test_new_keeps_what_is_there(tmp_path: Path) -> None:
+    (tmp_path / "mine.txt").write_text("kept")
+    done = _run("new", tmp_path)
+    assert done.exit_code == 2
+    assert "is not an empty folder" in done.stderr
+    assert [p.name for p in tmp_path.iterdir()] == ["mine.txt"]
+
+
+def test_published_cycle_as_published() -> None:
+    done = _run("couple", PUBLISHED)
+    assert done.exit_code == 0
+    line = next(line for line in done.stdout.splitlines() if line.startswith("S411A/F433A"))
+    assert "2.00 ± 0.77" in line
+    assert "untested" in line
+
+
+def test_json_is_the_library_result() -> None:
+    done = _run("couple", PUBLISHED, "--json")
+    assert done.stdout == cornerwise.couple(cornerwise.read(PUBLISHED)).to_json()
+    survey = json.loads(_run("check", PUBLISHED, "--json").stdout)
+    assert survey["cycles"] == ["S411A/F433A"]
+    assert survey["background"] == ["V478W"]
+
+
+def test_same_call_same_bytes(tmp_path: Path) -> None:
+    for name in ("one", "two"):
+        assert _run("couple", PUBLISHED, "--out", tmp_path / name).exit_code == 0
+    for file in (tmp_path / "one").iterdir():
+        assert file.read_bytes() == (tmp_path / "two" / file.name).read_bytes()
+
+
+def test_refused_data_exit_3_and_write_nothing(tmp_path: Path) -> None:
+    campaign = tmp_path / "campaign"
+    campaign.mkdir()
+    (campaign / "campaign.toml").write_text('wild_type = "WT"\ncharge = "wild-type"\nsede = 3\n')
+    (campaign / "medians.csv").write_text("construct,median_mV,sem_mV,n\nWT,-40,1,5\nA1G,-900,1,1\n")
+    done = _run("couple", campaign, "--out", tmp_path / "out")
+    assert done.exit_code == 3
+    assert done.stdout == ""
+    for part in ("sede", "seed", "row 3", "-900"):
+        assert part in done.stderr
+    assert not (tmp_path / "out").exists()
+
+
+def test_existing_output_is_usage(tmp_path: Path) -> None:
+    done = _run("couple", PUBLISHED, "--out", tmp_path)
+    assert done.exit_code == 2
+    assert "use --force" in done.stderr
+    assert done.stdout == ""
+    assert _run("couple", PUBLISHED, "--out", tmp_path, "--force").exit_code == 0
+
+
+@pytest.mark.parametrize("words", [["couple"], ["couple", "x", "--no-such"], ["uncouple"]])
+def test_wrong_calls_exit_2(words: list[str]) -> None:
+    assert _run(*words).exit_code == 2
+
+
+def test_path_that_does_not_exist_is_refused() -> None:
+    done = _run("check", "no-such-folder")
+    assert done.exit_code == 3
+    assert "no-such-folder" in done.stderr
+
+
+@pytest.mark.parametrize("command", [[], ["new"], ["check"], ["couple"]])
+def test_help_shows_examples_at_80_columns(command: list[str]) -> None:
+    done = _run(*command, "--help")
+    assert done.exit_code == 0
+    assert "For example:\n" in done.stdout
+    assert max(map(len, done.stdout.splitlines())) <= 80
+
+
+def test_version() -> None:
+    assert _run("--version").stdout.startswith("cornerwise ")
+
+
+def _process(code: str) -> subprocess.CompletedProcess[str]:
+    environment = {**os.environ, "PYTHONIOENCODING": "utf-8"}
+    return subprocess.run(
+        [sys.executable, "-c", code], capture_output=True, text=True, env=environment, check=False
+    )
+
+
+def test_help_imports_nothing_heavy() -> None:
+    code = (
+        "import sys\nfrom cornerwise.cli import main\nsys.argv = ['cornerwise', '--help']\n"
+        "try:\n    main()\nexcept SystemExit:\n    pass\n"
+        "print([m for m in ('numpy', 'pandas', 'scipy', 'statsmodels') if m in sys.modules], file=sys.stderr)"
+    )
+    assert _process(code).stderr.strip() == "[]"
+
+
+def test_our_own_fault_exits_1() -> None:
+    code = (
+        "import sys, cornerwise.coupling\nfrom cornerwise.cli import main\n"
+        "def broken(*_):\n    raise RuntimeError('a wire came loose')\n"
+        "cornerwise.coupling.couple = broken\n"
+        f"sys.argv = ['cornerwise', 'couple', {str(PUBLISHED)!r}]\nmain()"
+    )
+    done = _process(code)
+    assert done.returncode == 1
+    assert "a wire came loose" in done.stderr
+    assert "please report" in done.stderr
+
+
+def test_reader_of_a_pipe_may_go_away() -> None:
+    command = f"{sys.executable} -m cornerwise couple {PUBLISHED} --json | head -1; echo ${{PIPESTATUS[0]}}"
+    done = subprocess.run(["bash", "-c", command], capture_output=True, text=True, check=False)
+    assert done.stdout.splitlines()[0] == "{"
+    assert done.stdout.splitlines()[-1] in {"0", "141"}
+    assert "Traceback" not in done.stderr
+
+
+def test_work_that_takes_long_is_reported_on_stderr(monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr("cornerwise.cli._PATIENCE_S", 0.0)
+    done = _run("couple", PUBLISHED)
+    assert "cornerwise: interactions, 1 of 1" in done.stderr
+    assert "1 of 1" not in done.stdout
