@@ -9,13 +9,10 @@ import numpy as np
 from scipy.special import stdtrit
 
 from .flags import Flag
-from .plateaus import PlateauSlope
 from .shapes import FloatArray
 
 MISSING_LIMIT = 0.02  # fraction of the charge outside the range at one end
-SLOPE_LIMIT = 0.05  # of one cell: charge the slope adds over the measured span, as a fraction of the total
-COMMON_SLOPE_LIMIT = 0.03  # of the mean over the construct's cells
-SLOPE_SIGNIFICANCE = 4.0  # times its standard uncertainty
+SLOPE_LIMIT = 0.03  # charge that a slope adds over the measured span, as a fraction of the total
 REVERSAL_LIMIT = 0.05  # fraction of the charge by which the curve falls back
 REVERSAL_IN_NOISE = 6.0  # and times the noise of a point
 STEPS_LIMIT = 2.0  # steps within the rise from 10 to 90 %
@@ -38,8 +35,8 @@ class Evidence:
     highest_mv: float
     missing_low: float
     missing_high: float
-    slope: PlateauSlope | None  # of both plateaus, per mV
-    common_slope: PlateauSlope | None  # mean over the construct's cells
+    slope_charge: float  # what a line under the curve adds over the measured span; 0 where none is supported
+    slope_shift_mv: float  # by how much the construct's mean median would move without it
     reversal: float  # largest fall below what was reached before
     reversal_mv: float  # where
     typical_noise: float  # from the median deviation, not spoilt by single points
@@ -93,8 +90,8 @@ def outlying_flags(subjects: Sequence[str], medians_mv: FloatArray) -> dict[str,
                 code="outlying-cell",
                 subject=subject,
                 message=f"the median lies {distance:+.1f} mV from the mean of the other {count - 1} cells, "
-                f"beyond the {limit:.1f} mV that chance explains; the cell is kept: look at its recording and "
-                "exclude it only with a reason",
+                f"beyond the {limit:.1f} mV that chance explains; the cell is kept: look at its recording "
+                "and exclude it only with a reason",
                 value=distance,
                 limit=limit,
             )
@@ -130,24 +127,18 @@ def _unsaturated_high(e: Evidence) -> Flag | None:
 
 
 def _sloping(e: Evidence) -> Flag | None:
-    for slope, limit, whose in (
-        (e.slope, SLOPE_LIMIT, "this cell"),
-        (e.common_slope, COMMON_SLOPE_LIMIT, "the mean of the construct's cells"),
-    ):
-        if slope is None:
-            continue
-        added = slope.slope * (e.highest_mv - e.lowest_mv)
-        if abs(added) > limit and abs(slope.slope) > SLOPE_SIGNIFICANCE * slope.std_uncertainty:
-            return Flag(
-                code="sloping-plateau",
-                subject=e.subject,
-                message=f"both plateaus slope ({whose}): over the measured span that adds {added:+.1%} of "
-                f"the charge, more than {limit:.0%}, as residual linear capacity does; correct the capacity or "
-                "ask for the slope to be taken off",
-                value=added,
-                limit=limit,
-            )
-    return None
+    if abs(e.slope_charge) <= SLOPE_LIMIT:
+        return None
+    return Flag(
+        code="sloping-plateau",
+        subject=e.subject,
+        message=f"both plateaus slope: over the measured span that adds {e.slope_charge:+.1%} of the charge, "
+        f"more than {SLOPE_LIMIT:.0%}, as residual linear capacity does; without it the construct's medians "
+        f"would lie {e.slope_shift_mv:+.1f} mV from here, which widens the uncertainty: correct the capacity "
+        "or ask for the slope to be taken off",
+        value=e.slope_charge,
+        limit=SLOPE_LIMIT,
+    )
 
 
 def _reversal(e: Evidence) -> Flag | None:

@@ -12,7 +12,6 @@ from __future__ import annotations
 import numpy as np
 
 from .shape_average import PooledShape
-from .shape_fit import Cells
 from .shapes import Family, FloatArray
 
 _UNIT_MIDPOINT_MV = 4.0
@@ -23,22 +22,21 @@ _BELIEF = np.array([0.5] + [0.5 / 6.0] * 6)  # before seeing the residuals: as l
 _FEWEST_FREE = 5
 
 
-def own_departure_mv(cells: Cells, pooled: PooledShape) -> FloatArray:
+def own_departure_mv(pooled: PooledShape) -> FloatArray:
     """Correction of each cell's median for its own shape.
 
     Parameters
     ----------
-    cells : Cells
-        The construct's curves.
     pooled : PooledShape
-        Their common shape; departures are those of its best candidate.
+        The cells' common shape; departures are those of its best candidate.
 
     Returns
     -------
     ndarray, shape (n_cells,)
         To be added to the medians (mV); all 0 for a single cell or when there are too few points to tell.
     """
-    fit, count = pooled.best, len(cells.y)
+    cells, fit = pooled.cells, pooled.best
+    count = len(cells.y)
     free = cells.points - count * (3 + fit.family.parameters)
     if count < 2 or free < _FEWEST_FREE:
         return np.zeros(count)

@@ -23,11 +23,12 @@ from .cell_reading import CellReading, FittedCurve, unreadable
 from .curve_quality import Evidence, cell_flags, outlying_flags
 from .departures import own_departure_mv
 from .extrapolation import Missing, missing_charge, truncation_mv
-from .plateaus import PlateauSlope, plain_median_mv, plain_uncertainty_mv, plateau_slope
+from .plateaus import plain_median_mv, plain_uncertainty_mv
 from .scaled_cells import ScaledCells, canonical, scale, why_unreadable
 from .shape_average import PooledShape, pool_shape
 from .shape_fit import Cells
 from .shapes import FloatArray
+from .sloping import Slopes, find_slopes, no_slopes
 
 __all__ = ["CellReading", "FittedCurve", "plain_median_mv", "read_construct"]
 
@@ -46,7 +47,7 @@ class _Findings:
     pooled: PooledShape
     departure_mv: FloatArray  # (n_cells,)
     missing: list[Missing]
-    slopes: list[PlateauSlope | None]
+    slopes: Slopes
     noise: FloatArray  # (n_cells,), fraction of each cell's charge
     midpoint_mv: float  # of the mean curve, relative to its median
     rise_mv: tuple[float, float]  # where the mean curve has moved 10 and 90 %, relative to its median
@@ -97,24 +98,25 @@ def read_construct(
 
 def _read(scaled: ScaledCells, correct: bool) -> list[CellReading]:
     pooled = _pool(scaled.cells)
-    slopes = _slopes(scaled.cells, pooled)
-    if correct and any(slope is not None for slope in slopes):
-        scaled = scaled.without_slopes(slopes)
+    slopes = find_slopes(pooled)
+    if correct and slopes.supported:
+        scaled = replace(scaled, cells=slopes.off(scaled.cells))
         pooled = _pool(scaled.cells)
-        slopes = _slopes(scaled.cells, pooled)
-    missing = missing_charge(scaled.cells, pooled)
-    middle, rise = _landmarks(scaled.cells, pooled)
+        slopes = no_slopes(scaled.cells)
+    missing = missing_charge(pooled)
+    middle, rise = _landmarks(pooled)
     found = _Findings(
         scaled=scaled,
         pooled=pooled,
-        departure_mv=own_departure_mv(scaled.cells, pooled),
+        departure_mv=own_departure_mv(pooled),
         missing=missing,
         slopes=slopes,
-        noise=_noise(scaled.cells, pooled) / np.maximum(np.abs(pooled.gain), _VARIANCE_FLOOR),
+        noise=_noise(pooled) / np.maximum(np.abs(pooled.gain), _VARIANCE_FLOOR),
         midpoint_mv=middle,
         rise_mv=rise,
     )
-    common = truncation_mv(scaled.cells, pooled, missing)
+    shift = slopes.shift_mv if slopes.supported else 0.0
+    common = truncation_mv(pooled, missing, slope_shift_mv=shift)
     readings = [_reading(found, i, common) for i in range(len(scaled.curves))]
     return _name_outliers(readings)
 
@@ -122,7 +124,7 @@ def _read(scaled: ScaledCells, correct: bool) -> list[CellReading]:
 def _pool(cells: Cells) -> PooledShape:
     """Pool the shape, a second time with weights when the cells' noise differs much."""
     pooled = pool_shape(cells)
-    variance = _noise(cells, pooled) ** 2
+    variance = _noise(pooled) ** 2
     typical = float(np.median(variance))
     count = (cells.weight > 0).sum(axis=1)
     steadied = (_NOISE_PRIOR_POINTS * typical + count * variance) / (_NOISE_PRIOR_POINTS + count)
@@ -130,40 +132,21 @@ def _pool(cells: Cells) -> PooledShape:
     if len(variance) < 2 or steadied.max() < _UNEVEN_NOISE * steadied.min():
         return pooled
     relative = np.clip(typical / steadied, 0.01, 4.0)
-    return pool_shape(cells._replace(weight=(cells.weight > 0) * relative[:, None]))
+    return pool_shape(replace(cells, weight=(cells.weight > 0) * relative[:, None]))
 
 
-def _noise(cells: Cells, pooled: PooledShape) -> FloatArray:
+def _noise(pooled: PooledShape) -> FloatArray:
     """Standard deviation of each cell's points around the averaged curve, cells scaled to 0..1."""
+    cells = pooled.cells
     inside = cells.weight > 0
     shared = pooled.best.family.parameters / len(cells.y)
     free = np.maximum(inside.sum(axis=1) - 3.0 - shared, 1.0)
     return np.asarray(np.sqrt((inside * pooled.residual**2).sum(axis=1) / free), dtype=np.float64)
 
 
-def _slopes(cells: Cells, pooled: PooledShape) -> list[PlateauSlope | None]:
-    """Slope of each cell's plateaus, judged where the single sigmoid is flat."""
-    single = pooled.fits[0]
-    q = single.family.q(cells.v_mv - single.shift_mv[:, None], single.theta)
-    inside = cells.weight > 0
-    return [
-        plateau_slope(v[use], y[use], q_cell[use])
-        for v, y, q_cell, use in zip(cells.v_mv, cells.y, q, inside, strict=True)
-    ]
-
-
-def _mean_slope(slopes: Sequence[PlateauSlope | None]) -> PlateauSlope | None:
-    known = [slope for slope in slopes if slope is not None]
-    if len(known) < 2 or 2 * len(known) <= len(slopes):  # most cells must show both plateaus
-        return None
-    variance = sum(slope.std_uncertainty**2 for slope in known)
-    mean = sum(slope.slope for slope in known) / len(known)
-    return PlateauSlope(mean, float(np.sqrt(variance)) / len(known))
-
-
-def _landmarks(cells: Cells, pooled: PooledShape) -> tuple[float, tuple[float, float]]:
+def _landmarks(pooled: PooledShape) -> tuple[float, tuple[float, float]]:
     """Where the mean curve has moved 50 %, and 10 and 90 %, relative to its median (mV)."""
-    measured = cells.v_mv[cells.weight > 0]
+    measured = pooled.cells.v_mv[pooled.cells.weight > 0]
     grid = np.linspace(measured.min(), measured.max(), _GRID_POINTS)
     q = pooled.q(grid[None], pooled.shifts_mv.mean(axis=1, keepdims=True))[0]
     at = np.interp([0.1, 0.5, 0.9], np.maximum.accumulate(q), grid) - pooled.median_mv.mean()
@@ -225,8 +208,8 @@ def _evidence(found: _Findings, i: int, median_mv: float, disagreement_mv: float
         highest_mv=float(curve.voltage_mv[-1]),
         missing_low=found.missing[i].low,
         missing_high=found.missing[i].high,
-        slope=found.slopes[i],
-        common_slope=_mean_slope(found.slopes),
+        slope_charge=float(found.slopes.added[i]) if found.slopes.supported else 0.0,
+        slope_shift_mv=found.slopes.shift_mv,
         reversal=float(fallen.max()),
         reversal_mv=float(curve.voltage_mv[int(np.argmax(fallen))]),
         typical_noise=max(_TO_SIGMA * spread, float(np.median(found.noise))),

@@ -3,12 +3,12 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 
 import numpy as np
 
 from .campaign import Curve
-from .plateaus import PlateauSlope, plain_median_mv, plain_plateaus
+from .plateaus import plain_median_mv, plain_plateaus
 from .shape_fit import Cells
 from .shapes import FloatArray
 
@@ -25,12 +25,6 @@ class ScaledCells:
     origin_mv: float  # subtracted from every voltage
     low: FloatArray  # (n_cells,), plain low plateau, subtracted from the charge
     height: FloatArray  # (n_cells,), plain plateau difference, divides the charge
-
-    def without_slopes(self, slopes: Sequence[PlateauSlope | None]) -> ScaledCells:
-        """Take the straight line of each cell's plateaus off its charges."""
-        steep = np.array([0.0 if slope is None else slope.slope for slope in slopes])
-        straight = self.cells.y - steep[:, None] * self.cells.v_mv
-        return replace(self, cells=self.cells._replace(y=straight))
 
 
 def canonical(curve: Curve) -> tuple[str, str, bytes, bytes]:

@@ -26,6 +26,8 @@ _SHALLOWEST_E0, _STEEPEST_E0 = 0.8, 15.0
 _MIDPOINT_SD = 5.0  # of a component, in widths kT/z of the single sigmoid
 _SMALLEST_MIDPOINT_SD_MV = 40.0  # of a ladder's step, whose midpoints may stand in any order
 _LOG_SLOPE_SD, _LOG_WEIGHT_SD, _LARGEST_LOG_WEIGHT = 0.8, 1.5, 5.0
+_SLOPE_SD = 0.1  # of the mean slope of the baselines, over the measured span as a fraction of the charge
+_SLOPE_SCATTER = (0.0, 0.01, 0.03, 0.1)  # of the cells' slopes around it, the same measure
 _VARIANCE_FLOOR = 1e-26  # of cells scaled to 0..1: rounding, not noise
 _QUANTILES = (0.05, 0.1, 0.2, 0.25, 0.35, 0.5, 0.65, 0.75, 0.8, 0.9, 0.95)
 
@@ -44,9 +46,11 @@ CANDIDATES = (
 class PooledShape:
     """All candidates fitted to one construct's cells, with their weights."""
 
+    cells: Cells  # as they were weighted
     fits: tuple[PooledFit, ...]
     weights: FloatArray  # (n_fits,), sum 1
     variance: float  # of the noise of a point of weight 1, cells scaled to 0..1
+    log_evidence: float  # of all candidates together; comparable between baselines of the same cells
 
     @property
     def best(self) -> PooledFit:
@@ -139,7 +143,13 @@ def pool_shape(cells: Cells) -> PooledShape:
         variance = min(variance, _variance(cells, fit))
     scores = np.array([_log_evidence(cells, fit, first, variance) for fit in fits])
     weights = np.exp(scores - scores.max())
-    return PooledShape(fits=tuple(fits), weights=weights / weights.sum(), variance=variance)
+    return PooledShape(
+        cells=cells,
+        fits=tuple(fits),
+        weights=weights / weights.sum(),
+        variance=variance,
+        log_evidence=float(scores.max() + np.log(weights.mean())),
+    )
 
 
 def _free(cells: Cells, family: Family) -> int:
@@ -275,4 +285,25 @@ def _log_evidence(cells: Cells, fit: PooledFit, single: PooledFit, variance: flo
     scaled = fit.information / variance * np.outer(sd, sd)
     _, log_volume = np.linalg.slogdet(scaled)
     distance = float((((fit.theta - mean) / sd) ** 2).sum())
-    return -0.5 * (free * float(np.log(misfit)) + distance + float(log_volume))
+    slopes = _slope_evidence(cells, fit, variance) if cells.baseline == "line" else 0.0
+    return slopes - 0.5 * (free * float(np.log(misfit)) + distance + float(log_volume))
+
+
+def _slope_evidence(cells: Cells, fit: PooledFit, variance: float) -> float:
+    """What the lines under the cells cost: their slopes scatter around a mean that the cells share.
+
+    Slopes of independent sizes would cost so much that a slow component common to all cells, which is the
+    wrong answer, would always come cheaper.
+    """
+    span = np.ptp(cells.v_mv, axis=1) / np.maximum(np.abs(fit.gain), _VARIANCE_FLOOR)
+    added = fit.slope * span  # fraction of the charge over the measured span
+    error = variance * span**2 / np.maximum(fit.slope_information, _VARIANCE_FLOOR)
+    scores = []
+    for scatter in _SLOPE_SCATTER:
+        total = error + scatter**2
+        weight = 1.0 / total
+        shared = 1.0 + _SLOPE_SD**2 * float(weight.sum())
+        power = float((weight * added**2).sum())
+        power -= _SLOPE_SD**2 * float((weight * added).sum()) ** 2 / shared
+        scores.append(-0.5 * (float(np.log(total / error).sum()) + float(np.log(shared)) + power))
+    return float(np.logaddexp.reduce(scores) - np.log(len(scores)))

@@ -15,7 +15,7 @@ cited from memory for the methods' names.)
 from __future__ import annotations
 
 from dataclasses import dataclass
-from typing import NamedTuple
+from typing import Literal, NamedTuple
 
 import numpy as np
 
@@ -27,18 +27,35 @@ _STEPS = 40
 _TINY = 1e-14
 
 
-class Cells(NamedTuple):
+@dataclass(frozen=True, slots=True, eq=False)
+class Cells:
     """Curves of one construct, padded to one length."""
 
     v_mv: FloatArray  # (n_cells, n_points)
     y: FloatArray  # (n_cells, n_points), each cell scaled to about 0..1
     weight: FloatArray  # (n_cells, n_points), 0 for padding
-    from_zero: bool = False  # the low plateau is known to be 0 and is not fitted
+    baseline: Literal["zero", "level", "line"] = "level"  # what each cell's curve stands on
 
     @property
     def points(self) -> int:
         """Number of measured points."""
         return int((self.weight > 0).sum())
+
+    @property
+    def baseline_basis(self) -> FloatArray:
+        """Orthonormal columns of the baseline under the weights, (n_columns, n_cells, n_points)."""
+        total = self.weight.sum(axis=-1, keepdims=True)
+        level = np.broadcast_to(1.0 / np.sqrt(total), self.v_mv.shape)
+        if self.baseline == "zero":
+            return np.empty((0, *self.v_mv.shape))
+        if self.baseline == "level":
+            return level[None]
+        centred = self.v_mv - (self.weight * self.v_mv).sum(axis=-1, keepdims=True) / total
+        return np.stack([level, centred / _length(self.weight, centred)])
+
+
+def _length(weight: FloatArray, x: FloatArray) -> FloatArray:
+    return np.asarray(np.sqrt((weight * x * x).sum(axis=-1, keepdims=True)), dtype=np.float64)
 
 
 @dataclass(frozen=True, kw_only=True, slots=True, eq=False)
@@ -65,7 +82,9 @@ class PooledFit:
     theta: FloatArray  # (n_parameters,)
     shift_mv: FloatArray  # (n_cells,)
     gain: FloatArray  # (n_cells,)
-    offset: FloatArray  # (n_cells,)
+    offset: FloatArray  # (n_cells,), of the baseline at the mean voltage
+    slope: FloatArray  # (n_cells,), of the baseline per mV; 0 unless it is a line
+    slope_information: FloatArray  # (n_cells,), of that slope at a given shape; 0 unless it is a line
     residual: FloatArray  # (n_cells, n_points)
     sum_of_squares: float
     information: FloatArray  # (n_parameters, n_parameters), shifts eliminated, prior included
@@ -89,10 +108,10 @@ class _Linearised(NamedTuple):
     """Everything at one point of the search; the leading axis is the batch of starts."""
 
     gain: FloatArray  # (b, c)
-    offset: FloatArray  # (b, c)
+    base: FloatArray  # (b, n_columns, c), coefficients of the baseline
     residual: FloatArray  # (b, c, n)
-    by_shift: FloatArray  # (b, c, n), gain and offset projected out
-    by_shape: FloatArray  # (b, p, c, n), gain and offset projected out
+    by_shift: FloatArray  # (b, c, n), gain and baseline projected out
+    by_shape: FloatArray  # (b, p, c, n), gain and baseline projected out
 
 
 class _Normal(NamedTuple):
@@ -144,13 +163,13 @@ def _search(
     cells: Cells, family: Family, theta: FloatArray, shift: FloatArray, prior: Prior, tolerance: float
 ) -> tuple[FloatArray, FloatArray]:
     """Levenberg-Marquardt over a batch of starts; ends when the best of them has converged."""
-    damping = np.full(len(theta), 1e-2)
-    here = _linearise(cells, family, theta, shift)
+    damping, basis = np.full(len(theta), 1e-2), cells.baseline_basis
+    here = _linearise(cells, family, theta, shift, basis)
     cost = _cost(cells, here, theta, prior)
     for step in range(_STEPS):
         normal = _normal(cells, here, theta, prior)
         new_theta, new_shift = _move(normal, theta, shift, damping, prior, family.step_limit)
-        there = _linearise(cells, family, new_theta, new_shift)
+        there = _linearise(cells, family, new_theta, new_shift, basis)
         new_cost = _cost(cells, there, new_theta, prior)
         better = new_cost <= cost
         small = np.where(better, cost - new_cost < tolerance * cost, damping > 1e6)
@@ -169,27 +188,35 @@ def _pick(better: np.ndarray, new: FloatArray, old: FloatArray) -> FloatArray:
     return np.where(better.reshape((-1,) + (1,) * (new.ndim - 1)), new, old)
 
 
-def _linearise(cells: Cells, family: Family, theta: FloatArray, shift: FloatArray) -> _Linearised:
-    """Solve for gains and offsets and project them out of the derivatives."""
-    w, total = cells.weight, cells.weight.sum(axis=-1)
+def _linearise(
+    cells: Cells, family: Family, theta: FloatArray, shift: FloatArray, basis: FloatArray
+) -> _Linearised:
+    """Solve for gains and baselines and project them out of the derivatives."""
+    w, wb = cells.weight, cells.weight * basis
     values = family.values(cells.v_mv[None] - shift[:, :, None], theta)
-    fitted = 0.0 if cells.from_zero else 1.0
-    q_mean = fitted * (w * values.q).sum(axis=-1) / total
-    y_mean = fitted * (w * cells.y).sum(axis=-1) / total
-    q = values.q - q_mean[..., None]
-    y = cells.y - y_mean[:, None]
+    q = _off_basis(values.q, basis, wb)
+    y = _off_basis(cells.y, basis, wb)
     norm = (w * q * q).sum(axis=-1) + _TINY**2  # a shape that is flat over a cell's range has no gain
     gain = (w * q * y).sum(axis=-1) / norm
-    unit, wq = fitted * w / total[:, None], w * q / norm[..., None]
-    slope = -gain[..., None] * values.slope
-    by_shift = _project(slope, unit, wq, q)
-    by_shape = _project(gain[:, None, :, None] * values.gradient, unit, wq[:, None], q[:, None])
-    return _Linearised(gain, y_mean - gain * q_mean, y - gain[..., None] * q, by_shift, by_shape)
+    wq = w * q / norm[..., None]
+    base = (wb * (cells.y - gain[..., None] * values.q)[:, None]).sum(axis=-1)
+    by_shift = _project(-gain[..., None] * values.slope, basis, wb, wq, q)
+    by_shape = _project(gain[:, None, :, None] * values.gradient, basis, wb, wq[:, None], q[:, None])
+    return _Linearised(gain, base, y - gain[..., None] * q, by_shift, by_shape)
 
 
-def _project(x: FloatArray, unit: FloatArray, wq: FloatArray, q: FloatArray) -> FloatArray:
-    """Part of `x` that neither an offset nor a gain can imitate."""
-    x = x - (unit * x).sum(axis=-1)[..., None]
+def _off_basis(x: FloatArray, basis: FloatArray, weighted_basis: FloatArray) -> FloatArray:
+    """Part of `x` that no baseline can imitate."""
+    for column, weighted in zip(basis, weighted_basis, strict=True):
+        x = x - (weighted * x).sum(axis=-1)[..., None] * column
+    return x
+
+
+def _project(
+    x: FloatArray, basis: FloatArray, weighted_basis: FloatArray, wq: FloatArray, q: FloatArray
+) -> FloatArray:
+    """Part of `x` that neither a baseline nor a gain can imitate."""
+    x = _off_basis(x, basis, weighted_basis)
     return np.asarray(x - (wq * x).sum(axis=-1)[..., None] * q, dtype=np.float64)
 
 
@@ -242,18 +269,23 @@ def _move(
 
 def _describe(cells: Cells, family: Family, theta: FloatArray, shift: FloatArray, prior: Prior) -> PooledFit:
     """Collect what the averaging needs at the optimum."""
-    here = _linearise(cells, family, theta[None], shift[None])
+    basis = cells.baseline_basis
+    here = _linearise(cells, family, theta[None], shift[None], basis)
     normal = _normal(cells, here, theta[None], prior)
     coupling, shift_information = normal.coupling[0], normal.shift[0]
     information = normal.shape[0] - np.einsum("pc,qc->pq", coupling / shift_information, coupling)
     along = coupling / shift_information
+    rise = family.values(cells.v_mv[None] - shift[None, :, None], theta[None]).slope[0]
+    slope, slope_information = _baseline_slope(cells, here, basis, rise)
     departure = here.by_shape[0] - along[:, :, None] * here.by_shift[0][None]
     return PooledFit(
         family=family,
         theta=theta,
         shift_mv=shift,
         gain=here.gain[0],
-        offset=here.offset[0],
+        offset=here.base[0, 0] * basis[0, :, 0] if len(basis) else np.zeros(len(shift)),
+        slope=slope,
+        slope_information=slope_information,
         residual=here.residual[0],
         sum_of_squares=float((cells.weight * here.residual[0] ** 2).sum()),
         information=information,
@@ -262,3 +294,20 @@ def _describe(cells: Cells, family: Family, theta: FloatArray, shift: FloatArray
         departure=np.moveaxis(departure, 0, -1),
         prior=prior,
     )
+
+
+def _baseline_slope(
+    cells: Cells, here: _Linearised, basis: FloatArray, rise: FloatArray
+) -> tuple[FloatArray, FloatArray]:
+    """Slope of each cell's baseline per mV, and its information with level, gain and shift free."""
+    if cells.baseline != "line":
+        none = np.zeros(len(cells.y))
+        return none, none
+    level, line = basis
+    per_mv = np.ptp(line, axis=-1) / np.ptp(cells.v_mv, axis=-1)
+    shape = cells.y - here.residual[0] - here.base[0, 1][:, None] * line
+    root = np.sqrt(cells.weight)[..., None]
+    others, _ = np.linalg.qr(root * np.stack([level, shape, rise], axis=-1))
+    along = (others * root * line[..., None]).sum(axis=1)
+    left = np.maximum(1.0 - (along**2).sum(axis=-1), 0.0)
+    return here.base[0, 1] * per_mv, left / per_mv**2
