@@ -6,7 +6,7 @@ import os
 import sys
 import time
 import traceback
-from collections.abc import Callable
+from collections.abc import Callable, Mapping
 from pathlib import Path
 from typing import Annotated
 
@@ -42,6 +42,7 @@ app = typer.Typer(
 
 _Campaign = Annotated[Path, typer.Argument(metavar="PATH", help="Campaign folder, or one .xlsx workbook.")]
 _Json = Annotated[bool, typer.Option("--json", help="Print JSON on stdout instead of a table.")]
+_Force = Annotated[bool, typer.Option("--force", help="Replace DIR as a whole if it exists.")]
 
 
 def _report(error: CornerwiseError) -> None:
@@ -64,6 +65,21 @@ def _progress() -> Callable[[str, int, int], None]:
             print(f"cornerwise: {step}, {done} of {total}", file=sys.stderr, flush=True)
 
     return report
+
+
+def _expect_room(folder: Path | None, *, force: bool) -> None:
+    """Refuse a destination before the work is done rather than after."""
+    from .render.files import check_destination
+
+    if folder is not None:
+        check_destination(folder, force=force)
+
+
+def _write(files: Mapping[str, str | bytes], folder: Path, *, force: bool) -> None:
+    from .render.files import write_folder
+
+    write_folder(files, folder, force=force)
+    print(f"cornerwise: wrote {', '.join(files)} into {folder}", file=sys.stderr)
 
 
 def _version(asked: bool) -> None:
@@ -111,23 +127,37 @@ def new(
 
 
 @app.command()
-def check(path: _Campaign, as_json: _Json = False) -> None:
-    """Read and judge the data; compute no energy, write nothing.
+def check(
+    path: _Campaign,
+    figures: Annotated[
+        Path | None,
+        typer.Option(metavar="DIR", help="Draw every construct's curves, SVG, PDF and PNG, into DIR."),
+    ] = None,
+    force: _Force = False,
+    as_json: _Json = False,
+) -> None:
+    """Read and judge the data; compute no energy.
 
     \b
     For example:
       cornerwise check trial
+      cornerwise check trial --figures look
       cornerwise check trial.xlsx --json
     """  # noqa: D301
     from . import read, survey
     from .render.machine import survey_json
     from .render.terminal import print_survey
 
+    _expect_room(figures, force=force)
     found = survey(read(path), _progress())
     if as_json:
         print(survey_json(found), end="")
     else:
         print_survey(found, sys.stdout)
+    if figures is not None:
+        from .render.figures.files import curve_files
+
+        _write(curve_files(found), figures, force=force)
 
 
 @app.command()
@@ -136,7 +166,7 @@ def couple(
     out: Annotated[
         Path | None, typer.Option(metavar="DIR", help="Write result.json and the CSV tables into DIR.")
     ] = None,
-    force: Annotated[bool, typer.Option("--force", help="Replace DIR as a whole if it exists.")] = False,
+    force: _Force = False,
     as_json: _Json = False,
 ) -> None:
     """Compute the interaction energies of all cycles.
@@ -151,20 +181,17 @@ def couple(
     """  # noqa: D301
     from . import couple as run
     from . import read
-    from .render.files import check_destination, result_files, write_folder
+    from .render.files import result_files
     from .render.terminal import print_result
 
-    if out is not None:
-        check_destination(out, force=force)
+    _expect_room(out, force=force)
     result = run(read(path), _progress())
     if as_json:
         print(result.to_json(), end="")
     else:
         print_result(result, sys.stdout)
     if out is not None:
-        files = result_files(result)
-        write_folder(files, out, force=force)
-        print(f"cornerwise: wrote {', '.join(files)} into {out}", file=sys.stderr)
+        _write(result_files(result), out, force=force)
 
 
 def main() -> None:

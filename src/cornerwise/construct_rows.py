@@ -6,14 +6,18 @@ import math
 from collections.abc import Mapping
 from dataclasses import replace
 
+import numpy as np
+
 from .campaign import Settings
 from .energies import Energy, EnergyBook
 from .flags import Flag, codes
 from .intervals import Interval, ratio_interval, t_interval
 from .measurements import Measurement
-from .result import CellRow, ConstructRow, available
+from .result import CellRow, ConstructRow, DrawnCurve, available
 from .sources import log_ratio
 from .verdicts import ChargeVerdict, charge_verdict
+
+_DRAWN_POINTS = 121
 
 
 def _charge_judgement(
@@ -114,10 +118,24 @@ def construct_row(
         charge_ratio_high=None if ratio_limits is None else available(ratio_limits.high),
         charge_verdict=verdict,
         flags=(),
+        curve=averaged_curve(measurement),
     )
     own = (*measurement.flags, *_charge_flags(label, verdict, row, settings.wild_type))
     of_cells = tuple(flag for reading in measurement.cells for flag in reading.flags)
     return replace(row, flags=codes(own + of_cells)), own + of_cells
+
+
+def averaged_curve(measurement: Measurement) -> DrawnCurve | None:
+    """Mean of the smooth curves of the cells that are used, over the voltages they were recorded at."""
+    fits = [reading.fit for reading in measurement.cells if reading.used and reading.fit is not None]
+    if not fits:
+        return None
+    curves = measurement.construct.curves
+    low = min(float(curve.voltage_mv[0]) for curve in curves)
+    high = max(float(curve.voltage_mv[-1]) for curve in curves)
+    grid = np.linspace(low, high, _DRAWN_POINTS)
+    mean = np.mean([fit.q(grid) for fit in fits], axis=0)
+    return DrawnCurve(voltage_mv=tuple(map(float, grid)), q=tuple(map(float, mean)))
 
 
 def cell_rows(measurement: Measurement) -> list[CellRow]:

@@ -81,6 +81,14 @@ class Table(Sequence[RowT], Generic[RowT]):
 
 
 @dataclass(frozen=True, kw_only=True, slots=True)
+class DrawnCurve:
+    """A smooth Q-V curve at the points where it is drawn."""
+
+    voltage_mv: tuple[float, ...]
+    q: tuple[float, ...]  # scaled 0..1
+
+
+@dataclass(frozen=True, kw_only=True, slots=True)
 class InteractionRow:
     """One cycle. Energies in `energy_unit` per channel; None where a field does not apply."""
 
@@ -157,6 +165,7 @@ class ConstructRow:
     charge_ratio_high: float | None
     charge_verdict: ChargeVerdict | None  # None for the wild type
     flags: tuple[str, ...]
+    curve: DrawnCurve | None  # averaged over the cells that are used; None without curves
 
     def cells(self) -> tuple[Value, ...]:
         """Values in the order of `columns`."""

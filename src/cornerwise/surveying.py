@@ -8,10 +8,11 @@ from dataclasses import dataclass
 from typing import ClassVar
 
 from .campaign import Campaign, Settings
+from .construct_rows import averaged_curve, cell_rows
 from .flags import Flag, codes
 from .measurements import Measurement, measure, protocol_flags
 from .mutations import incomplete_cycles
-from .result import Table, Value, available, flat_values
+from .result import CellRow, DrawnCurve, Table, Value, available, flat_values
 
 
 @dataclass(frozen=True, kw_only=True, slots=True)
@@ -33,6 +34,7 @@ class SurveyRow:
     charge_sem_e0: float | None
     charge_n: int | None
     flags: tuple[str, ...]
+    curve: DrawnCurve | None  # averaged over the cells that are used
 
     def cells(self) -> tuple[Value, ...]:
         """Values in the order of `columns`."""
@@ -46,6 +48,7 @@ class Survey:
     settings: Settings
     background: tuple[str, ...]
     constructs: Table[SurveyRow]  # the wild type first
+    cells: Table[CellRow]
     cycles: tuple[str, ...]  # complete ones, by order and residue
     incomplete: tuple[tuple[str, tuple[str, ...]], ...]  # construct, and what its cycle lacks
     flags: tuple[Flag, ...]
@@ -65,6 +68,7 @@ def _row(measurement: Measurement) -> tuple[SurveyRow, tuple[Flag, ...]]:
         charge_sem_e0=available(charge.sem if charge is not None else math.nan),
         charge_n=None if charge is None else charge.n,
         flags=codes(flags),
+        curve=averaged_curve(measurement),
     )
     return row, flags
 
@@ -85,7 +89,8 @@ def survey(campaign: Campaign, progress: Callable[[str, int, int], None] | None 
         A row a construct, the cycles that are complete, those that lack a construct, and every flag.
     """
     step = None if progress is None else lambda done, total: progress("median voltages", done, total)
-    rows = [_row(measurement) for measurement in measure(campaign, step)]
+    measured = measure(campaign, step)
+    rows = [_row(measurement) for measurement in measured]
     labels = {frozenset(construct.mutations): construct.label for construct in campaign.constructs}
     constructs = {construct.label: construct for construct in campaign.constructs}
     of_cycles = [
@@ -97,6 +102,7 @@ def survey(campaign: Campaign, progress: Callable[[str, int, int], None] | None 
         settings=campaign.settings,
         background=tuple(map(str, campaign.background)),
         constructs=Table(SurveyRow, [row for row, _ in rows]),
+        cells=Table(CellRow, [row for measurement in measured for row in cell_rows(measurement)]),
         cycles=tuple(cycle.name for cycle in campaign.cycles),
         incomplete=incomplete_cycles(labels),
         flags=(*(flag for _, flags in rows for flag in flags), *of_cycles),

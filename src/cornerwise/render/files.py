@@ -43,13 +43,13 @@ def result_files(result: Result) -> dict[str, str]:
     }
 
 
-def write_folder(files: Mapping[str, str], folder: Path, *, force: bool = False) -> None:
-    r"""Write text files into `folder`, all of them or none.
+def write_folder(files: Mapping[str, str | bytes], folder: Path, *, force: bool = False) -> None:
+    r"""Write files into `folder`, all of them or none.
 
     Parameters
     ----------
-    files : mapping of str to str
-        File name to text, written as UTF-8 with ``\n`` line ends.
+    files : mapping of str to str or bytes
+        File name to contents, text written as UTF-8 with ``\n`` line ends.
     folder : Path
         Appears, or is replaced, as a whole once every file is complete.
     force : bool, optional
@@ -67,8 +67,8 @@ def write_folder(files: Mapping[str, str], folder: Path, *, force: bool = False)
     except OSError as error:
         raise UsageError(f"cannot write beside {folder}: {error.strerror}") from error
     try:
-        for name, text in files.items():
-            (fresh / name).write_bytes(text.encode("utf-8"))
+        for name, contents in files.items():
+            (fresh / name).write_bytes(contents.encode("utf-8") if isinstance(contents, str) else contents)
         fresh.chmod(0o755)
         _move_into_place(fresh, folder)
     except OSError as error:

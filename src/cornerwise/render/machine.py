@@ -17,6 +17,7 @@ def survey_json(found: Survey) -> str:
         "settings": dataclasses.asdict(found.settings),
         "background": found.background,
         "constructs": [dataclasses.asdict(row) for row in found.constructs],
+        "cells": [dataclasses.asdict(row) for row in found.cells],
         "cycles": found.cycles,
         "incomplete": [{"construct": label, "lacks": missing} for label, missing in found.incomplete],
         "flags": [dataclasses.asdict(flag) for flag in found.flags],

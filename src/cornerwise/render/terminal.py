@@ -205,6 +205,22 @@ def print_survey(survey: Survey, stream: IO[str]) -> None:
         _show_survey(survey, screen)
 
 
+def _show_cells(screen: Console, survey: Survey, marks: dict[str, str]) -> None:
+    """Cells to look at: those with a flag of their own or set aside, alike ones on a line."""
+    groups: dict[tuple[str, tuple[str, ...], str], list[str]] = {}
+    for cell in survey.cells:
+        if cell.flags or not cell.used:
+            groups.setdefault((cell.construct, cell.flags, cell.reason or ""), []).append(cell.cell)
+    if not groups:
+        return
+    grid = _grid([("cells to look at", False), ("", False), ("flags", False)])
+    for (construct, flags, reason), cells in groups.items():
+        aside = f" (not used: {reason})" if reason else ""
+        grid.add_row(Text(construct), Text(", ".join(cells) + aside), Text(" ".join(marks[f] for f in flags)))
+    screen.print()
+    screen.print(grid)
+
+
 def _show_survey(survey: Survey, screen: Console) -> None:
     marks = _marks([flag.code for flag in survey.flags])
     grid = _grid(
@@ -213,6 +229,7 @@ def _show_survey(survey: Survey, screen: Console) -> None:
     for row in survey.constructs:
         grid.add_row(*_survey_line(row, marks, _plus_minus(screen)))
     screen.print(grid)
+    _show_cells(screen, survey, marks)
     _print_flags(screen, survey.flags, marks)
     screen.print()
     count = len(survey.cycles)

@@ -1,0 +1,1 @@
+"""Figures drawn from finished rows; nothing is computed here but where ink goes."""
