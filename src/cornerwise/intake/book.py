@@ -189,7 +189,11 @@ def read_sheet(book: Book, title: str, findings: Findings) -> RawTable | None:
     lost: list[str] = []
     for number, values in rows:
         texts = [cell_text(value, displayed.get((number, i), "General")) for i, value in enumerate(values)]
-        faulty = [i for i, text in enumerate(texts) if isinstance(text, Refusal) or i >= len(header)]
+        faulty = [
+            i
+            for i, text in enumerate(texts)
+            if isinstance(text, Refusal) or (text.strip() and i >= len(header))
+        ]
         for index in faulty:
             name = header[index] if index < len(header) else ""
             origin = Origin(file=file, row=number, column=name or get_column_letter(index + 1))
@@ -197,7 +201,7 @@ def read_sheet(book: Book, title: str, findings: Findings) -> RawTable | None:
         if faulty:
             lost.append("\n".join(texts))
         else:
-            records.append((number, texts + [""] * (len(header) - len(texts))))
+            records.append((number, (texts + [""] * len(header))[: len(header)]))
     if not records or records[0][0] != rows[0][0]:
         return None
     return tabulate(records, "", file, findings, lost=lost)

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 from ..errors import Origin
 from .findings import Findings, nearest, shown
 from .parts import Parts
@@ -59,7 +61,7 @@ def _check_batches(parts: Parts, findings: Findings) -> None:
         curve = batches.get((replicate.construct, replicate.cell))
         if curve and curve.batch and replicate.batch and curve.batch != replicate.batch:
             findings.add(
-                replicate.origin,
+                replace(replicate.origin, column="batch"),
                 found=f"batch {shown(replicate.batch)} of the cell {replicate.construct}/{replicate.cell}, "
                 f"which has batch {shown(curve.batch)} elsewhere ({curve.origin})",
                 expected="one batch for a cell of the same name in both tables",

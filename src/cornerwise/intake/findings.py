@@ -2,12 +2,13 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable
+from collections.abc import Iterable, Sequence
 from difflib import get_close_matches
 
 from ..errors import Origin, Problem
 
 _SHOWN_LENGTH = 60
+_SHORTEST_STEM = 3  # letters that may stand for the one name they begin
 
 
 class Findings:
@@ -16,6 +17,7 @@ class Findings:
     def __init__(self) -> None:
         self._problems: list[Problem] = []
         self._files: dict[str, int] = {}
+        self._columns: dict[tuple[str, str | None], int] = {}
 
     def __bool__(self) -> bool:
         return bool(self._problems)
@@ -24,15 +26,22 @@ class Findings:
         """Note that `file` comes next in the listing."""
         self._files.setdefault(file, len(self._files))
 
+    def take_columns(self, file: str, header: Sequence[str]) -> None:
+        """Note the order of the columns of a table."""
+        for place, column in enumerate(header):
+            self._columns.setdefault((file, column), place)
+
     def add(self, origin: Origin, *, found: str, expected: str, remedy: str) -> None:
         """Add one fault."""
         self._problems.append(Problem(origin=origin, found=found, expected=expected, remedy=remedy))
 
     def in_order(self) -> tuple[Problem, ...]:
-        """Return all faults by file, then by row; faults of one row in the order they were found."""
-        return tuple(
-            sorted(self._problems, key=lambda p: (self._files.get(p.origin.file, -1), p.origin.row or 0))
-        )
+        """Return all faults by file, row and column; those of one place in the order they were found."""
+        return tuple(sorted(self._problems, key=lambda problem: self._place(problem.origin)))
+
+    def _place(self, origin: Origin) -> tuple[int, int, int]:
+        column = self._columns.get((origin.file, origin.column), -1)
+        return self._files.get(origin.file, -1), origin.row or 0, column
 
 
 def shown(text: str) -> str:
@@ -46,8 +55,11 @@ def shown(text: str) -> str:
 def nearest(word: str, known: Iterable[str]) -> str | None:
     """Return the one of `known` closest in spelling, or None if none is close."""
     by_folded = {name.casefold(): name for name in known}
-    found = get_close_matches(word.strip().casefold(), by_folded, n=1, cutoff=0.7)
-    return by_folded[found[0]] if found else None
+    folded = word.strip().casefold()
+    found = get_close_matches(folded, by_folded, n=1, cutoff=0.7)
+    if not found and len(folded) >= _SHORTEST_STEM:
+        found = [name for name in by_folded if name.startswith(folded)]
+    return by_folded[found[0]] if len(found) == 1 else None
 
 
 def listing(words: Iterable[str]) -> str:

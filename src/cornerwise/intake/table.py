@@ -41,6 +41,7 @@ class Table:
     ) -> None:
         self.raw = raw
         self.findings = findings
+        findings.take_columns(raw.file, raw.header)
         self.found = match_header(raw, fields, findings, cells=cells)
         self.readable = all(field.base in self.found for field in fields if field.required)
         self._marks: dict[str, tuple[Origin, str]] = {}  # decimal mark: where it was first seen, and how
@@ -115,7 +116,7 @@ class Table:
             ]
             for flat in np.flatnonzero(np.array(marked, dtype=bool)[codes])[:1].tolist():
                 self._marks.setdefault(mark, (self._place(flat, columns), uniques[codes[flat]]))
-        self._refuse_grouped(columns, codes, uniques)
+        values[self._refuse_grouped(columns, codes, uniques)] = np.nan
         return np.asarray(values[codes].reshape(len(columns), len(self)))
 
     def whole_numbers(self, base: str, *, least: int) -> FloatArray:
@@ -145,11 +146,11 @@ class Table:
         name = self.raw.header[columns[column]]
         return Origin(file=self.raw.file, row=int(self.raw.rows[index]), column=name)
 
-    def _refuse_grouped(self, columns: Sequence[int], codes: IntArray, uniques: Sequence[str]) -> None:
-        """Between tabs, 1,500 may be meant as 1500: refuse a column in which every comma can be read so."""
+    def _refuse_grouped(self, columns: Sequence[int], codes: IntArray, uniques: Sequence[str]) -> list[int]:
+        """Refuse a column between tabs in which every comma may set off thousands; return their codes."""
         commas = [code for code, text in enumerate(uniques) if "," in text]
         if self.raw.delimiter != "\t" or not commas or not all(looks_grouped(uniques[c]) for c in commas):
-            return
+            return []
         flat = int(np.flatnonzero(codes == commas[0])[0])
         self.findings.add(
             self._place(flat, columns),
@@ -157,6 +158,7 @@ class Table:
             expected="no thousands separators",
             remedy="write 1500 or, if the comma is a decimal mark, separate the fields with semicolons",
         )
+        return commas
 
     def _refuse_word(self, index: int, base: str, text: str) -> None:
         found, remedy = f"the spreadsheet error {text}", "mend the formula or type the label"

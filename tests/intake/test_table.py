@@ -1,0 +1,157 @@
+"""Headers with their units, numbers, labels as text."""
+
+from pathlib import Path
+
+import pytest
+
+from cornerwise.intake import read
+from cornerwise.intake.numbers import parse_number
+from intake.writing import LABELS, Rows, assert_refused, content, curve_rows, folder, problems, text_of
+
+
+def with_header(position: int, name: str) -> Rows:
+    rows = curve_rows()
+    rows[0][position] = name
+    return rows
+
+
+@pytest.mark.parametrize(
+    ("position", "name", "match"),
+    [
+        (2, "voltage", "voltage_mV or voltage_V; put the unit"),
+        (2, "voltage (mV)", "voltage_mV or voltage_V"),
+        (2, "voltage_uV", "voltage_mV or voltage_V"),
+        (2, "Voltage_mV", "voltage_mV or voltage_V"),
+        (3, "charge_uC", "charge, charge_fC, charge_pC, charge_nC or charge_e0"),
+        (3, "chrage", r"unknown column 'chrage'.*did you mean charge\?"),
+        (0, "constuct", r"unknown column 'constuct'.*did you mean construct\?"),
+    ],
+)
+def test_headers_that_are_nearly_right(position: int, name: str, match: str, tmp_path: Path) -> None:
+    path = folder(tmp_path / "a", curves=with_header(position, name))
+    assert_refused(path, file="curves.csv", row=1, column=name, match=match)
+
+
+def test_an_unknown_column(tmp_path: Path) -> None:
+    rows = [[*row, "temperature" if i == 0 else "22"] for i, row in enumerate(curve_rows())]
+    path = folder(tmp_path / "a", curves=rows)
+    assert_refused(path, file="curves.csv", row=1, column="temperature", match="unknown column.*delete the")
+
+
+def test_a_missing_column(tmp_path: Path) -> None:
+    rows = [row[:3] for row in curve_rows()]
+    path = folder(tmp_path / "a", curves=rows)
+    assert_refused(
+        path, file="curves.csv", row=1, column="charge", match="expected a column charge, charge_fC"
+    )
+
+
+def test_a_doubled_header(tmp_path: Path) -> None:
+    rows = [[*row, row[3]] for row in curve_rows()]
+    path = folder(tmp_path / "a", curves=rows)
+    assert_refused(path, file="curves.csv", row=1, column="charge", match="2 columns called 'charge'")
+
+
+def test_a_quantity_in_two_units(tmp_path: Path) -> None:
+    rows = [[*row, "charge_pC" if i == 0 else row[3]] for i, row in enumerate(curve_rows())]
+    path = folder(tmp_path / "a", curves=rows)
+    assert_refused(path, file="curves.csv", row=1, column="charge_pC", match="both charge and charge_pC")
+
+
+def test_the_order_of_columns_does_not_matter(tmp_path: Path) -> None:
+    turned = [row[::-1] for row in curve_rows()]
+    assert content(read(folder(tmp_path / "a", curves=turned))) == content(read(folder(tmp_path / "b")))
+
+
+@pytest.mark.parametrize(
+    ("text", "match"),
+    [
+        ("", "found nothing; expected a number"),
+        ("nan", "'nan'; expected a finite number"),
+        ("NaN", "'NaN'; expected a finite number"),
+        ("-inf", "'-inf'; expected a finite number"),
+        ("1e999", "'1e999'; expected a number"),
+        ("1_000", "'1_000'; expected a number"),
+        ("0.5 pC", "the unit belongs in the header"),
+        ("٣", "expected a number"),
+        ("–0.5", "expected a number"),
+        ("0x10", "expected a number"),
+        ("#N/A", "expected a number"),
+    ],
+)
+def test_what_is_no_number(text: str, match: str, tmp_path: Path) -> None:
+    rows = curve_rows()
+    rows[4][3] = text
+    path = folder(tmp_path / "a", curves=rows)
+    assert_refused(path, file="curves.csv", row=5, column="charge", match=match)
+
+
+@pytest.mark.parametrize(
+    ("text", "delimiter", "match"),
+    [
+        ('"0,5"', ",", "expected a number with a decimal point"),
+        ("1,234.5", ";", "without thousands separators"),
+        ("1.234,5", ";", "without thousands separators"),
+        ("1,234,567", ";", "expected a number"),
+    ],
+)
+def test_commas_in_numbers(text: str, delimiter: str, match: str, tmp_path: Path) -> None:
+    rows = curve_rows()
+    rows[4][3] = text
+    path = folder(tmp_path / "a", curves=text_of(rows, delimiter))
+    assert_refused(path, file="curves.csv", row=5, column="charge", match=match)
+
+
+def test_two_decimal_marks_in_one_file(tmp_path: Path) -> None:
+    rows = curve_rows()
+    rows[4][3] = "0,31"
+    path = folder(tmp_path / "a", curves=text_of(rows, ";"))
+    assert_refused(path, file="curves.csv", row=5, column="charge", match="'0,31' here and '0.0' in row 2")
+
+
+def test_thousands_between_tabs(tmp_path: Path) -> None:
+    rows = curve_rows()
+    for row in rows[1:]:
+        row[3] = str(int(1000 * float(row[3]))) if row[3] != "1.0" else "1,000"
+    path = folder(tmp_path / "a", curves=text_of(rows, "\t"))
+    assert_refused(path, file="curves.csv", row=9, column="charge", match="'1,000'.*thousand times")
+
+
+@pytest.mark.parametrize(
+    ("text", "value"),
+    [("-5", -5), (" +.5 ", 0.5), ("5.", 5), ("1e-3", 0.001), ("−2.5E+1", -25), ("\xa07", 7)],
+)
+def test_numbers_as_people_type_them(text: str, value: float) -> None:
+    assert parse_number(text, ",") == value
+
+
+@pytest.mark.parametrize("label", ["NA", "001", "1E5", "nan", "True", "null", "-", "[wt]", "=1+1", "Δ6-46"])
+def test_labels_stay_text(label: str, tmp_path: Path) -> None:
+    toml = f'wild_type = "{label}"\ncharge = {{ value_e0 = 13.0, sem_e0 = 0.5 }}\n'
+    rows = curve_rows((label, *LABELS[1:]), cells=("007", "NA"))
+    campaign = read(folder(tmp_path / "a", toml=toml, curves=rows))
+    assert campaign.constructs[0].label == label
+    assert [curve.cell for curve in campaign.constructs[0].curves] == ["007", "NA"]
+
+
+def test_outer_spaces_of_labels_do_not_count(tmp_path: Path) -> None:
+    rows = [[f" {field} " for field in row] for row in curve_rows()]
+    assert content(read(folder(tmp_path / "a", curves=rows))) == content(read(folder(tmp_path / "b")))
+
+
+@pytest.mark.parametrize(("position", "column"), [(0, "construct"), (1, "cell")])
+def test_an_empty_label(position: int, column: str, tmp_path: Path) -> None:
+    rows = curve_rows()
+    rows += [["WT", "c2", *row[2:]] for row in rows[1:9]]
+    rows[35][position] = " "
+    path = folder(tmp_path / "a", curves=rows)
+    assert (36, column) in [(problem.origin.row, problem.origin.column) for problem in problems(path)]
+    assert "found nothing; expected a label" in str(problems(path)[0])
+
+
+def test_an_invisible_character_in_a_label(tmp_path: Path) -> None:
+    rows = curve_rows()
+    rows[3][1] = "c1\u200b"
+    found = problems(folder(tmp_path / "a", curves=rows))
+    assert (found[0].origin.row, found[0].origin.column) == (4, "cell")
+    assert "invisible character (U+200B)" in str(found[0])
