@@ -13,8 +13,10 @@ from cornerwise.campaign import (
     MedianSummary,
     Settings,
 )
-from cornerwise.measurements import Measurement, Sample, Summary
+from cornerwise.charges import ChargeValue
+from cornerwise.measurements import Measurement
 from cornerwise.mutations import find_cycles, in_residue_order, parse_label
+from cornerwise.quantities import Sample, Summary
 
 VOLTAGES = np.arange(-160.0, 81.0, 10.0)
 
@@ -55,7 +57,7 @@ def construct(
         curves=curves,
         median=summary,
         charge_replicates=replicates,
-        charge=charges if isinstance(charges, ChargeSummary) else None,
+        charge_summaries=(charges,) if isinstance(charges, ChargeSummary) else (),
     )
 
 
@@ -81,9 +83,14 @@ def measurement(
         cells=(),
         median_mv=_quantity(medians),
         truncation_mv=truncation_mv,
-        charge_e0=None if charges is None else _quantity(charges),
+        charge=None if charges is None else _charge(charges),
         flags=(),
     )
+
+
+def _charge(given: Mapping[str, float] | Summary) -> ChargeValue:
+    kind = "summary" if isinstance(given, Summary) else "cells"
+    return ChargeValue(method="measured", kind=kind, quantity=_quantity(given))
 
 
 def _quantity(given: Mapping[str, float] | Summary) -> Sample | Summary:

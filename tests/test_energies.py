@@ -11,8 +11,9 @@ from hypothesis import strategies as st
 from cornerwise.campaign import Settings, StatedCharge
 from cornerwise.energies import EnergyBook
 from cornerwise.interactions import interact, interaction_draws, rank_intervals, strength_ranks
-from cornerwise.measurements import Measurement, Summary
+from cornerwise.measurements import Measurement
 from cornerwise.mutations import Cycle, find_cycles
+from cornerwise.quantities import Summary
 from cornerwise.sources import linear
 
 LABELS = ("WT", "A1G", "C2S", "A1G/C2S")

@@ -5,7 +5,7 @@ import pytest
 from builders import cells
 from reference_values import load
 
-from cornerwise.measurements import Sample, Summary
+from cornerwise.quantities import Sample, Summary
 from cornerwise.sources import (
     CellSource,
     Component,

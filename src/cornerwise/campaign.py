@@ -48,6 +48,7 @@ class ChargeReplicate:
     cell: str
     batch: str | None = None
     charge_e0: float
+    own_uncertainty_e0: float | None = None  # standard, from the cell's channel count
     method: str | None = None
     origin: Origin = field(default_factory=Origin)
 
@@ -59,8 +60,9 @@ class ChargeSummary:
     construct: str
     charge_e0: float
     sem_e0: float
-    n: int
+    n: int | None  # None for a value from the literature whose uncertainty is taken as it stands
     method: str | None = None
+    citation: str | None = None
     origin: Origin = field(default_factory=Origin)
 
 
@@ -70,6 +72,7 @@ class StatedCharge:
 
     value_e0: float
     sem_e0: float
+    citation: str | None = None
 
 
 ChargePolicy = StatedCharge | str  # "measured", "wild-type" or a stated value
@@ -84,7 +87,7 @@ class Construct:
     curves: tuple[Curve, ...] = ()
     median: MedianSummary | None = None  # never together with curves
     charge_replicates: tuple[ChargeReplicate, ...] = ()
-    charge: ChargeSummary | None = None  # never together with replicates
+    charge_summaries: tuple[ChargeSummary, ...] = ()  # one a method
 
 
 @dataclass(frozen=True, kw_only=True, slots=True)
@@ -103,7 +106,9 @@ class Settings:
     shortcut_tolerance: float | None = None  # energy_unit; None: 0.5 kcal/mol
     charge_margin: float = 0.10  # fraction of the wild type's total charge
     voltage_offset_mv: float = 0.0  # standard uncertainty of an offset common to all curves
+    reference_voltage_mv: float = 0.0  # voltage at which energies are given
     charge: ChargePolicy = "measured"
+    charge_method: str | None = None  # of charges.csv; None: the wild type's
     defaulted: tuple[str, ...] = ()  # keys of campaign.toml the user left out
 
     @property
@@ -123,6 +128,15 @@ class Settings:
 
 
 @dataclass(frozen=True, kw_only=True, slots=True)
+class Exclusion:
+    """A cell the user sets aside, curve and charge, with the reason."""
+
+    construct: str
+    cell: str
+    reason: str
+
+
+@dataclass(frozen=True, kw_only=True, slots=True)
 class InputFile:
     """A file that was read, for the record in ``result.json``."""
 
@@ -139,6 +153,7 @@ class Campaign:
     cycles: tuple[Cycle, ...]
     requests: tuple[CycleRequest, ...] = ()  # the [[cycle]] entries, empty when cycles were found
     background: tuple[Mutation, ...] = ()  # carried by every construct
+    exclusions: tuple[Exclusion, ...] = ()
     inputs: tuple[InputFile, ...] = ()
 
     def construct(self, label: str) -> Construct:

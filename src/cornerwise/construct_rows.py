@@ -4,55 +4,36 @@ from __future__ import annotations
 
 import math
 from collections.abc import Mapping
-from dataclasses import replace
+from typing import TypedDict
 
 import numpy as np
 
-from .campaign import Settings
+from .campaign import Settings, StatedCharge
+from .charge_judgement import ASSUMED, ChargeJudgement, judge_charge
 from .energies import Energy, EnergyBook
 from .flags import Flag, codes
-from .intervals import Interval, ratio_interval, t_interval
+from .intervals import t_interval
 from .measurements import Measurement
 from .result import CellRow, ConstructRow, DrawnCurve, available
-from .sources import log_ratio
-from .verdicts import ChargeVerdict, charge_verdict
+from .verdicts import ChargeVerdict
 
 _DRAWN_POINTS = 121
 
 
-def _charge_judgement(
-    energy: Energy, wild_type: Energy, book: EnergyBook, settings: Settings
-) -> tuple[float | None, Interval | None, ChargeVerdict | None]:
-    """Ratio to the wild type's charge, its interval at the campaign's confidence, and the verdict."""
-    if energy.label == wild_type.label:
-        return None, None, None
-    if energy.own_charge is None or wild_type.own_charge is None:
-        return None, None, "assumed"
-    logarithm = log_ratio(energy.own_charge, wild_type.own_charge)
-    spread = book.ledger.spread(logarithm)
-    ratio, u = math.exp(logarithm.value), math.sqrt(spread.variance)
-    difference = ratio_interval(ratio, u, spread.dof, settings.confidence)
-    # Two one-sided tests at 1 - confidence each are the interval at 1 - 2 (1 - confidence).
-    equivalence = ratio_interval(ratio, u, spread.dof, 2 * settings.confidence - 1)
-    return ratio, difference, charge_verdict(equivalence, difference, settings.charge_margin)
-
-
-_TAKEN_FROM = {"wild type": "the wild type's", "stated": "the stated one", "measured": "the wild type's"}
-
-
-def _charge_flags(label: str, verdict: ChargeVerdict | None, row: ConstructRow, wild_type: str) -> list[Flag]:
-    if verdict == "assumed":
-        taken = _TAKEN_FROM[row.charge_source]
+def _charge_flags(label: str, judged: ChargeJudgement | None, shared: str, wild_type: str) -> list[Flag]:
+    if judged is None:
+        return []
+    if judged.verdict == "assumed":
         message = (
-            f"the total charge of {label} was never measured and is taken to be {taken}; measure it, or say "
+            f"the total charge of {label} was never measured and is taken to be {shared}; measure it, or say "
             "that the interaction rests on this assumption"
         )
         return [Flag(code="charge-assumed", subject=label, construct=label, message=message)]
-    if verdict == "changed" and row.charge_ratio is not None:
+    if judged.verdict == "changed":
+        low, high = judged.difference
         message = (
-            f"{label} moves {row.charge_ratio:.3g} times the total charge of {wild_type} (interval "
-            f"{row.charge_ratio_low:.3g} to {row.charge_ratio_high:.3g}): median voltages alone give wrong "
-            "energies; use the full energies"
+            f"{label} moves {judged.ratio:.3g} times the total charge of {wild_type} (interval {low:.3g} to "
+            f"{high:.3g}): median voltages alone give wrong energies; use the full energies"
         )
         return [
             Flag(
@@ -60,7 +41,7 @@ def _charge_flags(label: str, verdict: ChargeVerdict | None, row: ConstructRow, 
                 subject=label,
                 construct=label,
                 message=message,
-                value=row.charge_ratio,
+                value=judged.ratio,
                 limit=1.0,
             )
         ]
@@ -75,10 +56,21 @@ def _charge_n(energy: Energy, measurements: Mapping[str, Measurement], settings:
     return None if charge is None else charge.n
 
 
+def _charge_words(energy: Energy, measurements: Mapping[str, Measurement], settings: Settings) -> str:
+    """Where the charge that is used comes from, for the `charge_source` column."""
+    if isinstance(settings.charge, StatedCharge):
+        citation = settings.charge.citation
+        return "stated" if citation is None else f"stated: {citation}"
+    if energy.charge_source == "wild type":
+        return "wild type"
+    charge = measurements[energy.label].charge
+    return "measured" if charge is None else charge.source
+
+
 def construct_row(
     measurement: Measurement, book: EnergyBook, measurements: Mapping[str, Measurement], settings: Settings
-) -> tuple[ConstructRow, tuple[Flag, ...]]:
-    """One construct's row, and its flags with those of its cells.
+) -> tuple[ConstructRow, tuple[Flag, ...], ChargeJudgement | None]:
+    """One construct's row, its flags with those of its cells, and what is known of its charge.
 
     Parameters
     ----------
@@ -92,37 +84,56 @@ def construct_row(
         Confidence, margin and unit.
     """
     label = measurement.label
-    energy, wild_type = book.energies[label], book.energies[settings.wild_type]
+    energy = book.energies[label]
     spread = book.ledger.spread(energy.energy)
     u = math.sqrt(spread.variance)
     low, high = t_interval(energy.energy.value, u, spread.dof, settings.confidence)
-    ratio, ratio_limits, verdict = _charge_judgement(energy, wild_type, book, settings)
+    judged = None if label == settings.wild_type else judge_charge(label, measurements, book, settings)
+    shared = "the stated one" if isinstance(settings.charge, StatedCharge) else "the wild type's"
+    of_cells = tuple(flag for reading in measurement.cells for flag in reading.flags)
+    flags = (*measurement.flags, *_charge_flags(label, judged, shared, settings.wild_type), *of_cells)
     row = ConstructRow(
         construct=label,
         mutations=tuple(map(str, measurement.construct.mutations)),
-        cells_used=measurement.median_mv.n,
+        cells_used=measurement.median_mv.n or 0,
         median_mv=available(measurement.median_mv.mean),
         median_sem_mv=available(measurement.median_mv.sem),
         charge_e0=available(energy.charge.value),
         charge_sem_e0=available(math.sqrt(book.ledger.spread(energy.charge).variance)),
         charge_n=_charge_n(energy, measurements, settings),
-        charge_source=energy.charge_source,
+        charge_source=_charge_words(energy, measurements, settings),
         energy=available(energy.energy.value),
         energy_unit=settings.energy_unit,
         std_uncertainty=available(u),
         dof=available(spread.dof),
         low=available(low),
         high=available(high),
-        charge_ratio=ratio,
-        charge_ratio_low=None if ratio_limits is None else available(ratio_limits.low),
-        charge_ratio_high=None if ratio_limits is None else available(ratio_limits.high),
-        charge_verdict=verdict,
-        flags=(),
+        **_charge_fields(judged),
+        flags=codes(flags),
         curve=averaged_curve(measurement),
     )
-    own = (*measurement.flags, *_charge_flags(label, verdict, row, settings.wild_type))
-    of_cells = tuple(flag for reading in measurement.cells for flag in reading.flags)
-    return replace(row, flags=codes(own + of_cells)), own + of_cells
+    return row, flags, judged
+
+
+class _ChargeFields(TypedDict):
+    charge_ratio: float | None
+    charge_ratio_low: float | None
+    charge_ratio_high: float | None
+    charge_verdict: ChargeVerdict | None
+    charge_passing_margin: float | None
+    charge_cells_needed: int | None
+
+
+def _charge_fields(judged: ChargeJudgement | None) -> _ChargeFields:
+    known = ASSUMED if judged is None else judged
+    return {
+        "charge_ratio": available(known.ratio),
+        "charge_ratio_low": available(known.difference.low),
+        "charge_ratio_high": available(known.difference.high),
+        "charge_verdict": None if judged is None else judged.verdict,
+        "charge_passing_margin": available(known.passing_margin),
+        "charge_cells_needed": known.cells_needed,
+    }
 
 
 def averaged_curve(measurement: Measurement) -> DrawnCurve | None:

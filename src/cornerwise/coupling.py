@@ -66,11 +66,10 @@ def couple(campaign: Campaign, progress: Progress | None = None) -> Result:
     measurements = {measurement.label: measurement for measurement in measured}
     book = EnergyBook(measured, settings)
     described = [construct_row(measurement, book, measurements, settings) for measurement in measured]
-    rows = {row.construct: row for row, _ in described}
-    corners = Corners(measurements=measurements, rows=rows)
-    interactions, budget, flags = interaction_rows(
-        campaign.cycles, book, corners, settings, step("interactions")
-    )
+    rows = {row.construct: row for row, _, _ in described}
+    charges = {row.construct: judged for row, _, judged in described if judged is not None}
+    corners = Corners(measurements=measurements, rows=rows, charges=charges, settings=settings)
+    interactions, budget, flags = interaction_rows(campaign.cycles, book, corners, step("interactions"))
     return Result(
         settings=settings,
         background=tuple(map(str, campaign.background)),
@@ -78,7 +77,7 @@ def couple(campaign: Campaign, progress: Progress | None = None) -> Result:
         constructs=Table(ConstructRow, list(rows.values())),
         cells=Table(CellRow, [row for measurement in measured for row in cell_rows(measurement)]),
         budget=Table(BudgetRow, budget),
-        flags=(*(flag for _, own in described for flag in own), *flags),
+        flags=(*(flag for _, own, _ in described for flag in own), *flags),
         notes=_notes(measured, settings),
         inputs=campaign.inputs,
         versions=_versions(),

@@ -10,7 +10,8 @@ import numpy as np
 from numpy.typing import NDArray
 
 from .campaign import Settings, StatedCharge
-from .measurements import Measurement, Sample, Summary
+from .measurements import Measurement
+from .quantities import Quantity, Sample, Summary, in_words, shared_cells
 from .sources import (
     Component,
     Derived,
@@ -40,15 +41,11 @@ class Energy:
     charge: Derived  # e0 per channel, the one the energy is formed with
     charge_source: ChargeSource
     own_charge: Derived | None  # e0 per channel, measured on this construct; None when never measured
-    energy: Derived  # F Q Vm in the campaign's unit, per channel
+    energy: Derived  # F Q (Vm - V0) in the campaign's unit, per channel; V0 is the reference voltage
     measured_energy: Derived | None  # the same with its own measured charge; None without one
 
 
-def _n_cells(quantity: Sample | Summary) -> str:
-    return f"{quantity.n} cell{'s' if quantity.n != 1 else ''}"
-
-
-def _lone_source(name: str, component: Component, quantity: Sample | Summary) -> Source:
+def _lone_source(name: str, component: Component, quantity: Quantity) -> Source:
     if isinstance(quantity, Summary):
         return summary_source(name, component, quantity)
     if quantity.n == 0:  # every cell was set aside: the number is not available
@@ -56,18 +53,12 @@ def _lone_source(name: str, component: Component, quantity: Sample | Summary) ->
     return cell_source(name, {component: quantity})
 
 
-def _shared_cells(a: Sample | Summary, b: Sample | Summary | None) -> set[str]:
-    if isinstance(a, Sample) and isinstance(b, Sample):
-        return set(a.cells) & set(b.cells)
-    return set()
-
-
 def _construct_sources(measurement: Measurement) -> list[Source]:
     """Sources of one construct: medians and charges apart, or together when cells are shared."""
     label = measurement.label
     median, charge = Component("median", label), Component("charge", label)
     v, q = measurement.median_mv, measurement.charge_e0
-    if isinstance(v, Sample) and isinstance(q, Sample) and _shared_cells(v, q):
+    if isinstance(v, Sample) and isinstance(q, Sample) and shared_cells(v, q):
         samples = {median: v, charge: q}
         if set(v.cells) == set(q.cells):
             charges = dict(zip(q.cells, q.values, strict=True))
@@ -75,9 +66,9 @@ def _construct_sources(measurement: Measurement) -> list[Source]:
             samples[Component("charge x median", label)] = Sample(cells=v.cells, values=energies)
         sources: list[Source] = [cell_source(f"cells of {label} (median and charge)", samples)]
     else:
-        sources = [_lone_source(f"median voltage of {label} ({_n_cells(v)})", median, v)]
+        sources = [_lone_source(f"median voltage of {label} ({in_words(v)})", median, v)]
         if q is not None:
-            sources.append(_lone_source(f"total charge of {label} ({_n_cells(q)})", charge, q))
+            sources.append(_lone_source(f"total charge of {label} ({in_words(q)})", charge, q))
     if measurement.truncation_mv > 0:
         name = f"charge outside the voltage range of {label}"
         component = Component("truncation", label)
@@ -123,7 +114,8 @@ class EnergyBook:
 
     Notes
     -----
-    The energy is F Q Vm. It is formed cell by cell, and averaged, when all cells of a construct gave both
+    The energy is F Q (Vm - V0), V0 being the reference voltage. It is formed cell by cell, and averaged, when
+    all cells of a construct gave both
     charge and median; with partly shared cells it is the product of the two means with the covariance
     shown by the shared cells, corrected by the part of that covariance which the cell-by-cell mean would
     include, so that the two agree when all cells are shared. A charge that is shared by all constructs is
@@ -189,7 +181,7 @@ class EnergyBook:
 
     def _covariance_part(self, label: str) -> float:
         v, q = self._measurements[label].median_mv, self._measurements[label].charge_e0
-        shared = sorted(_shared_cells(v, q))
+        shared = shared_cells(v, q)
         if len(shared) < 2 or not (isinstance(v, Sample) and isinstance(q, Sample)):
             return 0.0
         medians = dict(zip(v.cells, v.values, strict=True))
@@ -199,20 +191,27 @@ class EnergyBook:
         covariance = float(np.sum((x - x.mean()) * (y - y.mean())) / (len(shared) - 1))
         return covariance * (1 - len(shared) / (v.n * q.n))
 
+    def _at_reference(self, energy: Derived, charge: Derived) -> Derived:
+        """Energy at the reference voltage from that at 0 mV: dG(V) = dG - F Q V."""
+        voltage = self._settings.reference_voltage_mv
+        return linear([(1.0, energy), (-self.per_e0_mv * voltage, charge)]) if voltage else energy
+
     def _energy(self, label: str) -> Energy:
         charge, source = self._policy_charge(label)
-        measured = self._measured_energy(label)
-        own = source == "measured" and self._settings.charge == "measured"
-        if own and measured is not None:
+        own, measured = self._own_charge(label), self._measured_energy(label)
+        if own is not None and measured is not None:
+            measured = self._at_reference(measured, own)
+        if source == "measured" and self._settings.charge == "measured" and measured is not None:
             energy = measured
         else:
-            energy = linear([(self.per_e0_mv, product(charge, self._at_offset(self._median(label))))])
+            formed = linear([(self.per_e0_mv, product(charge, self._at_offset(self._median(label))))])
+            energy = self._at_reference(formed, charge)
         return Energy(
             label=label,
             median=self._median(label),
             charge=charge,
             charge_source=source,
-            own_charge=self._own_charge(label),
+            own_charge=own,
             energy=energy,
             measured_energy=measured,
         )
@@ -227,17 +226,15 @@ class EnergyBook:
         energy, ledger = self.energies[label], self.ledger
         by_cell = Component("charge x median", label)
         charge = _draw_linear(energy.charge, ledger)
+        at_reference = -self.per_e0_mv * self._settings.reference_voltage_mv * charge
         if by_cell in energy.energy.sensitivities:
             own = Component("median", label)
             rest = {c: s for c, s in self._at_offset(energy.median).sensitivities.items() if c != own}
             common = _draw_linear(Derived(value=0.0, sensitivities=rest), ledger)
-            return self.per_e0_mv * (ledger.draws(by_cell) + charge * common)
+            return self.per_e0_mv * (ledger.draws(by_cell) + charge * common) + at_reference
         median = _draw_linear(self._at_offset(energy.median), ledger)
-        return self.per_e0_mv * (charge * median) + self._offset_of_draws(energy)
-
-    def _offset_of_draws(self, energy: Energy) -> float:
-        """Part of the energy that is not charge times median: the covariance of partly shared cells."""
-        return energy.energy.value - self.per_e0_mv * energy.charge.value * energy.median.value
+        part = self._covariance_part(label) if energy.energy is energy.measured_energy else 0.0
+        return self.per_e0_mv * (charge * median + part) + at_reference
 
 
 def _draw_linear(derived: Derived, ledger: Ledger) -> FloatArray:

@@ -5,11 +5,14 @@ from __future__ import annotations
 import math
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
+from typing import TypedDict
 
 import numpy as np
 from numpy.typing import NDArray
 
 from .campaign import Settings
+from .charge_judgement import ChargeJudgement
+from .charge_trace import breakdowns, corner_charges, largest_margin, most_cells, per_10_mv, profile
 from .energies import EnergyBook
 from .flags import Flag, codes
 from .interactions import Interaction, interact, interaction_draws, rank_intervals, strength_ranks
@@ -23,9 +26,17 @@ from .intervals import (
 )
 from .measurements import Measurement, protocol_flags
 from .mutations import Cycle
-from .result import BudgetRow, ConstructRow, InteractionRow, available
+from .result import (
+    Breakdown,
+    BudgetRow,
+    ConstructRow,
+    CornerCharge,
+    InteractionRow,
+    ProfilePoint,
+    available,
+)
 from .sources import Derived
-from .verdicts import favours, interaction_verdict, shortcut_verdict
+from .verdicts import ShortcutVerdict, favours, interaction_verdict, shortcut_verdict
 
 FloatArray = NDArray[np.float64]
 
@@ -38,6 +49,8 @@ class Corners:
 
     measurements: Mapping[str, Measurement]
     rows: Mapping[str, ConstructRow]
+    charges: Mapping[str, ChargeJudgement]  # of every mutant
+    settings: Settings
 
 
 @dataclass(frozen=True, kw_only=True, slots=True, eq=False)
@@ -105,22 +118,77 @@ def _nonadditive(interaction: Interaction, limits: Interval, per_e0_mv: float, u
     return (Flag(code="charge-nonadditive", subject=name, message=message, value=j, limit=0.0),)
 
 
+def _charge_trace(one: _Judged, corners: Corners) -> tuple[CornerCharge, ...]:
+    mutants = [c.label for c in one.interaction.cycle.corners if c.label in corners.charges]
+    return corner_charges(
+        mutants,
+        [corners.charges[label] for label in mutants],
+        [corners.measurements[label] for label in mutants],
+        corners.settings.confidence,
+    )
+
+
+class _ChargeFields(TypedDict):
+    shortcut_bias: float | None
+    shortcut_bias_low: float | None
+    shortcut_bias_high: float | None
+    shortcut_verdict: ShortcutVerdict
+    charge_interaction_e0: float | None
+    charge_interaction_low: float | None
+    charge_interaction_high: float | None
+    corner_charges: tuple[CornerCharge, ...]
+    passing_margin: float | None
+    passing_tolerance: float | None
+    charge_cells_needed: int | None
+    change_per_10_mv: float | None
+    change_per_10_mv_low: float | None
+    change_per_10_mv_high: float | None
+    offset_contribution: float | None
+    breakdown: tuple[Breakdown, ...]
+    profile: tuple[ProfilePoint, ...]
+
+
+def _charge_fields(one: _Judged, book: EnergyBook, corners: Corners, charges: Interval) -> _ChargeFields:
+    settings, interaction = corners.settings, one.interaction
+    trace = _charge_trace(one, corners)
+    bias = _limits(interaction.shortcut_bias, book, settings.confidence)
+    slope = per_10_mv(interaction, book.per_e0_mv)
+    slope_limits = _limits(slope, book, settings.confidence)
+    offset = None if slope is None else abs(slope.value) / 10 * settings.voltage_offset_mv
+    assumed = [charge.construct for charge in trace if charge.verdict == "assumed"]
+    return {
+        "shortcut_bias": _value(interaction.shortcut_bias),
+        "shortcut_bias_low": available(bias.low),
+        "shortcut_bias_high": available(bias.high),
+        "shortcut_verdict": shortcut_verdict([c.verdict for c in trace], bias, settings.energy_tolerance),
+        "charge_interaction_e0": _value(interaction.charge),
+        "charge_interaction_low": available(charges.low),
+        "charge_interaction_high": available(charges.high),
+        "corner_charges": trace,
+        "passing_margin": largest_margin(trace),
+        "passing_tolerance": available(max(abs(bias.low), abs(bias.high))),
+        "charge_cells_needed": most_cells(trace),
+        "change_per_10_mv": _value(slope),
+        "change_per_10_mv_low": available(slope_limits.low),
+        "change_per_10_mv_high": available(slope_limits.high),
+        "offset_contribution": None if offset is None else available(offset),
+        "breakdown": breakdowns(interaction, one.interval, assumed, book),
+        "profile": profile(interaction, book, settings) if charges.excludes(0.0) else (),
+    }
+
+
 def _row(
     one: _Judged,
     ranks: tuple[int | None, int | None, int | None],
     p_adjusted: float,
     book: EnergyBook,
     corners: Corners,
-    settings: Settings,
 ) -> tuple[InteractionRow, tuple[Flag, ...]]:
-    interaction, cycle = one.interaction, one.interaction.cycle
+    interaction, cycle, settings = one.interaction, one.interaction.cycle, corners.settings
     labels = [corner.label for corner in cycle.corners]
     charges = _limits(interaction.charge, book, settings.confidence)
     own = _nonadditive(interaction, charges, book.per_e0_mv, settings.energy_unit)
     own += protocol_flags(cycle.name, tuple(corners.measurements[label].construct for label in labels))
-    bias = _limits(interaction.shortcut_bias, book, settings.confidence)
-    verdicts = [v for label in labels if (v := corners.rows[label].charge_verdict) is not None]
-    tolerance = settings.energy_tolerance
     inherited = {code for label in labels for code in corners.rows[label].flags}
     row = InteractionRow(
         cycle=cycle.name,
@@ -139,19 +207,13 @@ def _row(
         p_value=available(one.p_value),
         p_adjusted=available(p_adjusted),
         shortcut=available(interaction.shortcut.value),
-        shortcut_bias=_value(interaction.shortcut_bias),
-        shortcut_bias_low=available(bias.low),
-        shortcut_bias_high=available(bias.high),
-        shortcut_verdict=shortcut_verdict(verdicts, bias, tolerance),
-        charge_interaction_e0=_value(interaction.charge),
-        charge_interaction_low=available(charges.low),
-        charge_interaction_high=available(charges.high),
         interaction_verdict=interaction_verdict(one.interval, settings.energy_threshold),
         favours=favours(interaction.energy.value, one.interval, cycle.order),
         rank=ranks[0],
         rank_low=ranks[1],
         rank_high=ranks[2],
         flags=codes(own, also=inherited),
+        **_charge_fields(one, book, corners, charges),
     )
     return row, own
 
@@ -172,7 +234,6 @@ def interaction_rows(
     cycles: Sequence[Cycle],
     book: EnergyBook,
     corners: Corners,
-    settings: Settings,
     progress: Callable[[int, int], None] | None = None,
 ) -> tuple[list[InteractionRow], list[BudgetRow], list[Flag]]:
     """Rows of every cycle, their uncertainty budgets and the flags of the cycles themselves.
@@ -184,22 +245,20 @@ def interaction_rows(
     book : EnergyBook
         Energies of the campaign.
     corners : Corners
-        Measurements and rows of the constructs.
-    settings : Settings
-        Confidence, threshold, tolerance and unit.
+        Measurements and rows of the constructs, and the settings.
     progress : callable, optional
         Called with the number of cycles done and their total.
     """
     judged = []
     for count, cycle in enumerate(cycles, start=1):
-        judged.append(_judge(cycle, book, settings))
+        judged.append(_judge(cycle, book, corners.settings))
         if progress is not None:
             progress(count, len(cycles))
     adjusted = adjusted_p_values([one.p_value for one in judged])
-    ranks = _ranks(judged, settings.confidence)
+    ranks = _ranks(judged, corners.settings.confidence)
     rows, budget, flags = [], list[BudgetRow](), list[Flag]()
     for one, rank, p_adjusted in zip(judged, ranks, adjusted, strict=True):
-        row, own = _row(one, rank, p_adjusted, book, corners, settings)
+        row, own = _row(one, rank, p_adjusted, book, corners)
         rows.append(row)
         flags.extend(own)
         budget.extend(_budget_rows(one, book))

@@ -20,7 +20,7 @@ class Interaction:
     """What a cycle's corners add up to; None where a corner's charge was never measured."""
 
     cycle: Cycle
-    energy: Derived  # I = sum s_k dG_k, campaign's unit, per channel
+    energy: Derived  # I = sum s_k dG_k at the reference voltage, campaign's unit, per channel
     shortcut: Derived  # F Q_wt sum s_k Vm_k, same unit
     shortcut_bias: Derived | None  # I - shortcut with every corner's own measured charge, same unit
     charge: Derived | None  # J = sum s_k Q_k, e0

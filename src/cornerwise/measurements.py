@@ -2,53 +2,20 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Mapping
 from dataclasses import dataclass, replace
 
 import numpy as np
-from numpy.typing import NDArray
 
 from .campaign import Campaign, Construct, Curve
+from .charges import ChargeValue, charge_values, choose, method_flags, plausibility_flags
 from .flags import Flag
 from .median import CellReading, read_construct
-
-FloatArray = NDArray[np.float64]
+from .quantities import Quantity, Sample, Summary
 
 FEWEST_CELLS = 4
 # Corners measured over ranges that differ by more than this are flagged: 20 mV is two of the usual steps.
 RANGE_DIFFERENCE_MV = 20.0
-
-
-@dataclass(frozen=True, kw_only=True, slots=True, eq=False)
-class Sample:
-    """One quantity in several cells."""
-
-    cells: tuple[str, ...]
-    values: FloatArray  # (n_cells,)
-
-    @property
-    def n(self) -> int:
-        """Number of cells."""
-        return len(self.cells)
-
-    @property
-    def mean(self) -> float:
-        """Arithmetic mean; NaN for no cell."""
-        return float(np.mean(self.values)) if self.n else float("nan")
-
-    @property
-    def sem(self) -> float:
-        """Standard error of the mean; NaN for a single cell."""
-        return float(np.std(self.values, ddof=1) / np.sqrt(self.n)) if self.n > 1 else float("nan")
-
-
-@dataclass(frozen=True, kw_only=True, slots=True)
-class Summary:
-    """One quantity known as mean, standard error of the mean and number of cells."""
-
-    mean: float
-    sem: float
-    n: int
 
 
 @dataclass(frozen=True, kw_only=True, slots=True)
@@ -57,9 +24,10 @@ class Measurement:
 
     construct: Construct
     cells: tuple[CellReading, ...]
-    median_mv: Sample | Summary
+    median_mv: Quantity
     truncation_mv: float  # standard uncertainty common to the medians of all its cells
-    charge_e0: Sample | Summary | None  # per channel; None when never measured
+    charge: ChargeValue | None  # the one that is used; None when never measured
+    other_charges: tuple[ChargeValue, ...] = ()  # from other methods
     flags: tuple[Flag, ...]
 
     @property
@@ -67,9 +35,14 @@ class Measurement:
         """The construct's label."""
         return self.construct.label
 
+    @property
+    def charge_e0(self) -> Quantity | None:
+        """Total charge per channel that is used; None when never measured."""
+        return None if self.charge is None else self.charge.quantity
 
-def _few_cells(label: str, what: str, n: int) -> list[Flag]:
-    if n >= FEWEST_CELLS:
+
+def _few_cells(label: str, what: str, n: int | None) -> list[Flag]:
+    if n is None or n >= FEWEST_CELLS:
         return []
     message = (
         f"{what} of {label} rest on {n} cell{'s' if n != 1 else ''}; "
@@ -94,7 +67,7 @@ def _single_batch(construct: Construct) -> list[Flag]:
     return [Flag(code="single-batch", subject=label, construct=label, message=message, value=1, limit=2)]
 
 
-def _median(construct: Construct, readings: tuple[CellReading, ...]) -> Sample | Summary:
+def _median(construct: Construct, readings: tuple[CellReading, ...]) -> Quantity:
     if construct.median is not None:
         return Summary(mean=construct.median.median_mv, sem=construct.median.sem_mv, n=construct.median.n)
     used = [reading for reading in readings if reading.used]
@@ -104,24 +77,20 @@ def _median(construct: Construct, readings: tuple[CellReading, ...]) -> Sample |
     )
 
 
-def _charge(construct: Construct) -> Sample | Summary | None:
-    if construct.charge is not None:
-        return Summary(mean=construct.charge.charge_e0, sem=construct.charge.sem_e0, n=construct.charge.n)
-    if not construct.charge_replicates:
-        return None
-    replicates = sorted(construct.charge_replicates, key=lambda replicate: replicate.cell)
-    return Sample(
-        cells=tuple(replicate.cell for replicate in replicates),
-        values=np.array([replicate.charge_e0 for replicate in replicates], dtype=float),
-    )
+def _readings(construct: Construct, set_aside: Mapping[str, str]) -> tuple[CellReading, ...]:
+    """Read the curves in the order of the cells' names, each flag marked with its construct and cell.
 
-
-def _readings(construct: Construct) -> tuple[CellReading, ...]:
-    """Read the curves in the order of the cells' names, each flag marked with its construct and cell."""
-    if not construct.curves:
-        return ()
+    Cells the user set aside are read alone, so that they bear on no other cell.
+    """
     curves = sorted(construct.curves, key=lambda curve: curve.cell)
-    return tuple(_marked(reading) for reading in read_construct(curves))
+    kept = [curve for curve in curves if curve.cell not in set_aside]
+    readings = [_marked(reading) for reading in read_construct(kept)] if kept else []
+    for curve in curves:
+        if curve.cell in set_aside:
+            (alone,) = read_construct([curve])
+            reason = f"set aside by the user: {set_aside[curve.cell]}"
+            readings.append(replace(_marked(alone), used=False, reason=reason))
+    return tuple(sorted(readings, key=lambda reading: reading.cell))
 
 
 def _marked(reading: CellReading) -> CellReading:
@@ -129,19 +98,39 @@ def _marked(reading: CellReading) -> CellReading:
     return replace(reading, flags=tuple(flags))
 
 
-def _measure(construct: Construct) -> Measurement:
-    readings = _readings(construct)
-    median, charge = _median(construct, readings), _charge(construct)
+def _without(construct: Construct, set_aside: Mapping[str, str]) -> Construct:
+    """The construct without the charges of cells that are set aside; their curves stay, to be shown."""
+    charges = tuple(one for one in construct.charge_replicates if one.cell not in set_aside)
+    return replace(construct, charge_replicates=charges)
+
+
+@dataclass(frozen=True, kw_only=True, slots=True)
+class _Choice:
+    """What decides which charge of a construct is used."""
+
+    method: str | None
+    wild_type_e0: float | None  # None while the wild type itself is measured
+    confidence: float
+
+
+def _measure(construct: Construct, set_aside: Mapping[str, str], choice: _Choice) -> Measurement:
+    readings = _readings(construct, set_aside)
+    median = _median(construct, readings)
+    values = charge_values(_without(construct, set_aside))
+    used = choose(values, choice.method)
     flags = _few_cells(construct.label, "the median voltages", median.n)
-    if charge is not None:
-        flags += _few_cells(construct.label, "the total charges", charge.n)
+    if used is not None:
+        flags += _few_cells(construct.label, "the total charges", used.quantity.n)
+        flags += method_flags(construct, values, used, choice.confidence)
+        flags += plausibility_flags(construct, used.quantity.mean, choice.wild_type_e0)
     truncations = [reading.truncation_mv for reading in readings if reading.used]
     return Measurement(
         construct=construct,
         cells=readings,
         median_mv=median,
         truncation_mv=float(np.mean(truncations)) if truncations else 0.0,
-        charge_e0=charge,
+        charge=used,
+        other_charges=tuple(value for value in values if value is not used),
         flags=(*flags, *_single_batch(construct)),
     )
 
@@ -163,12 +152,27 @@ def measure(
     tuple of Measurement
         In the order of the campaign's constructs.
     """
+    set_aside: dict[str, dict[str, str]] = {}
+    for exclusion in campaign.exclusions:
+        set_aside.setdefault(exclusion.construct, {})[exclusion.cell] = exclusion.reason
+    settings = campaign.settings
+    method, wild_type_e0 = _wild_type_charge(campaign, set_aside.get(settings.wild_type, {}))
+    choice = _Choice(method=method, wild_type_e0=wild_type_e0, confidence=settings.confidence)
     done = []
     for count, construct in enumerate(campaign.constructs, start=1):
-        done.append(_measure(construct))
+        done.append(_measure(construct, set_aside.get(construct.label, {}), choice))
         if progress is not None:
             progress(count, len(campaign.constructs))
     return tuple(done)
+
+
+def _wild_type_charge(campaign: Campaign, set_aside: Mapping[str, str]) -> tuple[str | None, float | None]:
+    """Method that the charges of all constructs are taken from where they have it, and the wild type's."""
+    wild_type = campaign.construct(campaign.settings.wild_type)
+    used = choose(charge_values(_without(wild_type, set_aside)), campaign.settings.charge_method)
+    if used is None:
+        return campaign.settings.charge_method, None
+    return campaign.settings.charge_method or used.method, used.quantity.mean
 
 
 def _ranges(curves: tuple[Curve, ...]) -> tuple[float, float]:

@@ -89,6 +89,38 @@ class DrawnCurve:
 
 
 @dataclass(frozen=True, kw_only=True, slots=True)
+class CornerCharge:
+    """Why one mutant's total charge was judged as it was."""
+
+    construct: str
+    source: str | None  # None when never measured
+    ratio: float | None  # to the wild type's charge
+    low: float | None
+    high: float | None
+    verdict: ChargeVerdict  # the error of all corners of the cycle held together
+    passing_margin: float | None  # smallest margin within which it would count as equal
+    cells_needed: int | None  # values on mutant and wild type each for a verdict at this scatter
+
+
+@dataclass(frozen=True, kw_only=True, slots=True)
+class Breakdown:
+    """Change of one assumed charge that would bring the interaction's interval to 0."""
+
+    construct: str
+    fraction: float  # of the assumed charge
+
+
+@dataclass(frozen=True, kw_only=True, slots=True)
+class ProfilePoint:
+    """Interaction energy at one voltage, in the row's unit."""
+
+    voltage_mv: float
+    interaction: float
+    low: float | None
+    high: float | None
+
+
+@dataclass(frozen=True, kw_only=True, slots=True)
 class InteractionRow:
     """One cycle. Energies in `energy_unit` per channel; None where a field does not apply."""
 
@@ -129,6 +161,16 @@ class InteractionRow:
     rank_low: int | None
     rank_high: int | None
     flags: tuple[str, ...]
+    corner_charges: tuple[CornerCharge, ...]  # of the mutants
+    passing_margin: float | None  # smallest charge margin that all mutants pass
+    passing_tolerance: float | None  # smallest tolerance that holds the bias's interval
+    charge_cells_needed: int | None  # charge values a construct for a verdict on every mutant
+    change_per_10_mv: float | None  # of the interaction
+    change_per_10_mv_low: float | None
+    change_per_10_mv_high: float | None
+    offset_contribution: float | None  # standard uncertainty from the stated voltage offset
+    breakdown: tuple[Breakdown, ...]  # where a charge is assumed and the interval excludes 0
+    profile: tuple[ProfilePoint, ...]  # where the charges do not add up
 
     def cells(self) -> tuple[Value, ...]:
         """Values in the order of `columns`."""
@@ -164,6 +206,8 @@ class ConstructRow:
     charge_ratio_low: float | None
     charge_ratio_high: float | None
     charge_verdict: ChargeVerdict | None  # None for the wild type
+    charge_passing_margin: float | None  # smallest margin within which the charge counts as equal
+    charge_cells_needed: int | None  # values on mutant and wild type each for a verdict at this scatter
     flags: tuple[str, ...]
     curve: DrawnCurve | None  # averaged over the cells that are used; None without curves
 

@@ -17,7 +17,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from .intervals import Interval, t_interval, t_p_value, welch_satterthwaite
-from .measurements import Sample, Summary
+from .quantities import Sample, Summary
 from .streams import named_stream
 
 FloatArray = NDArray[np.float64]
@@ -251,7 +251,7 @@ def cell_source(name: str, samples: Mapping[Component, Sample]) -> CellSource:
 def summary_source(name: str, component: Component, summary: Summary) -> StatedSource:
     """One source from a mean, a standard error and a number of cells."""
     return StatedSource(
-        name=name, component=component, mean=summary.mean, std_uncertainty=summary.sem, dof=summary.n - 1
+        name=name, component=component, mean=summary.mean, std_uncertainty=summary.sem, dof=summary.dof
     )
 
 

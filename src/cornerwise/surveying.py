@@ -60,7 +60,7 @@ def _row(measurement: Measurement) -> tuple[SurveyRow, tuple[Flag, ...]]:
     row = SurveyRow(
         construct=measurement.label,
         mutations=tuple(map(str, measurement.construct.mutations)),
-        cells_used=measurement.median_mv.n,
+        cells_used=measurement.median_mv.n or 0,
         cells_set_aside=sum(not reading.used for reading in measurement.cells),
         median_mv=available(measurement.median_mv.mean),
         median_sem_mv=available(measurement.median_mv.sem),

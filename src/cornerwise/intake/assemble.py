@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections import defaultdict
 
-from ..campaign import Campaign, ChargeReplicate, Construct, Curve
+from ..campaign import Campaign, ChargeReplicate, ChargeSummary, Construct, Curve
 from ..mutations import Mutation
 from .checks import check
 from .cycles import cycles_of
@@ -55,7 +55,9 @@ def _constructs(parts: Parts, genotypes: Genotypes) -> tuple[Construct, ...]:
     for replicate in parts.charges.replicates:
         replicates[replicate.construct].append(replicate)
     medians = {median.construct: median for median in parts.medians.medians}
-    charges = {charge.construct: charge for charge in parts.charges.summaries}
+    charges: dict[str, list[ChargeSummary]] = defaultdict(list)
+    for charge in parts.charges.summaries:
+        charges[charge.construct].append(charge)
     in_order = sorted(genotypes.by_label.items(), key=lambda item: _order(item[1]))
     return tuple(
         Construct(
@@ -64,7 +66,7 @@ def _constructs(parts: Parts, genotypes: Genotypes) -> tuple[Construct, ...]:
             curves=tuple(curves[label]),
             median=medians.get(label),
             charge_replicates=tuple(replicates[label]),
-            charge=charges.get(label),
+            charge_summaries=tuple(charges[label]),
         )
         for label, mutations in in_order
     )
