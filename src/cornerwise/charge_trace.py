@@ -1,4 +1,4 @@
-"""What total charge does to a cycle: other voltages, the corners' verdicts, what would erase the interaction."""
+"""What total charge does to a cycle: other voltages, verdicts at the corners, what would erase it."""
 
 from __future__ import annotations
 

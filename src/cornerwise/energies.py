@@ -114,12 +114,11 @@ class EnergyBook:
 
     Notes
     -----
-    The energy is F Q (Vm - V0), V0 being the reference voltage. It is formed cell by cell, and averaged, when
-    all cells of a construct gave both
-    charge and median; with partly shared cells it is the product of the two means with the covariance
-    shown by the shared cells, corrected by the part of that covariance which the cell-by-cell mean would
-    include, so that the two agree when all cells are shared. A charge that is shared by all constructs is
-    one number: energies are then products with its mean.
+    The energy is F Q (Vm - V0), V0 being the reference voltage. It is formed cell by cell, and averaged,
+    when all cells of a construct gave both charge and median; with partly shared cells it is the product of
+    the two means with the covariance shown by the shared cells, corrected by the part of that covariance
+    which the cell-by-cell mean would include, so that the two agree when all cells are shared. A charge that
+    is shared by all constructs is one number: energies are then products with its mean.
     """
 
     def __init__(self, measurements: Sequence[Measurement], settings: Settings) -> None:
