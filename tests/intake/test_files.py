@@ -121,3 +121,17 @@ def test_where_the_folder_stands_does_not_matter(campaign: Path, tmp_path: Path)
     shutil.copytree(campaign, moved)
     assert read(moved).inputs == read(campaign).inputs
     assert (moved / "campaign.toml").read_text() == TOML
+
+
+def test_the_hidden_ending_of_a_text_editor(campaign: Path) -> None:
+    (campaign / "campaign.toml").rename(campaign / "campaign.toml.txt")
+    assert [p.origin.file for p in problems(campaign)] == ["campaign.toml.txt", "campaign.toml"]
+    assert "rename campaign.toml.txt" in str(problems(campaign)[1])
+
+
+def test_a_folder_that_cannot_be_opened(campaign: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    def refuse(path: Path) -> None:
+        raise PermissionError(13, "no entry")
+
+    monkeypatch.setattr(Path, "iterdir", refuse)
+    assert_refused(campaign, file=str(campaign), match="folder that cannot be opened .no entry.")

@@ -11,7 +11,8 @@ import openpyxl
 import pytest
 
 from cornerwise.campaign import StatedCharge
-from cornerwise.intake import read
+from cornerwise.intake import book as book_room
+from cornerwise.intake import files, read
 from cornerwise.intake.book import digits
 from intake.writing import (
     CHARGES,
@@ -305,3 +306,38 @@ def test_an_archive_that_is_no_workbook(tmp_path: Path) -> None:
 def test_a_stated_charge_in_two_rows(tmp_path: Path) -> None:
     assert read(saved(book(tmp_path))).settings.charge == StatedCharge(value_e0=13.0, sem_e0=0.5)
     assert TOML.endswith("sem_e0 = 0.5 }\n")
+
+
+def test_a_damaged_table_of_a_folder(tmp_path: Path) -> None:
+    path = folder(tmp_path / "a", curves_xlsx=b"PK damaged")
+    assert_refused(path, file="curves.xlsx", match="cannot be opened as a workbook")
+
+
+def test_an_empty_table_of_a_folder(tmp_path: Path) -> None:
+    workbook = book(tmp_path, curves=[])
+    workbook.remove(workbook["campaign"])
+    path = folder(tmp_path / "a", curves_xlsx=saved(workbook).read_bytes())
+    assert_refused(path, file="curves.xlsx, sheet curves", match="no header")
+
+
+def test_a_header_that_cannot_be_read(tmp_path: Path) -> None:
+    workbook = book(tmp_path)
+    workbook["curves"]["C1"] = "=A1"
+    path = saved(workbook)
+    assert_refused(
+        path, file="book.xlsx, sheet curves", row=1, column="C", match="formula without a stored value"
+    )
+
+
+def test_a_workbook_that_is_too_large(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    path = saved(book(tmp_path))
+    monkeypatch.setattr(book_room, "MOST_UNPACKED_BYTES", 1000)
+    assert_refused(path, file="book.xlsx", match="unpacks to more than 2 GB")
+    monkeypatch.setattr(files, "MOST_BYTES", 1000)
+    assert_refused(path, file="book.xlsx", match="at most 0 MB")
+
+
+def test_a_sheet_with_too_many_rows(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    path = saved(book(tmp_path))
+    monkeypatch.setattr(book_room, "MOST_ROWS", 20)
+    assert_refused(path, file="book.xlsx, sheet curves", match="33 rows; expected at most")

@@ -129,9 +129,9 @@ def _name(points: Points, point: int) -> str:
     return f"{points.construct[point]}/{points.cell[point]}"
 
 
-def _shape_fault(curve: Curve, lost: tuple[str, ...]) -> str | None:
+def _shape_fault(curve: Curve, lost: str) -> str | None:
     if len(curve.voltage_mv) < plausible.FEWEST_POINTS:
-        return None if any(curve.cell in text for text in lost) else "short"
+        return None if curve.cell in lost else "short"
     if plausible.too_narrow(curve.voltage_mv):
         return "narrow"
     judged = plausible.direction(curve.charge)

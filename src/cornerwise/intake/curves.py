@@ -43,7 +43,7 @@ class CurvesRead:
 
     curves: tuple[Curve, ...] = ()
     seen: dict[str, Origin] = field(default_factory=dict)  # construct: where it is first named
-    lost: tuple[str, ...] = ()  # text that could not be read; what it names may not be called missing
+    lost: str = ""  # text that could not be read; what it names may not be called missing
     readable: bool = True  # False when nothing could be read
 
 

@@ -34,7 +34,16 @@ def locate(folder: Path, findings: Findings) -> dict[str, Path]:
     dict of str to Path
         ``campaign`` and the tables that are there.
     """
-    files = sorted(p for p in folder.iterdir() if p.is_file() and not p.name.startswith((".", "~$")))
+    try:
+        files = sorted(p for p in folder.iterdir() if p.is_file() and not p.name.startswith((".", "~$")))
+    except OSError as error:
+        findings.add(
+            Origin(file=str(folder)),
+            found=f"a folder that cannot be opened ({error.strerror})",
+            expected="a readable folder",
+            remedy="check its permissions",
+        )
+        return {}
     known: dict[str, list[Path]] = defaultdict(list)
     for path in files:
         stem, suffix = path.stem.casefold(), path.suffix.casefold()
@@ -105,8 +114,7 @@ def _judge_stray(path: Path, findings: Findings) -> None:
 
 
 def _refuse_missing_campaign(files: list[Path], findings: Findings) -> None:
-    others = [path.name for path in files if path.suffix.casefold() == ".toml"]
-    close = nearest(CAMPAIGN_FILE, others) or (others[0] if len(others) == 1 else None)
+    close = nearest(CAMPAIGN_FILE, (path.name for path in files))
     findings.add(
         Origin(file=CAMPAIGN_FILE),
         found="no such file",

@@ -23,7 +23,7 @@ class RawTable:
     rows: NDArray[np.int64]  # (n_rows,), the number of each row in the file
     columns: tuple[Sequence[str], ...]  # one per header entry, each (n_rows,)
     delimiter: str = ""  # "" for a sheet of a workbook
-    lost: tuple[str, ...] = ()  # text of rows that were left out; what it names may not be called missing
+    lost: str = ""  # text of rows that were left out; what it names may not be called missing
 
     def header_origin(self, column: str) -> Origin:
         """Return the place of the header `column`."""

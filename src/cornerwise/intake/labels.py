@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections import Counter, defaultdict
-from collections.abc import Mapping
+from collections.abc import Collection, Mapping
 from dataclasses import dataclass
 
 from ..errors import Origin
@@ -46,10 +46,9 @@ def read_genotypes(
         Takes every fault.
     """
     spelt = {label: _spelt(label, wild_type, listed) for label in seen}
-    for label, mutations in spelt.items():
-        if mutations is None:
-            _refuse_unreadable(label, seen[label], wild_type, seen, findings)
     known = {label: mutations for label, mutations in spelt.items() if mutations is not None}
+    for label in (label for label in spelt if label not in known):
+        _refuse_unreadable(label, seen[label], wild_type, known, findings)
     background = known.get(wild_type, frozenset())
     for label, mutations in known.items():
         if missing := background - mutations:
@@ -81,12 +80,12 @@ def _spelt(label: str, wild_type: str, listed: Mapping[str, Mutations]) -> Mutat
 
 
 def _refuse_unreadable(
-    label: str, origin: Origin, wild_type: str, seen: Mapping[str, Origin], findings: Findings
+    label: str, origin: Origin, wild_type: str, known: Collection[str], findings: Findings
 ) -> None:
     remedy = "list its mutations in campaign.toml under [mutations]"
     if label.casefold() == wild_type.casefold():
         remedy = f"write {shown(wild_type)}, as the wild type is called"
-    elif close := nearest(label, (other for other in seen if other != label)):
+    elif close := nearest(label, known):
         remedy += f", or did you mean {shown(close)}?"
     findings.add(
         origin,

@@ -44,7 +44,4 @@ class Parts:
 
     def surely_without(self, label: str, *tables: CurvesRead | MediansRead | ChargesRead) -> bool:
         """Whether none of `tables` names the construct `label`, nor may have in what could not be read."""
-        return all(
-            table.readable and label not in table.seen and not any(label in text for text in table.lost)
-            for table in tables
-        )
+        return all(table.readable and label not in table.seen and label not in table.lost for table in tables)

@@ -49,7 +49,7 @@ class MediansRead:
 
     medians: tuple[MedianSummary, ...] = ()
     seen: dict[str, Origin] = field(default_factory=dict)  # construct: where it is first named
-    lost: tuple[str, ...] = ()  # text that could not be read; what it names may not be called missing
+    lost: str = ""  # text that could not be read; what it names may not be called missing
     readable: bool = True  # False when nothing could be read
 
 
@@ -60,7 +60,7 @@ class ChargesRead:
     replicates: tuple[ChargeReplicate, ...] = ()
     summaries: tuple[ChargeSummary, ...] = ()
     seen: dict[str, Origin] = field(default_factory=dict)
-    lost: tuple[str, ...] = ()
+    lost: str = ""
     readable: bool = True
 
 

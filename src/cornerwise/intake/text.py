@@ -42,9 +42,9 @@ def encoding_of(data: bytes) -> str:
     for mark, encoding in _MARKS:
         if data.startswith(mark):
             return encoding
-    even, odd = data[0:4096:2].count(0), data[1:4096:2].count(0)
-    if even or odd:
-        return "utf-16-le" if odd > even else "utf-16-be"
+    sample = data[:4096]
+    if sample.count(0) > len(sample) / 4:  # in UTF-16 every second byte of a plain letter is zero
+        return "utf-16-le" if sample[1::2].count(0) > sample[::2].count(0) else "utf-16-be"
     try:
         data.decode("utf-8")
     except UnicodeDecodeError:
@@ -152,7 +152,7 @@ def tabulate(
         rows=np.array([row for row, _ in even], dtype=np.int64),
         columns=tuple(columns[index] for index in named),
         delimiter=delimiter,
-        lost=tuple(lost),
+        lost="\n".join(lost),
     )
 
 
