@@ -35,8 +35,9 @@ __all__ = ["CellReading", "FittedCurve", "plain_median_mv", "read_construct"]
 _UNEVEN_NOISE = 3.0  # ratio of the cells' variances from which they are weighted
 _NOISE_PRIOR_POINTS = 10.0  # points' worth of the typical variance that steadies each cell's
 _VARIANCE_FLOOR = 1e-26
+_NO_PLATEAU = 0.05  # fraction of the charge outside the range
 _TO_SIGMA = 1.4826  # median absolute deviation of normal noise
-_GRID_POINTS = 401
+_GRID_POINTS = 201
 
 
 @dataclass(frozen=True, kw_only=True, slots=True, eq=False)
@@ -98,12 +99,14 @@ def read_construct(
 
 def _read(scaled: ScaledCells, correct: bool) -> list[CellReading]:
     pooled = _pool(scaled.cells)
-    slopes = find_slopes(pooled)
+    missing = missing_charge(pooled)
+    # Where a plateau was not reached nothing tells a line from the rest of the rise.
+    reached = max(m.typical for m in missing) < _NO_PLATEAU
+    slopes = find_slopes(pooled) if reached else no_slopes(scaled.cells)
     if correct and slopes.supported:
         scaled = replace(scaled, cells=slopes.off(scaled.cells))
         pooled = _pool(scaled.cells)
-        slopes = no_slopes(scaled.cells)
-    missing = missing_charge(pooled)
+        slopes, missing = no_slopes(scaled.cells), missing_charge(pooled)
     middle, rise = _landmarks(pooled)
     found = _Findings(
         scaled=scaled,

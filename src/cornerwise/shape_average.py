@@ -31,14 +31,14 @@ _SLOPE_SCATTER = (0.0, 0.01, 0.03, 0.1)  # of the cells' slopes around it, the s
 _VARIANCE_FLOOR = 1e-26  # of cells scaled to 0..1: rounding, not noise
 _QUANTILES = (0.05, 0.1, 0.2, 0.25, 0.35, 0.5, 0.65, 0.75, 0.8, 0.9, 0.95)
 
+_HOPELESS = 6.0  # log evidence by which a richer round must fall behind to end the search
+
 SINGLE = Family(kind="parallel", components=1)
-CANDIDATES = (
-    SINGLE,
-    Family(kind="ladder", components=2),
-    Family(kind="parallel", components=2),
-    Family(kind="ladder", components=3),
-    Family(kind="parallel", components=3),
-    Family(kind="ladder", components=4),
+# Rounds of rising freedom after the single sigmoid.
+ROUNDS = (
+    (Family(kind="ladder", components=2), Family(kind="parallel", components=2)),
+    (Family(kind="ladder", components=3), Family(kind="parallel", components=3)),
+    (Family(kind="ladder", components=4),),
 )
 
 
@@ -119,13 +119,16 @@ class PooledShape:
         return np.asarray((weights * values).sum(axis=0), dtype=np.float64)
 
 
-def pool_shape(cells: Cells) -> PooledShape:
-    """Fit every candidate the number of points allows and weight them.
+def pool_shape(cells: Cells, *, rounds: int = len(ROUNDS)) -> PooledShape:
+    """Fit the single sigmoid and richer candidates, and weight them.
 
     Parameters
     ----------
     cells : Cells
         Curves of one construct, scaled to about 0..1 and rising.
+    rounds : int, default all
+        How many of the rounds of richer candidates to try; they end by themselves where the points do not
+        suffice or where a round falls hopelessly behind the one before.
 
     Returns
     -------
@@ -135,20 +138,28 @@ def pool_shape(cells: Cells) -> PooledShape:
     first = _fit_single(cells, quantiles, shift)
     variance = _variance(cells, first)
     fits = [first]
-    for family in CANDIDATES[1:]:
-        if _free(cells, family) < 1:
-            continue
-        fit = _fit_settled(cells, family, first, quantiles, shift, variance)
-        fits.append(fit)
-        variance = min(variance, _variance(cells, fit))
-    scores = np.array([_log_evidence(cells, fit, first, variance) for fit in fits])
+    for candidates in ROUNDS[:rounds]:
+        begin = len(fits)
+        for family in candidates:
+            if _free(cells, family) >= 1:
+                fit = _fit_settled(cells, family, first, quantiles, shift, variance)
+                fits.append(fit)
+                variance = min(variance, _variance(cells, fit))
+        scores = np.array([_log_evidence(cells, fit, first, variance) for fit in fits])
+        if len(fits) == begin or scores[begin:].max() < scores[:begin].max() - _HOPELESS:
+            break
+    return _weighted(cells, fits, variance)
+
+
+def _weighted(cells: Cells, fits: list[PooledFit], variance: float) -> PooledShape:
+    scores = np.array([_log_evidence(cells, fit, fits[0], variance) for fit in fits])
     weights = np.exp(scores - scores.max())
     return PooledShape(
         cells=cells,
         fits=tuple(fits),
         weights=weights / weights.sum(),
         variance=variance,
-        log_evidence=float(scores.max() + np.log(weights.mean())),
+        log_evidence=float(scores.max() + np.log(weights.sum())),
     )
 
 
@@ -174,10 +185,19 @@ def _quantiles(cells: Cells) -> tuple[Mapping[float, float], FloatArray]:
     return dict(zip(_QUANTILES, mean.tolist(), strict=True)), shift
 
 
-def _fit_single(cells: Cells, quantiles: Mapping[float, float], shift: FloatArray) -> PooledFit:
+def fit_single(cells: Cells) -> PooledFit:
+    """Fit the single sigmoid, slope and midpoint shared by the cells, to full precision."""
+    quantiles, shift = _quantiles(cells)
+    return _fit_single(cells, quantiles, shift, tolerance=1e-14)
+
+
+def _fit_single(
+    cells: Cells, quantiles: Mapping[float, float], shift: FloatArray, *, tolerance: float = 1e-4
+) -> PooledFit:
     low, high = _bounds(cells, SINGLE)
     flat = Prior(mean=np.zeros(2), sd=np.full(2, 1e6), low=low, high=high, variance=_VARIANCE_FLOOR)
-    return fit_shape(cells, SINGLE, np.array([[quantiles[0.5], _log_slope(quantiles)]]), shift, flat)
+    start = np.array([[quantiles[0.5], _log_slope(quantiles)]])
+    return fit_shape(cells, SINGLE, start, shift, flat, tolerance=tolerance)
 
 
 def _fit_settled(

@@ -18,12 +18,15 @@ from dataclasses import dataclass
 from typing import Literal, NamedTuple
 
 import numpy as np
+from numpy.typing import NDArray
 
 from .shapes import Family, FloatArray
 
 _LARGEST_STEP_MV = 40.0
 _FROZEN = 1e12  # stiffness that holds a parameter at its bound
 _STEPS = 40
+_STEPS_TOGETHER = 4  # after which only the best start goes on
+_STUCK = 1e6  # damping at which no step helps
 _TINY = 1e-14
 
 
@@ -104,14 +107,14 @@ class PooledFit:
         return self.family.median_gradient(self.theta)[:, None] - self.coupling / self.shift_information
 
 
-class _Linearised(NamedTuple):
+class _Point(NamedTuple):
     """Everything at one point of the search; the leading axis is the batch of starts."""
 
+    q: FloatArray  # (b, c, n), baseline projected out and of unit length
     gain: FloatArray  # (b, c)
     base: FloatArray  # (b, n_columns, c), coefficients of the baseline
     residual: FloatArray  # (b, c, n)
-    by_shift: FloatArray  # (b, c, n), gain and baseline projected out
-    by_shape: FloatArray  # (b, p, c, n), gain and baseline projected out
+    by_shape: FloatArray  # (b, p + 1, c, n): derivatives by each parameter and, last, by the shift
 
 
 class _Normal(NamedTuple):
@@ -129,7 +132,7 @@ def fit_shape(
     shift_mv: FloatArray,
     prior: Prior,
     *,
-    tolerance: float = 1e-5,
+    tolerance: float = 1e-4,
 ) -> PooledFit:
     """Fit one family from several starts and keep the best.
 
@@ -145,7 +148,7 @@ def fit_shape(
         Shifts to start from (mV).
     prior : Prior
         Bounds and weak prior.
-    tolerance : float, default 1e-5
+    tolerance : float, default 1e-4
         Relative gain of the sum of squares below which the search ends.
 
     Returns
@@ -164,45 +167,52 @@ def _search(
 ) -> tuple[FloatArray, FloatArray]:
     """Levenberg-Marquardt over a batch of starts; ends when the best of them has converged."""
     damping, basis = np.full(len(theta), 1e-2), cells.baseline_basis
-    here = _linearise(cells, family, theta, shift, basis)
+    here = _evaluate(cells, family, theta, shift, basis)
     cost = _cost(cells, here, theta, prior)
     for step in range(_STEPS):
-        normal = _normal(cells, here, theta, prior)
+        normal = _normal(cells, here, theta, prior, basis)
         new_theta, new_shift = _move(normal, theta, shift, damping, prior, family.step_limit)
-        there = _linearise(cells, family, new_theta, new_shift, basis)
+        there = _evaluate(cells, family, new_theta, new_shift, basis)
         new_cost = _cost(cells, there, new_theta, prior)
         better = new_cost <= cost
-        small = np.where(better, cost - new_cost < tolerance * cost, damping > 1e6)
+        small = np.where(better, cost - new_cost < tolerance * cost, damping > _STUCK)
         theta = np.where(better[:, None], new_theta, theta)
         shift = np.where(better[:, None], new_shift, shift)
-        here = _Linearised(*(_pick(better, new, old) for new, old in zip(there, here, strict=True)))
+        here = _Point(*(_pick(better, new, old) for new, old in zip(there, here, strict=True)))
         cost = np.where(better, new_cost, cost)
-        damping = np.clip(np.where(better, damping * 0.1, damping * 6.0), 1e-10, 1e8)
+        damping = np.clip(np.where(better, damping * 0.1, damping * 6.0), 1e-10, 100.0 * _STUCK)
         best = int(np.argmin(cost))
         if (small[best] and step > 2) or cost[best] <= _TINY**2:
             break
+        if step == _STEPS_TOGETHER:
+            only = slice(best, best + 1)
+            theta, shift, cost, damping = theta[only], shift[only], cost[only], damping[only]
+            here = _Point(*(part[only] for part in here))
+    best = int(np.argmin(cost))
     return theta[best], shift[best]
 
 
-def _pick(better: np.ndarray, new: FloatArray, old: FloatArray) -> FloatArray:
+def _pick(better: NDArray[np.bool_], new: FloatArray, old: FloatArray) -> FloatArray:
+    if better.all():
+        return new
     return np.where(better.reshape((-1,) + (1,) * (new.ndim - 1)), new, old)
 
 
-def _linearise(
+def _evaluate(
     cells: Cells, family: Family, theta: FloatArray, shift: FloatArray, basis: FloatArray
-) -> _Linearised:
-    """Solve for gains and baselines and project them out of the derivatives."""
-    w, wb = cells.weight, cells.weight * basis
+) -> _Point:
+    """Solve for gains and baselines; derivatives are left as they are."""
+    wb = cells.weight * basis
     values = family.values(cells.v_mv[None] - shift[:, :, None], theta)
     q = _off_basis(values.q, basis, wb)
+    length = _length(cells.weight, q) + _TINY  # a shape that is flat over a cell's range has no gain
+    q = q / length
     y = _off_basis(cells.y, basis, wb)
-    norm = (w * q * q).sum(axis=-1) + _TINY**2  # a shape that is flat over a cell's range has no gain
-    gain = (w * q * y).sum(axis=-1) / norm
-    wq = w * q / norm[..., None]
-    base = (wb * (cells.y - gain[..., None] * values.q)[:, None]).sum(axis=-1)
-    by_shift = _project(-gain[..., None] * values.slope, basis, wb, wq, q)
-    by_shape = _project(gain[:, None, :, None] * values.gradient, basis, wb, wq[:, None], q[:, None])
-    return _Linearised(gain, base, y - gain[..., None] * q, by_shift, by_shape)
+    scaled_gain = (cells.weight * q * y).sum(axis=-1, keepdims=True)
+    gain = scaled_gain / length
+    base = (wb * (cells.y - gain * values.q)[:, None]).sum(axis=-1)
+    by_shape = gain[:, None] * np.concatenate([values.gradient, -values.slope[:, None]], axis=1)
+    return _Point(q, gain[..., 0], base, y - scaled_gain * q, by_shape)
 
 
 def _off_basis(x: FloatArray, basis: FloatArray, weighted_basis: FloatArray) -> FloatArray:
@@ -212,35 +222,35 @@ def _off_basis(x: FloatArray, basis: FloatArray, weighted_basis: FloatArray) -> 
     return x
 
 
-def _project(
-    x: FloatArray, basis: FloatArray, weighted_basis: FloatArray, wq: FloatArray, q: FloatArray
-) -> FloatArray:
-    """Part of `x` that neither a baseline nor a gain can imitate."""
-    x = _off_basis(x, basis, weighted_basis)
-    return np.asarray(x - (wq * x).sum(axis=-1)[..., None] * q, dtype=np.float64)
-
-
-def _cost(cells: Cells, here: _Linearised, theta: FloatArray, prior: Prior) -> FloatArray:
+def _cost(cells: Cells, here: _Point, theta: FloatArray, prior: Prior) -> FloatArray:
     misfit = (cells.weight * here.residual**2).sum(axis=(-1, -2))
     return np.asarray(misfit + (prior.precision * (theta - prior.mean) ** 2).sum(axis=-1), dtype=np.float64)
 
 
-def _normal(cells: Cells, here: _Linearised, theta: FloatArray, prior: Prior) -> _Normal:
-    """Normal equations; the ridge keeps a cell or a parameter the data do not touch from being singular."""
-    w, ridge = cells.weight, _TINY * cells.points
-    weighted = w * here.by_shape
+def _normal(cells: Cells, here: _Point, theta: FloatArray, prior: Prior, basis: FloatArray) -> _Normal:
+    """Normal equations with gains and baselines eliminated.
+
+    The ridge keeps a cell or a parameter that the data do not touch from being singular.
+    """
+    weighted = cells.weight * here.by_shape
+    linear = [(weighted * column).sum(axis=-1) for column in basis]
+    linear.append((weighted * here.q[:, None]).sum(axis=-1))
+    imitated = np.concatenate(linear, axis=-1)  # (b, p + 1, columns of all cells)
     flat = weighted.reshape(*weighted.shape[:2], -1)
-    shape = np.einsum("bpk,bqk->bpq", flat, here.by_shape.reshape(flat.shape))
-    diagonal = np.arange(shape.shape[1])
+    raw = here.by_shape.reshape(flat.shape)
+    pull = (weighted * here.residual[:, None]).sum(axis=-1)
+    shape = np.einsum("bpk,bqk->bpq", flat[:, :-1], raw[:, :-1])
+    shape -= np.einsum("bpk,bqk->bpq", imitated[:, :-1], imitated[:, :-1])
+    against_shift = (weighted * here.by_shape[:, -1:]).sum(axis=-1)
+    against_shift -= sum(part * part[:, -1:] for part in linear)
+    diagonal, ridge = np.arange(shape.shape[1]), _TINY * cells.points
     shape[:, diagonal, diagonal] += prior.precision + ridge
-    w_shift = w * here.by_shift
     return _Normal(
         shape=shape,
-        coupling=(weighted * here.by_shift[:, None]).sum(axis=-1),
-        shift=(w_shift * here.by_shift).sum(axis=-1) + ridge * _TINY,
-        shape_pull=(weighted * here.residual[:, None]).sum(axis=(-1, -2))
-        - prior.precision * (theta - prior.mean),
-        shift_pull=(w_shift * here.residual).sum(axis=-1),
+        coupling=against_shift[:, :-1],
+        shift=against_shift[:, -1] + ridge * _TINY,
+        shape_pull=pull[:, :-1].sum(axis=-1) - prior.precision * (theta - prior.mean),
+        shift_pull=pull[:, -1],
     )
 
 
@@ -270,14 +280,10 @@ def _move(
 def _describe(cells: Cells, family: Family, theta: FloatArray, shift: FloatArray, prior: Prior) -> PooledFit:
     """Collect what the averaging needs at the optimum."""
     basis = cells.baseline_basis
-    here = _linearise(cells, family, theta[None], shift[None], basis)
-    normal = _normal(cells, here, theta[None], prior)
+    here = _evaluate(cells, family, theta[None], shift[None], basis)
+    normal = _normal(cells, here, theta[None], prior, basis)
     coupling, shift_information = normal.coupling[0], normal.shift[0]
-    information = normal.shape[0] - np.einsum("pc,qc->pq", coupling / shift_information, coupling)
-    along = coupling / shift_information
-    rise = family.values(cells.v_mv[None] - shift[None, :, None], theta[None]).slope[0]
-    slope, slope_information = _baseline_slope(cells, here, basis, rise)
-    departure = here.by_shape[0] - along[:, :, None] * here.by_shift[0][None]
+    slope, slope_information = _baseline_slope(cells, here, basis)
     return PooledFit(
         family=family,
         theta=theta,
@@ -288,17 +294,22 @@ def _describe(cells: Cells, family: Family, theta: FloatArray, shift: FloatArray
         slope_information=slope_information,
         residual=here.residual[0],
         sum_of_squares=float((cells.weight * here.residual[0] ** 2).sum()),
-        information=information,
+        information=normal.shape[0] - np.einsum("pc,qc->pq", coupling / shift_information, coupling),
         coupling=coupling,
         shift_information=shift_information,
-        departure=np.moveaxis(departure, 0, -1),
+        departure=_departure(cells, here, basis, coupling / shift_information),
         prior=prior,
     )
 
 
-def _baseline_slope(
-    cells: Cells, here: _Linearised, basis: FloatArray, rise: FloatArray
-) -> tuple[FloatArray, FloatArray]:
+def _departure(cells: Cells, here: _Point, basis: FloatArray, along: FloatArray) -> FloatArray:
+    """What each parameter changes in each cell that its gain, baseline and shift cannot."""
+    free = _off_basis(here.by_shape[0], basis, cells.weight * basis)
+    free = free - (cells.weight * here.q[0] * free).sum(axis=-1)[..., None] * here.q[0]
+    return np.moveaxis(free[:-1] - along[:, :, None] * free[-1:], 0, -1)
+
+
+def _baseline_slope(cells: Cells, here: _Point, basis: FloatArray) -> tuple[FloatArray, FloatArray]:
     """Slope of each cell's baseline per mV, and its information with level, gain and shift free."""
     if cells.baseline != "line":
         none = np.zeros(len(cells.y))
@@ -307,7 +318,7 @@ def _baseline_slope(
     per_mv = np.ptp(line, axis=-1) / np.ptp(cells.v_mv, axis=-1)
     shape = cells.y - here.residual[0] - here.base[0, 1][:, None] * line
     root = np.sqrt(cells.weight)[..., None]
-    others, _ = np.linalg.qr(root * np.stack([level, shape, rise], axis=-1))
+    others, _ = np.linalg.qr(root * np.stack([level, shape, here.by_shape[0, -1]], axis=-1))
     along = (others * root * line[..., None]).sum(axis=1)
     left = np.maximum(1.0 - (along**2).sum(axis=-1), 0.0)
     return here.base[0, 1] * per_mv, left / per_mv**2

@@ -132,4 +132,7 @@ def _ladder(u: FloatArray, theta: FloatArray, k: int) -> Values:
 
 
 def _sum_above(x: FloatArray) -> FloatArray:
-    return np.cumsum(x[:, ::-1], axis=1)[:, ::-1]
+    summed = x.copy()
+    for k in range(x.shape[1] - 2, -1, -1):
+        summed[:, k] += summed[:, k + 1]
+    return summed

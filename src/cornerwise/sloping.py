@@ -16,9 +16,10 @@ from .shape_fit import Cells
 from .shapes import FloatArray
 
 EVIDENCE_LIMIT = 3.0  # difference of log evidence from which the line is believed, a factor of 20
-_PLATEAU = 0.01  # fraction of the charge of the single sigmoid
-_SCREEN = 2.5  # standard uncertainties of the mean slope that call for the second fit
-_FEWEST = 3  # points on a plateau
+_PLATEAU = 0.002  # fraction of the charge of the single sigmoid
+_SCREEN = 3.0  # standard uncertainties of the mean slope that call for the second fit
+_FEWEST = 4  # outermost points that count as plateau wherever the sigmoid is
+_ROUNDS = 2  # a line takes the place of slow components, so that the richest shapes are not needed
 
 
 @dataclass(frozen=True, kw_only=True, slots=True, eq=False)
@@ -57,7 +58,7 @@ def find_slopes(pooled: PooledShape) -> Slopes:
     cells = pooled.cells
     if not _suspicious(pooled):
         return no_slopes(cells)
-    lined = pool_shape(replace(cells, baseline="line"))
+    lined = pool_shape(replace(cells, baseline="line"), rounds=_ROUNDS)
     per_mv = sum(
         (weight * fit.slope for weight, fit in zip(lined.weights, lined.fits, strict=True)),
         start=np.zeros(len(cells.y)),
@@ -74,20 +75,16 @@ def _suspicious(pooled: PooledShape) -> bool:
     """Whether points on the plateaus of the single sigmoid rise or fall, all cells taken together."""
     cells, single = pooled.cells, pooled.fits[0]
     q = single.family.q(cells.v_mv - single.shift_mv[:, None], single.theta)
-    power, product, free = 0.0, 0.0, 0
-    squares = 0.0
-    for end in (q < _PLATEAU, q > 1.0 - _PLATEAU):
-        inside = end & (cells.weight > 0)
-        count = inside.sum(axis=1, keepdims=True)
-        inside &= count >= _FEWEST
+    squares, product, power, free = 0.0, 0.0, 0.0, -1
+    for below in (np.where(cells.weight > 0, q, 1.0), np.where(cells.weight > 0, 1.0 - q, 1.0)):
+        outermost = np.sort(below, axis=1)[:, _FEWEST - 1 : _FEWEST]
+        inside = below <= np.maximum(outermost, _PLATEAU)
         v, y = (_centred(x, inside) for x in (cells.v_mv, cells.y))
-        power += float((v * v).sum())
-        product += float((v * y).sum())
         squares += float((y * y).sum())
-        free += int(inside.sum() - inside.any(axis=1).sum())
-    if power == 0.0 or free < _FEWEST:
-        return False
-    variance = max(squares - product**2 / power, 0.0) / (free - 1)
+        product += float((v * y).sum())
+        power += float((v * v).sum())
+        free += int(inside.sum()) - len(inside)
+    variance = max(squares - product**2 / power, 0.0) / free
     return product**2 > _SCREEN**2 * variance * power
 
 
