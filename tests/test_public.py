@@ -8,8 +8,8 @@ import cornerwise
 
 def test_public_names_are_frozen() -> None:
     assert sorted(cornerwise.__all__) == [
-        "Campaign", "CornerwiseError", "DataRefused", "Result", "Survey", "UsageError", "couple", "read",
-        "survey",
+        "Campaign", "CornerwiseError", "DataRefused", "Result", "Survey", "UsageError", "couple", "explain",
+        "read", "survey",
     ]  # fmt: skip
     for name in cornerwise.__all__:
         assert getattr(cornerwise, name) is not None

@@ -12,6 +12,7 @@ if TYPE_CHECKING:
     from .coupling import couple
     from .errors import CornerwiseError, DataRefused, UsageError
     from .intake import read
+    from .render.explanation import explain
     from .result import Result
     from .surveying import Survey, survey
 
@@ -23,6 +24,7 @@ __all__ = [
     "Survey",
     "UsageError",
     "couple",
+    "explain",
     "read",
     "survey",
 ]
@@ -35,6 +37,7 @@ _ROOM_OF = {
     "Survey": "surveying",
     "UsageError": "errors",
     "couple": "coupling",
+    "explain": "render.explanation",
     "read": "intake",
     "survey": "surveying",
 }

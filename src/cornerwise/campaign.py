@@ -66,6 +66,18 @@ class ChargeSummary:
     origin: Origin = field(default_factory=Origin)
 
 
+@dataclass(frozen=True, kw_only=True, slots=True, eq=False)
+class OpeningCurve:
+    """One cell's open probability against voltage, points in rising voltage."""
+
+    construct: str
+    cell: str
+    batch: str | None = None
+    voltage_mv: FloatArray  # (n_points,), strictly rising
+    open_probability: FloatArray  # (n_points,), 0 to 1
+    origin: Origin = field(default_factory=Origin)
+
+
 @dataclass(frozen=True, kw_only=True, slots=True)
 class StatedCharge:
     """One total charge for every construct, with its standard uncertainty."""
@@ -88,6 +100,7 @@ class Construct:
     median: MedianSummary | None = None  # never together with curves
     charge_replicates: tuple[ChargeReplicate, ...] = ()
     charge_summaries: tuple[ChargeSummary, ...] = ()  # one a method
+    openings: tuple[OpeningCurve, ...] = ()  # for the limiting slope
 
 
 @dataclass(frozen=True, kw_only=True, slots=True)

@@ -194,6 +194,27 @@ def couple(
         _write(result_files(result), out, force=force)
 
 
+@app.command()
+def explain(
+    path: _Campaign,
+    cycle: Annotated[str, typer.Argument(metavar="CYCLE", help="Name of a cycle in the coupling table.")],
+) -> None:
+    """Say in words how one cycle was judged.
+
+    What was measured, what was assumed, why these verdicts, and what would change them.
+
+    \b
+    For example:
+      cornerwise explain trial D171N/K232Q
+    """  # noqa: D301
+    from . import couple as run
+    from . import explain as put_in_words
+    from . import read
+    from .render.terminal import print_paragraphs
+
+    print_paragraphs(put_in_words(run(read(path), _progress()), cycle), sys.stdout)
+
+
 def main() -> None:
     """Entry point of the ``cornerwise`` command."""
     try:

@@ -199,6 +199,13 @@ def _survey_line(row: SurveyRow, marks: dict[str, str], plus_minus: str) -> list
     ]
 
 
+def print_paragraphs(text: str, stream: IO[str]) -> None:
+    """Paragraphs, wrapped at a terminal and a line each elsewhere."""
+    with screen_on(stream) as screen:
+        for line in text.splitlines():
+            screen.print(Text(line))
+
+
 def print_survey(survey: Survey, stream: IO[str]) -> None:
     """One line a construct, the flags in words, the cycles that can be formed and those that cannot."""
     with screen_on(stream) as screen:

@@ -1,0 +1,215 @@
+"""One cycle in words: what was measured, what was assumed, why these verdicts, what would change them."""
+
+from __future__ import annotations
+
+from difflib import get_close_matches
+
+from ..errors import UsageError
+from ..result import BudgetRow, ConstructRow, CornerCharge, InteractionRow, Result
+from .legend import percent
+from .rounding import decimals_for, number, span, with_uncertainty
+
+
+def explain(result: Result, cycle: str) -> str:
+    """Explain one cycle of a result in plain sentences.
+
+    Parameters
+    ----------
+    result : Result
+        What `cornerwise.couple` returned.
+    cycle : str
+        Name of the cycle, as in the coupling table.
+
+    Returns
+    -------
+    str
+        Paragraphs separated by blank lines, each on one line.
+
+    Raises
+    ------
+    UsageError
+        If there is no cycle of that name; names the nearest.
+    """
+    rows = {row.cycle: row for row in result.interactions}
+    if cycle not in rows:
+        near = get_close_matches(cycle, rows, n=1)
+        hint = f"; did you mean {near[0]}?" if near else f"; there are {', '.join(rows)}"
+        raise UsageError(f"no cycle is called {cycle}{hint}")
+    row = rows[cycle]
+    corners = [one for label, _ in row.corners for one in result.constructs if one.construct == label]
+    budget = [part for part in result.budget if part.cycle == cycle]
+    paragraphs = [
+        _interaction(result, row),
+        _measured(corners),
+        _assumed(row, corners),
+        _shortcut(result, row),
+        _voltages(result, row),
+        _outlook(result, row, budget),
+    ]
+    return "\n\n".join(paragraph for paragraph in paragraphs if paragraph)
+
+
+def _energy(result: Result, value: float | None, uncertainty: float | None) -> str:
+    return f"{with_uncertainty(value, uncertainty)} {result.settings.energy_unit}"
+
+
+_VERDICT_REASONS = {
+    "coupled": "the whole interval lies beyond the threshold of {threshold}",
+    "detected": "the interval excludes 0 but not the threshold of {threshold}",
+    "uncoupled": "the whole interval lies inside the threshold of {threshold} either side of 0",
+    "unresolved": "the interval neither excludes 0 nor lies inside the threshold of {threshold}",
+}
+
+
+def _interaction(result: Result, row: InteractionRow) -> str:
+    settings = result.settings
+    formula = " ".join(f"{'+' if sign > 0 else '-'} dG({label})" for label, sign in row.corners)
+    text = (
+        f"{row.cycle}: I = {formula} = {_energy(result, row.interaction, row.std_uncertainty)} per channel"
+        f" at {settings.reference_voltage_mv:g} mV."
+    )
+    if row.low is None or row.dof is None:
+        return f"{text} A corner rests on too few cells for an uncertainty, so it is unresolved."
+    threshold = f"{settings.energy_threshold:.3g} {settings.energy_unit}"
+    text += (
+        f" The {percent(settings.confidence)} interval is {span((row.low, row.high), row.std_uncertainty)} "
+        f"(Student's t, {row.dof:.1f} degrees of freedom; p = {row.p_value:.2g}"
+        f"{_adjusted(result, row)}). It is {row.interaction_verdict}: "
+        f"{_VERDICT_REASONS[row.interaction_verdict].format(threshold=threshold)}."
+    )
+    if row.favours is not None:
+        text += f" The native interaction favours the {row.favours} state; this is no proof of a contact."
+    return text
+
+
+def _adjusted(result: Result, row: InteractionRow) -> str:
+    count = len(result.interactions)
+    return "" if count == 1 else f", {row.p_adjusted:.2g} after adjustment for {count} cycles"
+
+
+def _measured(corners: list[ConstructRow]) -> str:
+    parts = []
+    for one in corners:
+        charge = f"Q {with_uncertainty(one.charge_e0, one.charge_sem_e0)} e0"
+        n = "" if one.charge_n is None else f", n = {one.charge_n}"
+        parts.append(
+            f"{one.construct}: Vm {with_uncertainty(one.median_mv, one.median_sem_mv)} mV (n = "
+            f"{one.cells_used}), {charge} ({one.charge_source}{n})"
+        )
+    return f"Measured, mean and standard error. {'; '.join(parts)}."
+
+
+def _assumed(row: InteractionRow, corners: list[ConstructRow]) -> str:
+    assumed = [one.construct for one in row.corner_charges if one.verdict == "assumed"]
+    if not assumed:
+        return "Nothing was assumed about total charge: it was measured on every corner."
+    shared = next(one.charge_source for one in corners if one.construct == assumed[0])
+    source = "the wild type's" if shared == "wild type" else "the stated value"
+    text = (
+        f"Assumed: the total charge of {', '.join(assumed)} was never measured and is taken to be {source}."
+    )
+    if row.breakdown:
+        changes = [f"{one.construct} {one.fraction:+.0%}" for one in row.breakdown]
+        text += (
+            " The interval would reach 0 if the charge of one of them differed from that by so much: "
+            f"{', '.join(changes)}. Judge whether such a change is plausible."
+        )
+    elif row.low is not None:
+        text += " The interval includes 0 already, so no change of these charges is needed to erase it."
+    return text
+
+
+def _charge_sentence(one: CornerCharge, confidence: float) -> str:
+    if one.ratio is None or one.low is None:
+        return f"{one.construct} assumed"
+    return (
+        f"{one.construct} {one.ratio:.3f} ({percent(confidence)} interval {one.low:.3f} to {one.high:.3f}), "
+        f"{one.verdict}"
+    )
+
+
+_SHORTCUT_REASONS = {
+    "valid": "every charge is shown to be equal within the margin and the bias is inside the tolerance",
+    "invalid": "a charge changed, or the bias lies outside the tolerance",
+    "unresolved": "equal charge, or a bias inside the tolerance, could not be shown",
+    "untested": "a total charge was never measured, so it is not known",
+}
+
+
+def _shortcut(result: Result, row: InteractionRow) -> str:
+    settings = result.settings
+    charges = "; ".join(_charge_sentence(one, settings.confidence) for one in row.corner_charges)
+    text = (
+        f"Median voltages alone, with one charge for all corners, give "
+        f"{number(row.shortcut, decimals_for(row.std_uncertainty))} {settings.energy_unit}. Charge relative "
+        f"to {row.wild_type}: {charges} (margin {percent(settings.charge_margin)}; the error of the verdict "
+        "changed is held for all corners together)."
+    )
+    if row.shortcut_bias is not None and row.shortcut_bias_low is not None:
+        limits = (row.shortcut_bias_low, row.shortcut_bias_high)
+        half = (row.shortcut_bias_high or 0.0) - row.shortcut_bias_low
+        text += (
+            f" The shortcut is off by {number(row.shortcut_bias, decimals_for(half / 4))} "
+            f"({span(limits, half / 4)}), the tolerance is {settings.energy_tolerance:.3g} "
+            f"{settings.energy_unit}."
+        )
+    return f"{text} The shortcut is {row.shortcut_verdict}: {_SHORTCUT_REASONS[row.shortcut_verdict]}."
+
+
+def _voltages(result: Result, row: InteractionRow) -> str:
+    if row.change_per_10_mv is None or row.charge_interaction_low is None:
+        return ""
+    j = (
+        f"J = {row.charge_interaction_e0:+.2f} e0 ({row.charge_interaction_low:.2f} to "
+        f"{row.charge_interaction_high:.2f})"
+    )
+    unit, limits = result.settings.energy_unit, (row.change_per_10_mv_low, row.change_per_10_mv_high)
+    half = ((limits[1] or 0.0) - (limits[0] or 0.0)) / 4
+    value = number(row.change_per_10_mv, decimals_for(half))
+    change = f"{value} {unit} ({span(limits, half)}) for every +10 mV"
+    offset = (
+        f"; the stated voltage offset of {result.settings.voltage_offset_mv:g} mV contributes "
+        f"{row.offset_contribution:.2g} {unit}"
+        if result.settings.voltage_offset_mv and row.offset_contribution is not None
+        else ""
+    )
+    if "charge-nonadditive" in row.flags:
+        return (
+            f"The charges do not add up, {j}: the interaction energy depends on the voltage and changes by "
+            f"{change}, and a common voltage error does not cancel{offset}."
+        )
+    return (
+        f"The charges add up within their uncertainty, {j}: if they do so exactly the interaction energy is "
+        f"one number for all voltages and a common voltage error cancels; the data allow a change of {change}"
+        f"{offset}."
+    )
+
+
+def _outlook(result: Result, row: InteractionRow, budget: list[BudgetRow]) -> str:
+    parts = []
+    settled = row.shortcut_verdict == "valid"
+    if not settled and row.shortcut_verdict != "untested" and row.passing_margin is not None:
+        parts.append(
+            f"every charge would count as equal with a margin of {percent(round(row.passing_margin, 3))}"
+        )
+    if settled and row.passing_margin is not None:
+        parts.append(
+            f"the shortcut stays valid down to a margin of {percent(round(row.passing_margin, 3))} and a "
+            f"tolerance of {row.passing_tolerance:.2g} {result.settings.energy_unit}"
+        )
+    elif row.passing_tolerance is not None:
+        tolerance = f"{row.passing_tolerance:.2g} {result.settings.energy_unit}"
+        parts.append(f"the bias would be tolerable with a tolerance of {tolerance}")
+    open_verdict = any(one.verdict == "unresolved" for one in row.corner_charges)
+    if open_verdict and row.charge_cells_needed is not None:
+        parts.append(
+            f"at the scatter seen, {row.charge_cells_needed} charge values on each construct would give "
+            "every charge a verdict"
+        )
+    if row.shortcut_verdict == "untested":
+        parts.append("measuring the assumed charges would test the shortcut")
+    known = [part for part in budget if part.share is not None]
+    if known:
+        most = known[0]
+        parts.append(f"the largest part of the uncertainty, {most.share:.0%}, comes from {most.source}")
+    return f"What would change it: {'; '.join(parts)}." if parts else ""
