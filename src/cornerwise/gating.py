@@ -117,15 +117,7 @@ class GatingScheme(ABC):
     def log_open_probability(self, v_mv: ArrayLike) -> FloatArray:
         """Natural logarithm of the open probability, finite where the probability itself is 0 in print.
 
-        Parameters
-        ----------
-        v_mv : array_like
-            Voltages (mV), any shape.
-
-        Returns
-        -------
-        ndarray
-            Shape of `v_mv`.
+        Takes voltages (mV) of any shape and gives the same shape.
         """
         _, is_open, log_weight = self._log_weights(v_mv)
         total = logsumexp(log_weight, axis=-1)
@@ -243,10 +235,6 @@ class LinearSequence(GatingScheme):
             Index of the intermediate, 1 to n_steps - 1.
         energy_mev : float
             Added to its energy (meV); negative stabilises it.
-
-        Returns
-        -------
-        LinearSequence
 
         Raises
         ------

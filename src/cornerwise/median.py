@@ -21,7 +21,7 @@ import numpy as np
 from .campaign import Curve
 from .cell_reading import CellReading, FittedCurve, unreadable
 from .curve_quality import Evidence, cell_flags, outlying_flags
-from .departures import own_departure_mv
+from .departures import own_departures, smooth_leftover_mv
 from .extrapolation import Missing, missing_charge, truncation_mv
 from .plateaus import plain_median_mv, plain_uncertainty_mv
 from .scaled_cells import ScaledCells, canonical, scale, why_unreadable
@@ -107,11 +107,12 @@ def _read(scaled: ScaledCells, correct: bool) -> list[CellReading]:
         scaled = replace(scaled, cells=slopes.off(scaled.cells))
         pooled = _pool(scaled.cells)
         slopes, missing = no_slopes(scaled.cells), missing_charge(pooled)
+    departures = own_departures(pooled)
     middle, rise = _landmarks(pooled)
     found = _Findings(
         scaled=scaled,
         pooled=pooled,
-        departure_mv=own_departure_mv(pooled),
+        departure_mv=departures.own_mv + smooth_leftover_mv(pooled, departures.left),
         missing=missing,
         slopes=slopes,
         noise=_noise(pooled) / np.maximum(np.abs(pooled.gain), _VARIANCE_FLOOR),

@@ -46,7 +46,10 @@ def why_unreadable(curve: Curve) -> str | None:
     if rise > 0.0 and rise >= SMALLEST_RISE * spread:
         return None
     share = rise / spread if spread > 0.0 else 0.0
-    return f"no rise: the two ends differ by {share:.0%} of the spread of the charges, less than half"
+    return (
+        f"no rise: the two ends differ by {share:.0%} of the spread of the charges, less than half; record "
+        "the whole rise with both plateaus"
+    )
 
 
 def scale(curves: Sequence[Curve]) -> ScaledCells:

@@ -31,6 +31,9 @@ _SLOPE_SCATTER = (0.0, 0.01, 0.03, 0.1)  # of the cells' slopes around it, the s
 _VARIANCE_FLOOR = 1e-26  # of cells scaled to 0..1: rounding, not noise
 _QUANTILES = (0.05, 0.1, 0.2, 0.25, 0.35, 0.5, 0.65, 0.75, 0.8, 0.9, 0.95)
 
+_NOISELESS = 1e-9  # variance below which data are computed, not measured, and a fit may take its time
+_TOLERANCE = 1e-4  # of the sum of squares
+_SETTLINGS = 12
 _HOPELESS = 6.0  # log evidence by which a richer round must fall behind to end the search
 
 SINGLE = Family(kind="parallel", components=1)
@@ -192,7 +195,7 @@ def fit_single(cells: Cells) -> PooledFit:
 
 
 def _fit_single(
-    cells: Cells, quantiles: Mapping[float, float], shift: FloatArray, *, tolerance: float = 1e-4
+    cells: Cells, quantiles: Mapping[float, float], shift: FloatArray, *, tolerance: float = _TOLERANCE
 ) -> PooledFit:
     low, high = _bounds(cells, SINGLE)
     flat = Prior(mean=np.zeros(2), sd=np.full(2, 1e6), low=low, high=high, variance=_VARIANCE_FLOOR)
@@ -210,8 +213,10 @@ def _fit_settled(
 ) -> PooledFit:
     """Fit, and again while the fit shows that the prior was weighted with too much noise."""
     starts = _starts(family, quantiles)
-    for _ in range(6):
-        fit = fit_shape(cells, family, starts, shift, _prior(cells, family, single, variance))
+    for _ in range(_SETTLINGS):
+        prior = _prior(cells, family, single, variance)
+        tolerance = _TOLERANCE if variance > _NOISELESS else _TOLERANCE**2
+        fit = fit_shape(cells, family, starts, shift, prior, tolerance=tolerance)
         found = _variance(cells, fit)
         if found > 0.25 * variance:
             break

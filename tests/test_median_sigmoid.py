@@ -1,0 +1,84 @@
+from __future__ import annotations
+
+import math
+
+import numpy as np
+import pytest
+
+from cornerwise.campaign import Curve
+from cornerwise.gating import LinearSequence, TwoStates, example_schemes
+from cornerwise.single_sigmoid import sigmoid_of_cell, single_sigmoid
+from cornerwise.units import thermal_voltage_mv
+
+# NIST Statistical Reference Datasets, nonlinear regression, Rat42 (Ratkowsky 1983, Nonlinear Regression
+# Modeling, pp. 61 and 88): y = b1/(1 + exp(b2 - b3 x)), certified values.
+RAT42_X = np.array([9.0, 14, 21, 28, 42, 57, 63, 70, 79])
+RAT42_Y = np.array([8.930, 10.800, 18.590, 22.330, 39.350, 56.110, 61.730, 64.620, 67.080])
+RAT42_B1, RAT42_B2, RAT42_B3 = 7.2462237576e01, 2.6180768402e00, 6.7359200066e-02
+RAT42_RSS = 8.0565229338
+
+
+def curve(v: np.ndarray, charge: np.ndarray, cell: str = "c1") -> Curve:
+    return Curve(construct="invented", cell=cell, voltage_mv=v, charge=charge)
+
+
+def test_certified_sigmoid_to_six_digits() -> None:
+    fit = sigmoid_of_cell(curve(RAT42_X, RAT42_Y), temperature_c=22.0, low_plateau_is_zero=True)
+    slope = fit.slope_charge_e0 / thermal_voltage_mv(22.0)
+    assert fit.high_plateau == pytest.approx(RAT42_B1, rel=1e-6)
+    assert slope == pytest.approx(RAT42_B3, rel=1e-6)
+    assert slope * fit.midpoint_mv == pytest.approx(RAT42_B2, rel=1e-6)
+    assert fit.residual_sum_of_squares == pytest.approx(RAT42_RSS, rel=1e-6)
+    assert fit.low_plateau == 0.0
+
+
+def test_two_states_give_back_their_charge_and_energy() -> None:
+    scheme = TwoStates(charge_e0=4.0, midpoint_mv=-30.0, temperature_c=20.0)
+    v = np.arange(-120.0, 61.0, 5.0)
+    found = single_sigmoid([curve(v, 2.0 * scheme.q(v) - 1.0, f"c{i}") for i in range(3)], temperature_c=20.0)
+    assert found is not None
+    assert found.midpoint_mv == pytest.approx(-30.0, abs=1e-6)
+    assert found.slope_charge_e0 == pytest.approx(4.0, rel=1e-6)
+    assert found.energy_mev == pytest.approx(scheme.activation_energy_mev, rel=1e-6)
+    assert found.energy_sem_mev == pytest.approx(0.0, abs=1e-9)
+    assert found.cells[0].low_plateau == pytest.approx(-1.0, abs=1e-6)
+
+
+def test_more_states_give_less_charge_than_they_move() -> None:
+    scheme = example_schemes()["linear sequence"]
+    assert isinstance(scheme, LinearSequence)
+    v = np.arange(-170.0, 131.0, 5.0)
+    found = single_sigmoid([curve(v, scheme.q(v))], temperature_c=22.0)
+    assert found is not None
+    assert found.slope_charge_e0 < 0.5 * scheme.total_charge_e0
+    assert abs(found.energy_mev) < 0.5 * abs(scheme.activation_energy_mev)
+    assert found.energy_sem_mev is None
+
+
+def test_the_temperature_scales_the_slope_charge_alone() -> None:
+    scheme = TwoStates(charge_e0=4.0, midpoint_mv=-30.0)
+    v = np.arange(-120.0, 61.0, 5.0)
+    cold, warm = (sigmoid_of_cell(curve(v, scheme.q(v)), temperature_c=t) for t in (10.0, 30.0))
+    assert warm.midpoint_mv == pytest.approx(cold.midpoint_mv, abs=1e-9)
+    assert warm.slope_charge_e0 / cold.slope_charge_e0 == pytest.approx(303.15 / 283.15, rel=1e-12)
+
+
+def test_unreadable_curves_are_left_out() -> None:
+    v = np.arange(-120.0, 61.0, 5.0)
+    good, flat = curve(v, TwoStates(charge_e0=4.0, midpoint_mv=-30.0).q(v)), curve(v, np.ones(len(v)), "flat")
+    found = single_sigmoid([flat, good], temperature_c=22.0)
+    assert found is not None
+    assert [cell.cell for cell in found.cells] == ["c1"]
+    assert single_sigmoid([flat], temperature_c=22.0) is None
+    with pytest.raises(ValueError, match="invented/flat: no rise"):
+        sigmoid_of_cell(flat, temperature_c=22.0)
+
+
+def test_mean_and_standard_error_are_over_cells() -> None:
+    v = np.arange(-120.0, 61.0, 5.0)
+    mids = [-32.0, -30.0, -26.0]
+    made = [curve(v, TwoStates(charge_e0=4.0, midpoint_mv=m).q(v), f"c{m}") for m in mids]
+    found = single_sigmoid(made, temperature_c=22.0)
+    assert found is not None
+    assert found.midpoint_mv == pytest.approx(np.mean(mids), abs=1e-6)
+    assert found.midpoint_sem_mv == pytest.approx(np.std(mids, ddof=1) / math.sqrt(3), abs=1e-6)
