@@ -32,7 +32,9 @@ def test_new_check_and_couple_work_on_each_other(tmp_path: Path) -> None:
     assert "D171N/K232Q" in coupled.stdout
     assert "wrote result.json" in coupled.stderr
     written = sorted(p.name for p in (tmp_path / "results").iterdir())
-    assert written == ["budget.csv", "cells.csv", "constructs.csv", "interactions.csv", "result.json"]
+    assert written == [
+        "budget.csv", "cells.csv", "constructs.csv", "interactions.csv", "midpoints.csv", "result.json",
+    ]  # fmt: skip
 
 
 def test_new_keeps_what_is_there(tmp_path: Path) -> None:
@@ -145,6 +147,12 @@ def test_reader_of_a_pipe_may_go_away() -> None:
     assert done.stdout.splitlines()[0] == "{"
     assert done.stdout.splitlines()[-1] in {"0", "141"}
     assert "Traceback" not in done.stderr
+
+
+def test_files_are_written_even_if_the_reader_of_a_pipe_goes_away(tmp_path: Path) -> None:
+    command = f"{sys.executable} -m cornerwise couple {PUBLISHED} --out {tmp_path / 'out'} | true"
+    subprocess.run(["bash", "-c", command], capture_output=True, check=False)
+    assert (tmp_path / "out" / "result.json").is_file()
 
 
 def test_work_that_takes_long_is_reported_on_stderr(monkeypatch: pytest.MonkeyPatch) -> None:

@@ -150,14 +150,14 @@ def check(
 
     _expect_room(figures, force=force)
     found = survey(read(path), _progress())
+    if figures is not None:  # before the table is printed: the reader of a pipe may go away
+        from .render.figures.files import curve_files
+
+        _write(curve_files(found), figures, force=force)
     if as_json:
         print(survey_json(found), end="")
     else:
         print_survey(found, sys.stdout)
-    if figures is not None:
-        from .render.figures.files import curve_files
-
-        _write(curve_files(found), figures, force=force)
 
 
 @app.command()
@@ -186,12 +186,12 @@ def couple(
 
     _expect_room(out, force=force)
     result = run(read(path), _progress())
+    if out is not None:  # before the table is printed: the reader of a pipe may go away
+        _write(result_files(result), out, force=force)
     if as_json:
         print(result.to_json(), end="")
     else:
         print_result(result, sys.stdout)
-    if out is not None:
-        _write(result_files(result), out, force=force)
 
 
 @app.command()

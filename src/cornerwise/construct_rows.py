@@ -14,6 +14,7 @@ from .energies import Energy, EnergyBook
 from .flags import Flag, codes
 from .intervals import t_interval
 from .measurements import Measurement
+from .midpoints import midpoints
 from .result import CellRow, ConstructRow, DrawnCurve, available
 from .verdicts import ChargeVerdict
 
@@ -90,8 +91,14 @@ def construct_row(
     low, high = t_interval(energy.energy.value, u, spread.dof, settings.confidence)
     judged = None if label == settings.wild_type else judge_charge(label, measurements, book, settings)
     shared = "the stated one" if isinstance(settings.charge, StatedCharge) else "the wild type's"
+    middle, misled = midpoints(measurement, energy, book, settings)
     of_cells = tuple(flag for reading in measurement.cells for flag in reading.flags)
-    flags = (*measurement.flags, *_charge_flags(label, judged, shared, settings.wild_type), *of_cells)
+    flags = (
+        *measurement.flags,
+        *_charge_flags(label, judged, shared, settings.wild_type),
+        *misled,
+        *of_cells,
+    )
     row = ConstructRow(
         construct=label,
         mutations=tuple(map(str, measurement.construct.mutations)),
@@ -109,6 +116,11 @@ def construct_row(
         low=available(low),
         high=available(high),
         **_charge_fields(judged),
+        midpoint_mv=available(middle.midpoint_mv),
+        midpoint_energy=available(middle.midpoint_energy),
+        sigmoid_midpoint_mv=available(middle.sigmoid_midpoint_mv),
+        slope_charge_e0=available(middle.slope_charge_e0),
+        sigmoid_energy=available(middle.sigmoid_energy),
         flags=codes(flags),
         curve=averaged_curve(measurement),
     )

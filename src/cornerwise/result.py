@@ -208,8 +208,37 @@ class ConstructRow:
     charge_verdict: ChargeVerdict | None  # None for the wild type
     charge_passing_margin: float | None  # smallest margin within which the charge counts as equal
     charge_cells_needed: int | None  # values on mutant and wild type each for a verdict at this scatter
+    midpoint_mv: float | None  # mean over cells of the voltage where q = 0.5
+    midpoint_energy: float | None  # the same charge times the midpoint
+    sigmoid_midpoint_mv: float | None  # of one sigmoid fitted to each cell
+    slope_charge_e0: float | None  # apparent charge from that sigmoid's slope
+    sigmoid_energy: float | None  # apparent charge times that midpoint
     flags: tuple[str, ...]
     curve: DrawnCurve | None  # averaged over the cells that are used; None without curves
+
+    def cells(self) -> tuple[Value, ...]:
+        """Values in the order of `columns`."""
+        return flat_values(self)
+
+
+@dataclass(frozen=True, kw_only=True, slots=True)
+class MidpointRow:
+    """Midpoint-based numbers of one construct beside its median-based energy."""
+
+    columns: ClassVar[tuple[str, ...]] = (
+        "construct", "median_mV", "energy", "energy_unit", "midpoint_mV", "midpoint_energy",
+        "sigmoid_midpoint_mV", "slope_charge_e0", "sigmoid_energy",
+    )  # fmt: skip
+
+    construct: str
+    median_mv: float | None
+    energy: float | None
+    energy_unit: str
+    midpoint_mv: float | None
+    midpoint_energy: float | None
+    sigmoid_midpoint_mv: float | None
+    slope_charge_e0: float | None
+    sigmoid_energy: float | None
 
     def cells(self) -> tuple[Value, ...]:
         """Values in the order of `columns`."""
@@ -266,6 +295,7 @@ _FIELD_OF_COLUMN = {
     "median_mV": "median_mv",
     "median_sem_mV": "median_sem_mv",
     "midpoint_mV": "midpoint_mv",
+    "sigmoid_midpoint_mV": "sigmoid_midpoint_mv",
     "cells": "cells_used",
 }
 
@@ -296,6 +326,17 @@ class Result:
     notes: tuple[str, ...]  # decisions the reader should know of, a sentence each
     inputs: tuple[InputFile, ...]
     versions: dict[str, str]
+
+    @property
+    def midpoints(self) -> Table[MidpointRow]:
+        """What the older literature quotes, for the constructs that have curves."""
+        names = [field.name for field in dataclasses.fields(MidpointRow)]
+        rows = [
+            MidpointRow(**{name: getattr(row, name) for name in names})
+            for row in self.constructs
+            if row.midpoint_mv is not None
+        ]
+        return Table(MidpointRow, rows)
 
     def to_frame(self) -> pd.DataFrame:
         """The interactions as a data frame; see `interactions`, `constructs`, `cells`, `budget`."""

@@ -26,6 +26,10 @@ COLUMNS = {
         "charge_verdict,flags"
     ),
     "cells.csv": ("construct,cell,batch,median_mV,midpoint_mV,low_plateau,high_plateau,points,used,flags"),
+    "midpoints.csv": (
+        "construct,median_mV,energy,energy_unit,midpoint_mV,midpoint_energy,sigmoid_midpoint_mV,"
+        "slope_charge_e0,sigmoid_energy"
+    ),
     "budget.csv": "cycle,source,contribution,share",
 }
 

@@ -39,6 +39,7 @@ def result_files(result: Result) -> dict[str, str]:
         "interactions.csv": _csv(result.interactions),
         "constructs.csv": _csv(result.constructs),
         "cells.csv": _csv(result.cells),
+        "midpoints.csv": _csv(result.midpoints),
         "budget.csv": _csv(result.budget),
     }
 
