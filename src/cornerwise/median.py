@@ -46,10 +46,16 @@ class _Findings:
 
     scaled: ScaledCells
     pooled: PooledShape
-    departure_mv: FloatArray  # (n_cells,)
+    departure_mv: FloatArray  # (n_cells,), own shape and leftovers
+    median_mv: FloatArray  # (n_cells,), departures included
+    own_uncertainty_mv: FloatArray  # (n_cells,)
+    gain: FloatArray  # (n_cells,)
+    offset: FloatArray  # (n_cells,)
+    residual: FloatArray  # (n_cells, n_points)
     missing: list[Missing]
     slopes: Slopes
     noise: FloatArray  # (n_cells,), fraction of each cell's charge
+    typical_noise: float  # median over the cells
     midpoint_mv: float  # of the mean curve, relative to its median
     rise_mv: tuple[float, float]  # where the mean curve has moved 10 and 90 %, relative to its median
 
@@ -107,22 +113,34 @@ def _read(scaled: ScaledCells, correct: bool) -> list[CellReading]:
         scaled = replace(scaled, cells=slopes.off(scaled.cells))
         pooled = _pool(scaled.cells)
         slopes, missing = no_slopes(scaled.cells), missing_charge(pooled)
-    departures = own_departures(pooled)
-    middle, rise = _landmarks(pooled)
-    found = _Findings(
-        scaled=scaled,
-        pooled=pooled,
-        departure_mv=departures.own_mv + smooth_leftover_mv(pooled, departures.left),
-        missing=missing,
-        slopes=slopes,
-        noise=_noise(pooled) / np.maximum(np.abs(pooled.gain), _VARIANCE_FLOOR),
-        midpoint_mv=middle,
-        rise_mv=rise,
-    )
+    found = _findings(scaled, pooled, missing, slopes)
     shift = slopes.shift_mv if slopes.supported else 0.0
     common = truncation_mv(pooled, missing, slope_shift_mv=shift)
     readings = [_reading(found, i, common) for i in range(len(scaled.curves))]
     return _name_outliers(readings)
+
+
+def _findings(scaled: ScaledCells, pooled: PooledShape, missing: list[Missing], slopes: Slopes) -> _Findings:
+    departures = own_departures(pooled)
+    departure = departures.own_mv + smooth_leftover_mv(pooled, departures.left)
+    noise = _noise(pooled) / np.maximum(np.abs(pooled.gain), _VARIANCE_FLOOR)
+    middle, rise = _landmarks(pooled)
+    return _Findings(
+        scaled=scaled,
+        pooled=pooled,
+        departure_mv=departure,
+        median_mv=pooled.median_mv + departure,
+        own_uncertainty_mv=np.sqrt(pooled.own_variance_mv2),
+        gain=pooled.gain,
+        offset=pooled.offset,
+        residual=pooled.residual,
+        missing=missing,
+        slopes=slopes,
+        noise=noise,
+        typical_noise=float(np.median(noise)),
+        midpoint_mv=middle,
+        rise_mv=rise,
+    )
 
 
 def _pool(cells: Cells) -> PooledShape:
@@ -158,11 +176,11 @@ def _landmarks(pooled: PooledShape) -> tuple[float, tuple[float, float]]:
 
 
 def _reading(found: _Findings, i: int, common_mv: float) -> CellReading:
-    scaled, pooled, curve = found.scaled, found.pooled, found.scaled.curves[i]
-    relative = float(pooled.median_mv[i] + found.departure_mv[i])
+    scaled, curve = found.scaled, found.scaled.curves[i]
+    relative = float(found.median_mv[i])
     plain = plain_median_mv(curve.voltage_mv, curve.charge)
     median = relative + scaled.origin_mv
-    low = scaled.low[i] + pooled.offset[i] * scaled.height[i]
+    low = scaled.low[i] + found.offset[i] * scaled.height[i]
     missing = found.missing[i]
     return CellReading(
         construct=curve.construct,
@@ -171,11 +189,11 @@ def _reading(found: _Findings, i: int, common_mv: float) -> CellReading:
         median_mv=median,
         midpoint_mv=median + found.midpoint_mv,
         low_plateau=float(low),
-        high_plateau=float(low + pooled.gain[i] * scaled.height[i]),
+        high_plateau=float(low + found.gain[i] * scaled.height[i]),
         points=len(curve.voltage_mv),
         plain_median_mv=plain,
         truncation_mv=common_mv,
-        own_uncertainty_mv=float(np.sqrt(pooled.own_variance_mv2[i])),
+        own_uncertainty_mv=float(found.own_uncertainty_mv[i]),
         missing_low=missing.low,
         missing_high=missing.high,
         noise=float(found.noise[i]),
@@ -201,8 +219,8 @@ def _evidence(found: _Findings, i: int, median_mv: float, disagreement_mv: float
     cells, curve = found.scaled.cells, found.scaled.curves[i]
     inside = cells.weight[i] > 0
     v = cells.v_mv[i][inside]
-    y = cells.y[i][inside] / found.pooled.gain[i]
-    residual = found.pooled.residual[i][inside] / found.pooled.gain[i]
+    y = cells.y[i][inside] / found.gain[i]
+    residual = found.residual[i][inside] / found.gain[i]
     fallen = np.maximum.accumulate(y) - y
     spread = float(np.median(np.abs(residual - np.median(residual))))
     return Evidence(
@@ -216,12 +234,12 @@ def _evidence(found: _Findings, i: int, median_mv: float, disagreement_mv: float
         slope_shift_mv=found.slopes.shift_mv,
         reversal=float(fallen.max()),
         reversal_mv=float(curve.voltage_mv[int(np.argmax(fallen))]),
-        typical_noise=max(_TO_SIGMA * spread, float(np.median(found.noise))),
+        typical_noise=max(_TO_SIGMA * spread, found.typical_noise),
         noise=float(found.noise[i]),
         largest_step_mv=_largest_step(v - median_mv, found.rise_mv),
         rise_mv=found.rise_mv[1] - found.rise_mv[0],
         disagreement_mv=disagreement_mv,
-        plain_uncertainty_mv=plain_uncertainty_mv(v, median_mv, float(np.median(found.noise))),
+        plain_uncertainty_mv=plain_uncertainty_mv(v, median_mv, found.typical_noise),
     )
 
 

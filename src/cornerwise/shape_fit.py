@@ -25,7 +25,7 @@ from .shapes import Family, FloatArray
 _LARGEST_STEP_MV = 40.0
 _FROZEN = 1e12  # stiffness that holds a parameter at its bound
 _STEPS = 40
-_STEPS_TOGETHER = 4  # after which only the best start goes on
+_STEPS_TOGETHER = 3  # after which only the best start goes on
 _STUCK = 1e6  # damping at which no step helps
 _TINY = 1e-14
 
