@@ -34,7 +34,7 @@ _QUANTILES = (0.05, 0.1, 0.2, 0.25, 0.35, 0.5, 0.65, 0.75, 0.8, 0.9, 0.95)
 _NOISELESS = 1e-9  # variance below which data are computed, not measured, and a fit may take its time
 _TOLERANCE = 1e-4  # of the sum of squares
 _SETTLINGS = 12
-_HOPELESS = 4.0  # log evidence by which a richer round must fall behind to end the search
+_HOPELESS = 1.0  # log evidence by which a richer round must fall behind to end the search
 
 SINGLE = Family(kind="parallel", components=1)
 # Rounds of rising freedom after the single sigmoid.

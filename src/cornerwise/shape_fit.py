@@ -45,20 +45,25 @@ class Cells:
         return int((self.weight > 0).sum())
 
     @property
+    def root(self) -> FloatArray | None:
+        """Square root of the weights; None where all are 1, which saves the multiplications."""
+        if bool((self.weight == 1.0).all()):
+            return None
+        root: FloatArray = np.sqrt(self.weight)
+        return root
+
+    @property
     def baseline_basis(self) -> FloatArray:
-        """Orthonormal columns of the baseline under the weights, (n_columns, n_cells, n_points)."""
-        total = self.weight.sum(axis=-1, keepdims=True)
-        level = np.broadcast_to(1.0 / np.sqrt(total), self.v_mv.shape)
+        """Orthonormal columns of the baseline times root weight, (n_columns, n_cells, n_points)."""
         if self.baseline == "zero":
             return np.empty((0, *self.v_mv.shape))
+        root = np.sqrt(self.weight)
+        total = self.weight.sum(axis=-1, keepdims=True)
+        level = root / np.sqrt(total)
         if self.baseline == "level":
             return level[None]
-        centred = self.v_mv - (self.weight * self.v_mv).sum(axis=-1, keepdims=True) / total
-        return np.stack([level, centred / _length(self.weight, centred)])
-
-
-def _length(weight: FloatArray, x: FloatArray) -> FloatArray:
-    return np.asarray(np.sqrt((weight * x * x).sum(axis=-1, keepdims=True)), dtype=np.float64)
+        centred = root * (self.v_mv - (self.weight * self.v_mv).sum(axis=-1, keepdims=True) / total)
+        return np.stack([level, centred / np.sqrt((centred**2).sum(axis=-1, keepdims=True))])
 
 
 @dataclass(frozen=True, kw_only=True, slots=True, eq=False)
@@ -168,12 +173,12 @@ def _search(
     """Levenberg-Marquardt over a batch of starts; ends when the best of them has converged."""
     damping, basis = np.full(len(theta), 1e-2), cells.baseline_basis
     here = _evaluate(cells, family, theta, shift, basis)
-    cost = _cost(cells, here, theta, prior)
+    cost = _cost(here, theta, prior)
     for step in range(_STEPS):
         normal = _normal(cells, here, theta, prior, basis)
         new_theta, new_shift = _move(normal, theta, shift, damping, prior, family.step_limit)
         there = _evaluate(cells, family, new_theta, new_shift, basis)
-        new_cost = _cost(cells, there, new_theta, prior)
+        new_cost = _cost(there, new_theta, prior)
         better = new_cost <= cost
         small = np.where(better, cost - new_cost < tolerance * cost, damping > _STUCK)
         theta = np.where(better[:, None], new_theta, theta)
@@ -201,29 +206,41 @@ def _pick(better: NDArray[np.bool_], new: FloatArray, old: FloatArray) -> FloatA
 def _evaluate(
     cells: Cells, family: Family, theta: FloatArray, shift: FloatArray, basis: FloatArray
 ) -> _Point:
-    """Solve for gains and baselines; derivatives are left as they are."""
-    wb = cells.weight * basis
-    values = family.values(cells.v_mv[None] - shift[:, :, None], theta)
-    q = _off_basis(values.q, basis, wb)
-    length = _length(cells.weight, q) + _TINY  # a shape that is flat over a cell's range has no gain
-    q = q / length
-    y = _off_basis(cells.y, basis, wb)
-    scaled_gain = (cells.weight * q * y).sum(axis=-1, keepdims=True)
+    """Solve for gains and baselines; derivatives are left as they are. Everything is times root weight."""
+    root = cells.root
+    values = family.values(cells.v_mv - shift[:, :, None], theta)
+    raw, y = _whitened(values.q, root), _whitened(cells.y, root)
+    q = _off_basis(raw, basis)
+    length = np.sqrt(_dot(q, q)) + _TINY  # a shape that is flat over a cell's range has no gain
+    q = q / length[..., None]
+    y_off = _off_basis(y, basis)
+    scaled_gain = _dot(q, y_off)
     gain = scaled_gain / length
-    base = (wb * (cells.y - gain * values.q)[:, None]).sum(axis=-1)
-    by_shape = gain[:, None] * np.concatenate([values.gradient, -values.slope[:, None]], axis=1)
-    return _Point(q, gain[..., 0], base, y - scaled_gain * q, by_shape)
+    base = _dot(basis, (y - gain[..., None] * raw)[:, None])
+    gradient = np.concatenate([values.gradient, -values.slope[:, None]], axis=1)
+    gradient *= gain[:, None, :, None]
+    residual = y_off - scaled_gain[..., None] * q
+    return _Point(q, gain, base, residual, _whitened(gradient, root))
 
 
-def _off_basis(x: FloatArray, basis: FloatArray, weighted_basis: FloatArray) -> FloatArray:
+def _whitened(x: FloatArray, root: FloatArray | None) -> FloatArray:
+    return x if root is None else x * root
+
+
+def _dot(x: FloatArray, y: FloatArray) -> FloatArray:
+    """Sum of products over the points."""
+    return np.asarray(np.einsum("...n,...n->...", x, y), dtype=np.float64)
+
+
+def _off_basis(x: FloatArray, basis: FloatArray) -> FloatArray:
     """Part of `x` that no baseline can imitate."""
-    for column, weighted in zip(basis, weighted_basis, strict=True):
-        x = x - (weighted * x).sum(axis=-1)[..., None] * column
+    for column in basis:
+        x = x - _dot(x, column)[..., None] * column
     return x
 
 
-def _cost(cells: Cells, here: _Point, theta: FloatArray, prior: Prior) -> FloatArray:
-    misfit = (cells.weight * here.residual**2).sum(axis=(-1, -2))
+def _cost(here: _Point, theta: FloatArray, prior: Prior) -> FloatArray:
+    misfit = np.einsum("bcn,bcn->b", here.residual, here.residual)
     return np.asarray(misfit + (prior.precision * (theta - prior.mean) ** 2).sum(axis=-1), dtype=np.float64)
 
 
@@ -232,17 +249,16 @@ def _normal(cells: Cells, here: _Point, theta: FloatArray, prior: Prior, basis: 
 
     The ridge keeps a cell or a parameter that the data do not touch from being singular.
     """
-    weighted = cells.weight * here.by_shape
-    linear = [(weighted * column).sum(axis=-1) for column in basis]
-    linear.append((weighted * here.q[:, None]).sum(axis=-1))
+    linear = [_dot(here.by_shape, column) for column in basis]
+    linear.append(_dot(here.by_shape, here.q[:, None]))
     imitated = np.concatenate(linear, axis=-1)  # (b, p + 1, columns of all cells)
-    flat = weighted.reshape(*weighted.shape[:2], -1)
-    raw = here.by_shape.reshape(flat.shape)
-    pull = (weighted * here.residual[:, None]).sum(axis=-1)
-    shape = np.einsum("bpk,bqk->bpq", flat[:, :-1], raw[:, :-1])
+    flat = here.by_shape.reshape(*here.by_shape.shape[:2], -1)
+    pull = _dot(here.by_shape, here.residual[:, None])
+    shape = np.einsum("bpk,bqk->bpq", flat[:, :-1], flat[:, :-1])
     shape -= np.einsum("bpk,bqk->bpq", imitated[:, :-1], imitated[:, :-1])
-    against_shift = (weighted * here.by_shape[:, -1:]).sum(axis=-1)
-    against_shift -= sum(part * part[:, -1:] for part in linear)
+    against_shift = _dot(here.by_shape, here.by_shape[:, -1:])
+    for part in linear:
+        against_shift -= part * part[:, -1:]
     diagonal, ridge = np.arange(shape.shape[1]), _TINY * cells.points
     shape[:, diagonal, diagonal] += prior.precision + ridge
     return _Normal(
@@ -271,10 +287,16 @@ def _move(
     matrix[:, k, k] += damping[:, None] * normal.shape[:, k, k] + np.where(held, _FROZEN, 0.0)
     pull = normal.shape_pull - (relative * normal.shift_pull[:, None]).sum(axis=-1)
     step = np.linalg.solve(matrix, np.where(held, 0.0, pull)[..., None])[..., 0]
-    new_theta = np.clip(theta + np.clip(step, -limit, limit), prior.low, prior.high)
+    new_theta = _within(theta + _within(step, -limit, limit), prior.low, prior.high)
     follow = normal.shift_pull - (normal.coupling * (new_theta - theta)[:, :, None]).sum(axis=1)
-    new_shift = shift + np.clip(follow / stiff_shift, -_LARGEST_STEP_MV, _LARGEST_STEP_MV)
+    new_shift = shift + _within(follow / stiff_shift, -_LARGEST_STEP_MV, _LARGEST_STEP_MV)
     return new_theta, new_shift
+
+
+def _within(x: FloatArray, low: FloatArray | float, high: FloatArray | float) -> FloatArray:
+    return np.asarray(
+        np.minimum(np.maximum(x, low), high), dtype=np.float64
+    )  # np.clip is slow on small arrays
 
 
 def _describe(cells: Cells, family: Family, theta: FloatArray, shift: FloatArray, prior: Prior) -> PooledFit:
@@ -284,29 +306,31 @@ def _describe(cells: Cells, family: Family, theta: FloatArray, shift: FloatArray
     normal = _normal(cells, here, theta[None], prior, basis)
     coupling, shift_information = normal.coupling[0], normal.shift[0]
     slope, slope_information = _baseline_slope(cells, here, basis)
+    along = coupling / shift_information
+    free = _off_basis(here.by_shape[0], basis)
+    free = free - _dot(free, here.q[0])[..., None] * here.q[0]
     return PooledFit(
         family=family,
         theta=theta,
         shift_mv=shift,
         gain=here.gain[0],
-        offset=here.base[0, 0] * basis[0, :, 0] if len(basis) else np.zeros(len(shift)),
+        offset=here.base[0, 0] / np.sqrt(cells.weight.sum(axis=-1)) if len(basis) else np.zeros(len(shift)),
         slope=slope,
         slope_information=slope_information,
-        residual=here.residual[0],
-        sum_of_squares=float((cells.weight * here.residual[0] ** 2).sum()),
-        information=normal.shape[0] - np.einsum("pc,qc->pq", coupling / shift_information, coupling),
+        residual=_unwhitened(here.residual[0], cells),
+        sum_of_squares=float((here.residual[0] ** 2).sum()),
+        information=normal.shape[0] - np.einsum("pc,qc->pq", along, coupling),
         coupling=coupling,
         shift_information=shift_information,
-        departure=_departure(cells, here, basis, coupling / shift_information),
+        departure=np.moveaxis(_unwhitened(free[:-1] - along[:, :, None] * free[-1:], cells), 0, -1),
         prior=prior,
     )
 
 
-def _departure(cells: Cells, here: _Point, basis: FloatArray, along: FloatArray) -> FloatArray:
-    """What each parameter changes in each cell that its gain, baseline and shift cannot."""
-    free = _off_basis(here.by_shape[0], basis, cells.weight * basis)
-    free = free - (cells.weight * here.q[0] * free).sum(axis=-1)[..., None] * here.q[0]
-    return np.moveaxis(free[:-1] - along[:, :, None] * free[-1:], 0, -1)
+def _unwhitened(x: FloatArray, cells: Cells) -> FloatArray:
+    """Take the root weights off again; 0 at points of no weight."""
+    root = np.sqrt(cells.weight)
+    return np.where(root > 0.0, x / np.where(root > 0.0, root, 1.0), 0.0)
 
 
 def _baseline_slope(cells: Cells, here: _Point, basis: FloatArray) -> tuple[FloatArray, FloatArray]:
@@ -315,10 +339,13 @@ def _baseline_slope(cells: Cells, here: _Point, basis: FloatArray) -> tuple[Floa
         none = np.zeros(len(cells.y))
         return none, none
     level, line = basis
-    per_mv = np.ptp(line, axis=-1) / np.ptp(cells.v_mv, axis=-1)
-    shape = cells.y - here.residual[0] - here.base[0, 1][:, None] * line
-    root = np.sqrt(cells.weight)[..., None]
-    others, _ = np.linalg.qr(root * np.stack([level, shape, here.by_shape[0, -1]], axis=-1))
-    along = (others * root * line[..., None]).sum(axis=1)
+    root = np.sqrt(cells.weight)
+    centred = cells.v_mv - (cells.weight * cells.v_mv).sum(axis=-1, keepdims=True) / cells.weight.sum(
+        axis=-1, keepdims=True
+    )
+    per_mv = 1.0 / np.sqrt((cells.weight * centred**2).sum(axis=-1))
+    shape = root * cells.y - here.residual[0] - here.base[0, 1][:, None] * line
+    others, _ = np.linalg.qr(np.stack([level, shape, here.by_shape[0, -1]], axis=-1))
+    along = (others * line[..., None]).sum(axis=1)
     left = np.maximum(1.0 - (along**2).sum(axis=-1), 0.0)
     return here.base[0, 1] * per_mv, left / per_mv**2

@@ -99,7 +99,7 @@ def _parallel(u: FloatArray, theta: FloatArray, k: int) -> Values:
     weight = (weight / weight.sum(axis=1, keepdims=True))[:, :, None, None]
     kappa = np.exp(theta[:, k : 2 * k, None, None])
     x = kappa * (u[:, None] - theta[:, :k, None, None])
-    step = 1.0 / (1.0 + np.exp(-np.clip(x, -_STEEPEST_EXPONENT, _STEEPEST_EXPONENT)))
+    step = 1.0 / (1.0 + np.exp(np.minimum(-x, _STEEPEST_EXPONENT)))
     rise = weight * step * (1.0 - step)
     q = (weight * step).sum(axis=1)
     by_midpoint = kappa * rise
