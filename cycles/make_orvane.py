@@ -50,7 +50,7 @@ PAIRS = {  # interaction energy, total charge of the double mutant
     "S205A/N250A": (0.3, 12.7),  # three cells: nothing can be said
     "E197Q/R229K": (-2.2, 12.9),  # recorded over a range that ends too early
     "F188A/K232Q": (0.2, 13.1),  # total charge of the double never measured
-    "Y241A/N250A": (0.5, 12.7),
+    "Y241A/N250A": (0.5, 12.7),  # recorded over a range that begins too late
     "D171N/F188A": (0.0, 13.1),
 }
 TRIPLES = {  # third-order interaction energy, total charge
@@ -100,6 +100,7 @@ RECORDINGS = {
     "S205A/N250A": Recording(cells=3, charge_cells=3),
     "E197Q/R229K": Recording(cells=6, charge_cells=6, last_mv=10.0),
     "F188A/K232Q": Recording(charge_cells=0),
+    "Y241A/N250A": Recording(first_mv=-60.0),
     "D171N/F188A": Recording(step_mv=20.0),
 }
 
