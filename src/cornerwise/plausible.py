@@ -44,6 +44,7 @@ NARROWEST_RANGE_MV = 5.0  # a curve inside this holds volts in a millivolt colum
 TEMPERATURE_RANGE_C = (-5.0, 60.0)
 CHARGE_LIMIT_E0 = 100.0  # per channel; the largest known are near 14 e0
 FEWEST_POINTS = 5
+FEWEST_OPENINGS = 4  # points of a cell's open probability; fewer show no limit of a slope
 FLAT_CHANCE = 0.05  # how often noise about a constant may pass for a rise
 
 _LEVELS_LIMIT = 500  # the mixture changes little beyond, and the limit on the share stays on the strict side
@@ -65,6 +66,11 @@ def possible_temperature(temperature_c: float) -> bool:
     """Whether a recording can be made at this temperature in degrees Celsius."""
     low, high = TEMPERATURE_RANGE_C
     return low <= temperature_c <= high
+
+
+def impossible_probability(probability: FloatArray) -> NDArray[np.bool_]:
+    """Which values, shape (n,), are no probability; NaN is not one of them."""
+    return np.asarray((probability < 0.0) | (probability > 1.0))
 
 
 def possible_total_charge(charge_e0: float) -> bool:

@@ -8,12 +8,15 @@ from scipy import constants
 
 EnergyUnit = Literal["kcal/mol", "kJ/mol", "kT", "meV"]
 
+ChargeUnit = Literal["fC", "pC", "nC"]
+
 ENERGY_UNITS: tuple[EnergyUnit, ...] = get_args(EnergyUnit)
 
 FARADAY_C_PER_MOL = constants.value("Faraday constant")
 JOULE_PER_CALORIE = constants.calorie_th
 ZERO_CELSIUS_K = constants.zero_Celsius
 
+_COULOMB_PER_UNIT = {"fC": constants.femto, "pC": constants.pico, "nC": constants.nano}
 _JOULE_PER_E0_MV = constants.elementary_charge * constants.milli
 
 
@@ -31,6 +34,24 @@ def thermal_voltage_mv(temperature_c: float) -> float:
     25.4341
     """
     return float(constants.Boltzmann * kelvin(temperature_c) / _JOULE_PER_E0_MV)
+
+
+def elementary_charges(unit: ChargeUnit) -> float:
+    """Number of elementary charges in one femto-, pico- or nanocoulomb.
+
+    Raises
+    ------
+    ValueError
+        If `unit` is none of the three.
+
+    Examples
+    --------
+    >>> round(elementary_charges("fC"), 4)
+    6241.5091
+    """
+    if unit not in _COULOMB_PER_UNIT:
+        raise ValueError(f"charge unit {unit!r} is not known; use one of {', '.join(_COULOMB_PER_UNIT)}")
+    return _COULOMB_PER_UNIT[unit] / constants.elementary_charge
 
 
 def energy_per_e0_mv(unit: EnergyUnit, temperature_c: float) -> float:

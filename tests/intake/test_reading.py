@@ -27,9 +27,9 @@ def test_every_problem_in_file_and_row_order(tmp_path: Path) -> None:
     charges = "construct,cell,charge_e0\nE181A,c1,-3\nWT,c1,130\nWT,c1,nan\n"
     found = problems(folder(tmp_path / "a", toml, curves=curves, charges=charges))
     assert [(p.origin.file, p.origin.row, p.origin.column) for p in found] == [
-        ("campaign.toml", None, "sead"),
-        ("campaign.toml", None, "temperature_C"),
-        ("campaign.toml", None, "confidence"),
+        ("campaign.toml", 2, "confidence"),
+        ("campaign.toml", 3, "temperature_C"),
+        ("campaign.toml", 4, "sead"),
         ("curves.csv", 5, "voltage_mV"),
         ("curves.csv", 10, "charge"),
         ("curves.csv", 34, None),

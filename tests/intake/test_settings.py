@@ -23,12 +23,15 @@ threshold = 4
 shortcut_tolerance = 2.0
 charge_margin = 0.2
 voltage_offset_mV = 3
-charge = { value_e0 = 12, sem_e0 = 0 }
+reference_voltage_mV = -60
+charge = { value_e0 = 12, sem_e0 = 0, citation = "an invented source, table 2" }
+charge_method = "noise"
 """
 
 
 def test_every_key(tmp_path: Path) -> None:
-    assert read(folder(tmp_path / "a", EVERY_KEY)).settings == Settings(
+    charges = "construct,charge_e0,sem_e0,n,method\nWT,12,1,4,noise\n"
+    assert read(folder(tmp_path / "a", EVERY_KEY, charges=charges)).settings == Settings(
         title="An invented sensor",
         wild_type="WT",
         temperature_c=18.5,
@@ -41,7 +44,9 @@ def test_every_key(tmp_path: Path) -> None:
         shortcut_tolerance=2.0,
         charge_margin=0.2,
         voltage_offset_mv=3.0,
-        charge=StatedCharge(value_e0=12.0, sem_e0=0.0),
+        reference_voltage_mv=-60.0,
+        charge=StatedCharge(value_e0=12.0, sem_e0=0.0, citation="an invented source, table 2"),
+        charge_method="noise",
         defaulted=(),
     )
 
@@ -50,7 +55,7 @@ def test_what_is_left_out_is_named(tmp_path: Path) -> None:
     settings = read(folder(tmp_path / "a", BASE + "seed = 3\n")).settings
     assert settings.defaulted == (
         "title", "temperature_C", "subunits", "energy_unit", "confidence", "replicates", "threshold",
-        "shortcut_tolerance", "charge_margin", "voltage_offset_mV",
+        "shortcut_tolerance", "charge_margin", "voltage_offset_mV", "reference_voltage_mV", "charge_method",
     )  # fmt: skip
     assert settings.temperature_c == Settings(wild_type="WT").temperature_c
 
@@ -70,6 +75,8 @@ def test_what_is_left_out_is_named(tmp_path: Path) -> None:
         ("shortcut_tolerance", ["0", "-1", "true", "nan"]),
         ("charge_margin", ["0", "1", "10", "true"]),
         ("voltage_offset_mV", ["-0.1", "true", "501", '"2 mV"']),
+        ("reference_voltage_mV", ["500.1", "-500.1", "true", '"-60"', "nan"]),
+        ("charge_method", ["1", '""', '" "', '["noise"]', '"a\\tb"']),
         ("charge", ['"shared"', "13.0", "true", "[13.0, 0.5]"]),
     ],
 )
@@ -92,6 +99,8 @@ def test_values_that_cannot_be(key: str, values: list[str], tmp_path: Path) -> N
         ("replicates = 1000000", "replicates"),
         ("seed = 0", "seed"),
         ("voltage_offset_mV = 0", "voltage_offset_mV"),
+        ("reference_voltage_mV = 500", "reference_voltage_mV"),
+        ("reference_voltage_mV = -500.0", "reference_voltage_mV"),
     ],
 )
 def test_values_at_the_edge(line: str, key: str, tmp_path: Path) -> None:
@@ -111,6 +120,8 @@ def test_energy_units(unit: str, tmp_path: Path) -> None:
         ("Seed", "seed"),
         ("voltage_offset_mv", "voltage_offset_mV"),
         ("cycles", "cycle"),
+        ("excluded", "exclude"),
+        ("reference_voltage", "reference_voltage_mV"),
     ],
 )
 def test_unknown_keys(key: str, meant: str, tmp_path: Path) -> None:
@@ -139,6 +150,9 @@ def test_a_key_that_resembles_none(tmp_path: Path) -> None:
         ("{ value_e0 = true, sem_e0 = 0.5 }", "charge value_e0", "truth value true"),
         ("{ value_e0 = 13, sem_e0 = -0.5 }", "charge sem_e0", "not negative"),
         ("{ value_e0 = 13, sem_e0 = 0.5, n = 3 }", "charge n", "unknown key 'n'.*delete it"),
+        ("{ value_e0 = 13, sem_e0 = 0.5, citation = 3 }", "charge citation", "number 3; expected the source"),
+        ('{ value_e0 = 13, sem_e0 = 0.5, citation = " " }', "charge citation", "empty text.*leave it out"),
+        ('{ value_e0 = 13, sem_e0 = 0.5, citations = "x" }', "charge citations", "did you mean citation"),
         ("{ value_e0 = 13, sem_e0 = 0.5, sem = 3 }", "charge sem", "did you mean sem_e0"),
     ],
 )

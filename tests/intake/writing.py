@@ -69,14 +69,36 @@ def assert_refused(
     row: int | None = None,
     column: str | None = None,
 ) -> None:
-    """The campaign is refused for one thing alone: at this place, with this text."""
+    """The campaign is refused for one thing alone: at this place, with this text.
+
+    The row of a fault in ``campaign.toml`` is looked up there when it is not given.
+    """
     found = problems(path)
     assert len(found) == 1, "\n".join(map(str, found))
     (problem,) = found
+    if file == "campaign.toml" and row is None and column is not None:
+        row = toml_row((path / file).read_text(encoding="utf-8").split("\n"), column)
     assert (problem.origin.file, problem.origin.row, problem.origin.column) == (file, row, column), problem
     assert re.search(match, str(problem)), problem
     assert problem.remedy
     assert problem.expected
+
+
+def toml_row(lines: Sequence[str], column: str) -> int | None:
+    """Where a plain ``campaign.toml`` has a key, a key of a table, or an entry; None where it has neither."""
+    table, _, key = column.partition(" ")
+    if key.startswith("entry "):
+        number, _, key = key.removeprefix("entry ").partition(" ")
+        heads = [row for row, line in enumerate(lines) if line.startswith(f"[[{table}]]")]
+        first = heads[int(number) - 1]
+        last = next((row for row in heads if row > first), len(lines))
+    else:
+        head = re.compile(rf"\[?{re.escape(table)}\b")
+        first = next((row for row, line in enumerate(lines) if head.match(line)), len(lines))
+        last = len(lines)
+    own = (row for row in range(first, last) if key and lines[row].startswith((f"{key} =", f'"{key}" =')))
+    row = next(own, first)
+    return row + 1 if row < len(lines) else None
 
 
 def content(campaign: Campaign) -> object:

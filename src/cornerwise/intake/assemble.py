@@ -4,10 +4,11 @@ from __future__ import annotations
 
 from collections import defaultdict
 
-from ..campaign import Campaign, ChargeReplicate, ChargeSummary, Construct, Curve
+from ..campaign import Campaign, ChargeReplicate, ChargeSummary, Construct, Curve, OpeningCurve
 from ..mutations import Mutation
 from .checks import check
 from .cycles import cycles_of
+from .exclusions import check_exclusions
 from .findings import Findings
 from .labels import Genotypes, read_genotypes
 from .parts import Parts
@@ -36,12 +37,14 @@ def assemble(parts: Parts, findings: Findings) -> Campaign:
         if known and parts.whole and genotypes.whole
         else ()
     )
+    check_exclusions(parts, cycles if parts.requests else (), findings)
     return Campaign(
         settings=parts.settings,
         constructs=_constructs(parts, genotypes),
         cycles=cycles,
         requests=parts.requests,
         background=genotypes.background,
+        exclusions=tuple(parts.exclusions),
         inputs=parts.inputs,
     )
 
@@ -58,6 +61,9 @@ def _constructs(parts: Parts, genotypes: Genotypes) -> tuple[Construct, ...]:
     charges: dict[str, list[ChargeSummary]] = defaultdict(list)
     for charge in parts.charges.summaries:
         charges[charge.construct].append(charge)
+    openings: dict[str, list[OpeningCurve]] = defaultdict(list)
+    for opening in parts.openings.openings:
+        openings[opening.construct].append(opening)
     in_order = sorted(genotypes.by_label.items(), key=lambda item: _order(item[1]))
     return tuple(
         Construct(
@@ -67,6 +73,7 @@ def _constructs(parts: Parts, genotypes: Genotypes) -> tuple[Construct, ...]:
             median=medians.get(label),
             charge_replicates=tuple(replicates[label]),
             charge_summaries=tuple(charges[label]),
+            openings=tuple(openings[label]),
         )
         for label, mutations in in_order
     )

@@ -25,7 +25,9 @@ from .header import RawTable
 from .table import SPREADSHEET_ERRORS
 from .text import MOST_ROWS, Record, refuse_empty, refuse_long, tabulate
 
-TEXT_COLUMNS = ("construct", "cell", "batch", "phase", "method", "name", "mutations")
+TEXT_COLUMNS = (
+    "construct", "cell", "batch", "phase", "method", "citation", "name", "mutations", "reason"
+)  # fmt: skip
 MOST_UNPACKED_BYTES = 2_000_000_000
 
 _PLAIN_FORMATS = ("General", "0", "@")  # those that display a number as its digits

@@ -2,12 +2,13 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
 
 from .. import plausible
-from ..campaign import Curve, FloatArray
+from ..campaign import Curve, FloatArray, OpeningCurve
 from ..errors import Origin
 from .findings import Findings, shown
 from .table import IntArray, Table, TextArray, factorize
@@ -21,9 +22,9 @@ class Points:
     construct: TextArray
     cell: TextArray
     voltage_mv: FloatArray
-    charge: FloatArray
+    value: FloatArray  # charge, or open probability
     index: IntArray  # row index in the table
-    column: IntArray  # index of the column that holds the charge
+    column: IntArray  # index of the column that holds the value
     wide: bool
     charge_unit: str = ""
     batch: TextArray
@@ -35,10 +36,32 @@ class Points:
         return self.origin(point) if self.wide else self.table.origin(int(self.index[point]), "construct")
 
     def origin(self, point: int) -> Origin:
-        """Return the place of a point's charge; in the wide layout, that of its cell's header."""
+        """Return the place of a point's value; in the wide layout, that of its cell's header."""
         raw = self.table.raw
         row = raw.header_row if self.wide else int(raw.rows[self.index[point]])
         return Origin(file=raw.file, row=row, column=raw.header[self.column[point]])
+
+    def value_origin(self, point: int) -> Origin:
+        """Return the very field of a point's value, whatever the layout."""
+        raw = self.table.raw
+        row = int(raw.rows[self.index[point]])
+        return Origin(file=raw.file, row=row, column=raw.header[self.column[point]])
+
+    def seen(self) -> dict[str, Origin]:
+        """Every construct and where it is first named."""
+        labels, first = np.unique(self.construct.astype(str), return_index=True)
+        return {
+            str(label): self.label_origin(int(point))
+            for label, point in zip(labels, first, strict=True)
+            if label
+        }
+
+    def named_cells(self) -> frozenset[tuple[str, str]]:
+        """Construct and cell of all points that name both."""
+        pairs = {
+            (str(construct), str(cell)) for construct, cell in zip(self.construct, self.cell, strict=True)
+        }
+        return frozenset((construct, cell) for construct, cell in pairs if construct and cell)
 
 
 def curves_of(points: Points, findings: Findings) -> tuple[Curve, ...]:
@@ -57,11 +80,11 @@ def curves_of(points: Points, findings: Findings) -> tuple[Curve, ...]:
         By construct and cell label; points in rising voltage. Cells with a fault are left out.
     """
     named = np.flatnonzero((points.construct != "") & (points.cell != ""))
-    sound = np.isfinite(points.voltage_mv) & np.isfinite(points.charge)
+    sound = np.isfinite(points.voltage_mv) & np.isfinite(points.value)
     curves, narrow = [], []
-    for members in _cells(points, named):
+    for members in cells_in(points, named):
         curve = _curve(points, members)
-        if _steady(points, members) and sound[members].all():
+        if is_steady(points, members) and sound[members].all():
             fault = _shape_fault(curve, points.table.raw.lost)
             if fault == "narrow":
                 narrow.append(curve)
@@ -69,11 +92,11 @@ def curves_of(points: Points, findings: Findings) -> tuple[Curve, ...]:
                 _refuse_shape(curve, fault, findings)
             else:
                 curves.append(curve)
-    _refuse_narrow(points, narrow, others=len(curves), findings=findings)
+    refuse_narrow(points, narrow, others=len(curves), findings=findings)
     return tuple(sorted(curves, key=lambda curve: (curve.construct, curve.cell)))
 
 
-def _cells(points: Points, named: IntArray) -> list[IntArray]:
+def cells_in(points: Points, named: IntArray) -> list[IntArray]:
     """Points of each cell, in rising voltage."""
     if not named.size:
         return []
@@ -92,7 +115,7 @@ def _curve(points: Points, members: IntArray) -> Curve:
         cell=str(points.cell[first]),
         batch=str(points.batch[first]) or None,
         voltage_mv=points.voltage_mv[members],
-        charge=points.charge[members],
+        charge=points.value[members],
         charge_unit=points.charge_unit,
         holding_mv=None if np.isnan(holding) else holding,
         phase=str(points.phase[first]) or None,
@@ -100,7 +123,7 @@ def _curve(points: Points, members: IntArray) -> Curve:
     )
 
 
-def _steady(points: Points, members: IntArray) -> bool:
+def is_steady(points: Points, members: IntArray) -> bool:
     """Whether all points of a cell share batch, holding voltage and phase; if not, a fault each."""
     first = int(members[np.argmin(points.index[members])])
     steady = True
@@ -160,7 +183,9 @@ def _refuse_shape(curve: Curve, fault: str, findings: Findings) -> None:
     findings.add(curve.origin, found=found, expected=expected, remedy=remedy)
 
 
-def _refuse_narrow(points: Points, narrow: list[Curve], *, others: int, findings: Findings) -> None:
+def refuse_narrow(
+    points: Points, narrow: Sequence[Curve | OpeningCurve], *, others: int, findings: Findings
+) -> None:
     """Refuse curves inside a few millivolts; told once when it is every curve of the table."""
     expected = f"a curve over more than {plausible.NARROWEST_RANGE_MV:g} mV"
     header = points.table.header("voltage")

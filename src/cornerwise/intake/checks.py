@@ -4,8 +4,10 @@ from __future__ import annotations
 
 from dataclasses import replace
 
+from ..campaign import ChargeReplicate, ChargeSummary, Curve, OpeningCurve
 from ..errors import Origin
-from .findings import Findings, nearest, shown
+from .findings import Findings, listing, nearest, shown
+from .openings import METHOD as LIMITING_SLOPE
 from .parts import Parts
 
 
@@ -24,6 +26,7 @@ def check(parts: Parts, aliases: frozenset[str], findings: Findings) -> None:
     _check_medians(parts, findings)
     _check_batches(parts, findings)
     _check_charges(parts, findings)
+    _check_methods(parts, findings)
     _check_voltages(parts, aliases, findings)
     _check_names(parts, findings)
 
@@ -41,43 +44,51 @@ def _check_medians(parts: Parts, findings: Findings) -> None:
 
 
 def _check_voltages(parts: Parts, aliases: frozenset[str], findings: Findings) -> None:
-    """Charges alone say nothing of an energy."""
+    """Charges and open probabilities alone say nothing of an energy."""
     with_voltages = {**parts.curves.seen, **parts.medians.seen}
-    for label, origin in parts.charges.seen.items():
-        if label not in aliases and parts.surely_without(label, parts.curves, parts.medians):
-            close = nearest(label, with_voltages)
-            findings.add(
-                origin,
-                found=f"charges of {shown(label)}, which has neither curves nor a median",
-                expected="voltages of every construct",
-                remedy=f"did you mean {shown(close)}?" if close else "add its curves, or delete its charges",
-            )
+    told = set(aliases)
+    for what, seen in (("charges", parts.charges.seen), ("open probabilities", parts.openings.seen)):
+        for label, origin in seen.items():
+            if label not in told and parts.surely_without(label, parts.curves, parts.medians):
+                told.add(label)
+                close = nearest(label, with_voltages)
+                remedy = f"did you mean {shown(close)}?" if close else f"add its curves, or delete its {what}"
+                findings.add(
+                    origin,
+                    found=f"{what} of {shown(label)}, which has neither curves nor a median",
+                    expected="charge-voltage data of every construct",
+                    remedy=remedy,
+                )
 
 
 def _check_batches(parts: Parts, findings: Findings) -> None:
-    """A cell in both tables is one cell, so it has one batch."""
-    batches = {(curve.construct, curve.cell): curve for curve in parts.curves.curves}
-    for replicate in parts.charges.replicates:
-        curve = batches.get((replicate.construct, replicate.cell))
-        if curve and curve.batch and replicate.batch and curve.batch != replicate.batch:
+    """A cell in several tables, or measured by several methods, is one cell, so it has one batch."""
+    first: dict[tuple[str, str], tuple[str, Origin]] = {}
+    cells: tuple[Curve | ChargeReplicate | OpeningCurve, ...]
+    cells = (*parts.curves.curves, *parts.charges.replicates, *parts.openings.openings)
+    for one in cells:
+        if one.batch is None:
+            continue
+        batch, place = first.setdefault((one.construct, one.cell), (one.batch, one.origin))
+        if batch != one.batch:
             findings.add(
-                replace(replicate.origin, column="batch"),
-                found=f"batch {shown(replicate.batch)} of the cell {replicate.construct}/{replicate.cell}, "
-                f"which has batch {shown(curve.batch)} elsewhere ({curve.origin})",
-                expected="one batch for a cell of the same name in both tables",
+                replace(one.origin, column="batch"),
+                found=f"batch {shown(one.batch)} of the cell {one.construct}/{one.cell}, "
+                f"which has batch {shown(batch)} elsewhere ({place})",
+                expected="one batch for a cell of the same name in all tables",
                 remedy="correct the batch or, if these are two cells, rename one of them",
             )
 
 
 def _check_charges(parts: Parts, findings: Findings) -> None:
-    """The charge policy finds the charges it needs."""
+    """The charge policy finds the charges it needs; a limiting slope is one."""
     policy, wild_type = parts.settings.charge, parts.settings.wild_type
-    if not isinstance(policy, str) or not parts.surely_without(wild_type, parts.charges):
+    if not isinstance(policy, str) or not parts.surely_without(wild_type, parts.charges, parts.openings):
         return
     state_one = (
         "state one charge for all in campaign.toml: charge = { value_e0 = 13.0, sem_e0 = 0.5 }, your values"
     )
-    if parts.charges_file is None:
+    if parts.charges_file is None and not parts.openings.seen:
         findings.add(
             parts.document.origin("charge"),
             found=f'no table of charges, with charge = "{policy}"',
@@ -86,18 +97,48 @@ def _check_charges(parts: Parts, findings: Findings) -> None:
             f"one for all; or {state_one}",
         )
     else:
+        first = next(iter(parts.openings.seen.values()), Origin())
         findings.add(
-            Origin(file=parts.charges_file),
+            Origin(file=parts.charges_file or first.file),
             found=f'no charge of the wild type {shown(wild_type)}, with charge = "{policy}"',
             expected="its total charge per channel",
             remedy=f"add it to the table; or {state_one}",
         )
 
 
+def _check_methods(parts: Parts, findings: Findings) -> None:
+    """A method has one form in a construct, and the one that is asked for exists."""
+    slopes = parts.openings.seen
+    charges: tuple[ChargeReplicate | ChargeSummary, ...]
+    charges = (*parts.charges.replicates, *parts.charges.summaries)
+    for one in charges:
+        if one.method == LIMITING_SLOPE and one.construct in slopes:
+            findings.add(
+                replace(one.origin, column="method"),
+                found=f"a charge of {shown(one.construct)} by the method {shown(LIMITING_SLOPE)}, which its "
+                f"open probabilities give too ({slopes[one.construct]})",
+                expected="each method in one form",
+                remedy="delete the charge, or give its method another name",
+            )
+    wanted = parts.settings.charge_method
+    known = (*parts.charges.methods, *((LIMITING_SLOPE,) if slopes else ()))
+    if wanted is None or wanted in known or not parts.surely_without(wanted, parts.charges, parts.openings):
+        return
+    close = nearest(wanted, known)
+    findings.add(
+        parts.document.origin("charge_method"),
+        found=f"the method {shown(wanted)}, by which no charge was measured",
+        expected=f"one of the methods of the tables, {listing(map(shown, known))}"
+        if known
+        else "no method, since there are no charges",
+        remedy=f"did you mean {shown(close)}?" if close else "correct the name, or delete the line",
+    )
+
+
 def _check_names(parts: Parts, findings: Findings) -> None:
     """The labels in campaign.toml are those of constructs."""
     known = parts.seen
-    tables = (parts.curves, parts.medians, parts.charges)
+    tables = parts.tables
     wild_type = parts.settings.wild_type
     if parts.surely_without(wild_type, *tables):
         _refuse_name(parts.document.origin("wild_type"), "the wild type", wild_type, known, findings)

@@ -10,7 +10,7 @@ from ..campaign import InputFile
 from ..errors import Origin
 from .findings import Findings, listing, nearest, shown
 
-TABLES = ("curves", "medians", "charges")
+TABLES = ("curves", "medians", "charges", "openings")
 SUFFIXES = (".csv", ".tsv", ".xlsx")
 CAMPAIGN_FILE = "campaign.toml"
 MOST_BYTES = 200_000_000

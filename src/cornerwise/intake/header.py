@@ -37,6 +37,12 @@ class Field:
     base: str
     units: tuple[str, ...] = ("",)  # "" is the bare name
     required: bool = True
+    key: str = ""  # what it is asked for by, where that is not `base`
+
+    @property
+    def name(self) -> str:
+        """What the column is asked for by."""
+        return self.key or self.base
 
     @property
     def headers(self) -> tuple[str, ...]:
@@ -63,7 +69,7 @@ def match_header(
     Returns
     -------
     dict of str to int
-        Index of the column of each base name that was found.
+        Index of the column of each field that was found, by its name.
     """
     found: dict[str, int] = {}
     meant: set[str] = set()  # columns that are there, if under a wrong name
@@ -74,13 +80,13 @@ def match_header(
             continue
         if field is None:
             meant.add(_refuse_header(raw, index, fields, findings))
-        elif field.base not in found:
-            found[field.base] = index
-        elif raw.header[found[field.base]] != header:
-            _refuse_second(raw, header, raw.header[found[field.base]], findings)
+        elif field.name not in found:
+            found[field.name] = index
+        elif raw.header[found[field.name]] != header:
+            _refuse_second(raw, header, raw.header[found[field.name]], findings)
     refuse_doubled(raw, findings)
     for field in fields:
-        if field.required and field.base not in found and field.base not in meant:
+        if field.required and field.name not in found and field.base not in meant:
             findings.add(
                 raw.header_origin(field.headers[0]),
                 found=f"the columns {', '.join(map(shown, raw.header))}",
@@ -123,15 +129,16 @@ def _refuse_header(raw: RawTable, index: int, fields: Sequence[Field], findings:
         )
         return ""
     base = header.replace("(", "_").replace("[", "_").replace(" ", "_").partition("_")[0].casefold()
-    same = next((field for field in fields if field.base.casefold() == base and field.units != ("",)), None)
-    if same is not None:
+    same = [field for field in fields if field.base.casefold() == base and field.units != ("",)]
+    if same:
+        headers = [name for field in same for name in field.headers]
         findings.add(
             raw.header_origin(header),
             found=f"the header {shown(header)}",
-            expected=f"the quantity with its unit, {listing(same.headers)}",
+            expected=f"the quantity with its unit, {listing(headers)}",
             remedy="put the unit the values are in into the header",
         )
-        return same.base
+        return same[0].base
     by_header = {name: field.base for field in fields for name in field.headers}
     close = nearest(header, by_header)
     findings.add(

@@ -5,12 +5,16 @@ from __future__ import annotations
 from collections.abc import Mapping
 from dataclasses import dataclass
 
-from ..campaign import InputFile, Settings
+from ..campaign import Exclusion, InputFile, Settings
 from ..errors import Origin
 from ..mutations import CycleRequest, Mutations
+from .charges import ChargesRead
 from .curves import CurvesRead
+from .medians import MediansRead
+from .openings import OpeningsRead
 from .settings import Document
-from .summaries import ChargesRead, MediansRead
+
+TableRead = CurvesRead | MediansRead | ChargesRead | OpeningsRead
 
 
 @dataclass(frozen=True, kw_only=True, slots=True)
@@ -21,9 +25,11 @@ class Parts:
     settings: Settings
     listed: Mapping[str, Mutations]
     requests: tuple[CycleRequest, ...]
+    exclusions: Mapping[Exclusion, Origin]  # and where each is asked for
     curves: CurvesRead
     medians: MediansRead
     charges: ChargesRead
+    openings: OpeningsRead
     charges_file: str | None  # None when there is no table of charges
     inputs: tuple[InputFile, ...]
 
@@ -31,7 +37,7 @@ class Parts:
     def seen(self) -> dict[str, Origin]:
         """Every construct named in a table, and where first."""
         seen: dict[str, Origin] = {}
-        for table in (self.curves, self.medians, self.charges):
+        for table in self.tables:
             for label, origin in table.seen.items():
                 seen.setdefault(label, origin)
         return seen
@@ -39,9 +45,13 @@ class Parts:
     @property
     def whole(self) -> bool:
         """Whether every table could be read in full."""
-        tables = (self.curves, self.medians, self.charges)
-        return all(table.readable and not table.lost for table in tables)
+        return all(table.readable and not table.lost for table in self.tables)
 
-    def surely_without(self, label: str, *tables: CurvesRead | MediansRead | ChargesRead) -> bool:
+    @property
+    def tables(self) -> tuple[TableRead, ...]:
+        """Every table."""
+        return self.curves, self.medians, self.charges, self.openings
+
+    def surely_without(self, label: str, *tables: TableRead) -> bool:
         """Whether none of `tables` names the construct `label`, nor may have in what could not be read."""
         return all(table.readable and label not in table.seen and label not in table.lost for table in tables)

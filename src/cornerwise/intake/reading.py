@@ -1,7 +1,8 @@
 """From a path to a campaign: the one public entry of this room.
 
-A campaign is a folder with ``campaign.toml`` and the tables ``curves``, ``medians`` and ``charges``, each as
-``.csv``, ``.tsv`` or ``.xlsx`` and each once; or one workbook, see `cornerwise.intake.workbook`.
+A campaign is a folder with ``campaign.toml`` and the tables ``curves``, ``medians``, ``charges`` and
+``openings``, each as ``.csv``, ``.tsv`` or ``.xlsx`` and each once; or one workbook, see
+`cornerwise.intake.workbook`.
 """
 
 from __future__ import annotations
@@ -9,23 +10,30 @@ from __future__ import annotations
 import os
 import re
 import tomllib
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping
 from dataclasses import dataclass
 from pathlib import Path
+from typing import TypeVar
 
 from ..campaign import Campaign, InputFile
 from ..errors import DataRefused, Origin
 from . import text, workbook
 from .assemble import assemble
 from .book import open_book
+from .charges import ChargesRead, read_charges
 from .curves import CurvesRead, read_curves
+from .exclusions import read_exclusions
 from .files import TABLES, locate, read_bytes
 from .findings import Findings
 from .header import RawTable
 from .listed import cycle_requests, listed_mutations
+from .medians import MediansRead, read_medians
+from .openings import OpeningsRead, read_openings
 from .parts import Parts
 from .settings import Document, read_settings
-from .summaries import ChargesRead, MediansRead, read_charges, read_medians
+from .toml_lines import lines_of_keys
+
+_Read = TypeVar("_Read")
 
 _LINE = re.compile(r"\(at line (\d+), column \d+\)")
 
@@ -118,7 +126,7 @@ def _toml(data: bytes, name: str, findings: Findings) -> Document | None:
     if decoded is None:
         return None
     try:
-        return Document(values=tomllib.loads(decoded), file=name)
+        values = tomllib.loads(decoded)
     except tomllib.TOMLDecodeError as error:
         message = str(error)
         line = _LINE.search(message)
@@ -129,6 +137,8 @@ def _toml(data: bytes, name: str, findings: Findings) -> Document | None:
             remedy="put text in quotes, write numbers with a decimal point and each key once",
         )  # fmt: skip
         return None
+    rows = {path: (name, line) for path, line in lines_of_keys(decoded).items()}
+    return Document(values=values, file=name, rows=rows)
 
 
 def _table(data: bytes, path: Path, name: str, findings: Findings) -> RawTable | None:
@@ -146,25 +156,34 @@ def _campaign(source: Source | None, findings: Findings) -> Campaign | None:
     """Make everything of the tables that can be made, so that every fault is found."""
     if source is None:
         return None
-    tables = source.tables
-    charges, medians, curves = (tables.get(name) for name in ("charges", "medians", "curves"))
-    curves_read = read_curves(curves, findings) if curves else CurvesRead(readable="curves" not in tables)
-    medians_read = (
-        read_medians(medians, findings) if medians else MediansRead(readable="medians" not in tables)
-    )
-    charges_read = (
-        read_charges(charges, findings) if charges else ChargesRead(readable="charges" not in tables)
-    )
+    charges = source.tables.get("charges")
+    curves_read = _read("curves", read_curves, CurvesRead, source, findings)
+    medians_read = _read("medians", read_medians, MediansRead, source, findings)
+    charges_read = _read("charges", read_charges, ChargesRead, source, findings)
+    openings_read = _read("openings", read_openings, OpeningsRead, source, findings)
     if source.document is None:
         return None
     settings = read_settings(source.document, findings)
     listed = listed_mutations(source.document, findings)
     requests = cycle_requests(source.document, findings)
+    exclusions = read_exclusions(source.document, findings)
     if settings is None:
         return None
     parts = Parts(
         document=source.document, settings=settings, listed=listed, requests=requests,
-        curves=curves_read, medians=medians_read, charges=charges_read,
-        charges_file=charges.file if charges else None, inputs=source.inputs,
+        exclusions=exclusions, curves=curves_read, medians=medians_read, charges=charges_read,
+        openings=openings_read, charges_file=charges.file if charges else None, inputs=source.inputs,
     )  # fmt: skip
     return assemble(parts, findings)
+
+
+def _read(
+    name: str,
+    read_table: Callable[[RawTable, Findings], _Read],
+    nothing: Callable[..., _Read],
+    source: Source,
+    findings: Findings,
+) -> _Read:
+    """What the table `name` says; nothing when it is not there or could not be opened."""
+    table = source.tables.get(name)
+    return nothing(readable=name not in source.tables) if table is None else read_table(table, findings)

@@ -1,4 +1,11 @@
-"""The keys of ``campaign.toml``: types, ranges, defaults, and the lists of mutations and of cycles."""
+"""The keys of ``campaign.toml``: types, ranges and defaults.
+
+`RULES` names every plain key with what it may hold; the defaults are those of `cornerwise.campaign.Settings`.
+Besides them there are ``charge``, which is ``"measured"``, ``"wild-type"`` or a table ``{ value_e0, sem_e0,
+citation }`` whose citation may be left out, and the tables of `cornerwise.intake.listed` and
+`cornerwise.intake.exclusions`. ``charge_method`` is compared with the methods of the tables once these are
+read.
+"""
 
 from __future__ import annotations
 
@@ -22,11 +29,12 @@ class Document:
 
     values: Mapping[str, object]
     file: str
-    rows: Mapping[tuple[str | int, ...], tuple[str, int]] = field(default_factory=dict)  # place in a workbook
+    rows: Mapping[tuple[str | int, ...], tuple[str, int]] = field(default_factory=dict)  # file and row
 
     def origin(self, *path: str | int) -> Origin:
-        """Return the place of a key, named by its path."""
-        file, row = self.rows.get(path, (self.file, None))
+        """Return the place of a key, named by its path; that of its table when it is missing there."""
+        known = (path[:length] for length in range(len(path), 0, -1) if path[:length] in self.rows)
+        file, row = self.rows.get(next(known, ()), (self.file, None))
         names = [f"entry {part + 1}" if isinstance(part, int) else part for part in path]
         return Origin(file=file, row=row, column=" ".join(names) or None)
 
@@ -48,11 +56,12 @@ def _text(value: object) -> str:
     return value
 
 
-def _label(value: object) -> str:
-    label = _text(value).strip()
-    if not label or not label.isprintable():
+def visible_text(value: object) -> str:
+    """Return a text without outer spaces; ValueError if there is nothing else, or what cannot be seen."""
+    text = _text(value).strip()
+    if not text or not text.isprintable():
         raise ValueError
-    return label
+    return text
 
 
 def _number(value: object) -> float:
@@ -95,7 +104,8 @@ _POSITIVE = _where(lambda number: number > 0)
 RULES = (
     Rule(key="title", attribute="title", read=_text, expected="text in quotes"),
     Rule(
-        key="wild_type", attribute="wild_type", read=_label, expected="the wild type's label, in quotes",
+        key="wild_type", attribute="wild_type", read=visible_text,
+        expected="the wild type's label, in quotes",
         remedy="write the label as it stands in the tables",
     ),
     Rule(
@@ -134,10 +144,22 @@ RULES = (
         read=_where(lambda number: 0 <= number <= plausible.VOLTAGE_LIMIT_MV),
         expected="a standard uncertainty in mV, not negative",
     ),
+    Rule(
+        key="reference_voltage_mV", attribute="reference_voltage_mv",
+        read=_where(lambda number: abs(number) <= plausible.VOLTAGE_LIMIT_MV),
+        expected=f"a voltage in mV, from -{plausible.VOLTAGE_LIMIT_MV:g} to {plausible.VOLTAGE_LIMIT_MV:g}",
+        remedy="correct the value; write -60 for -60 mV",
+    ),
+    Rule(
+        key="charge_method", attribute="charge_method", read=visible_text,
+        expected="the name of a method, in quotes",
+        remedy="write it as it stands in the column method of charges",
+    ),
 )  # fmt: skip
 
 KEYS = (*(rule.key for rule in RULES), "charge")
-TABLES = ("mutations", "cycle")
+CHARGE_KEYS = ("value_e0", "sem_e0", "citation")
+TABLES = ("mutations", "cycle", "exclude")
 
 
 def read_settings(document: Document, findings: Findings) -> Settings | None:
@@ -225,21 +247,25 @@ def _charge_policy(document: Document, findings: Findings) -> ChargePolicy:
 
 
 def _stated_charge(document: Document, stated: Mapping[str, object], findings: Findings) -> ChargePolicy:
-    keys = ("value_e0", "sem_e0")
     for key in stated:
-        if key not in keys:
-            _refuse_key(document.origin("charge", key), key, keys, findings)
+        if key not in CHARGE_KEYS:
+            _refuse_key(document.origin("charge", key), key, CHARGE_KEYS, findings)
     possible = _where(plausible.possible_total_charge)
-    rules = (
-        (keys[0], possible, f"a charge per channel above 0, at most {plausible.CHARGE_LIMIT_E0:g} e0"),
-        (keys[1], _where(lambda number: number >= 0), "its standard uncertainty in e0, not negative"),
+    rules: tuple[tuple[str, Callable[[object], object], str], ...] = (
+        ("value_e0", possible, f"a charge per channel above 0, at most {plausible.CHARGE_LIMIT_E0:g} e0"),
+        ("sem_e0", _where(lambda number: number >= 0), "its standard uncertainty in e0, not negative"),
+        ("citation", visible_text, "the source of the value, in quotes"),
     )
-    values: list[float] = []
+    values: dict[str, Any] = {}
     for key, read, expected in rules:
+        if key == "citation" and key not in stated:
+            continue
         try:
-            values.append(read(stated.get(key)))
+            values[key] = read(stated.get(key))
         except ValueError:
             found = say(stated[key]) if key in stated else f"no {key}"
             remedy = "write charge = { value_e0 = 13.0, sem_e0 = 0.5 } with your own values"
+            if key == "citation":
+                remedy = 'write citation = "where the value is published", or leave it out'
             findings.add(document.origin("charge", key), found=found, expected=expected, remedy=remedy)
-    return StatedCharge(value_e0=values[0], sem_e0=values[1]) if len(values) == 2 else _UNKNOWN_CHARGE
+    return StatedCharge(**values) if {"value_e0", "sem_e0"} <= values.keys() else _UNKNOWN_CHARGE

@@ -58,7 +58,7 @@ class Table:
 
     def unit(self, base: str) -> str:
         """Return the unit in the header of the column `base`; "" where it has none."""
-        return self.header(base).removeprefix(base).removeprefix("_")
+        return self.header(base).partition("_")[2]
 
     def origin(self, index: int, base: str | None = None) -> Origin:
         """Return the place of row `index` (from 0) in the column `base`."""
@@ -68,6 +68,12 @@ class Table:
     def refuse(self, index: int, base: str, *, found: str, expected: str, remedy: str) -> None:
         """Add a fault at row `index` (from 0) of the column `base`."""
         self.findings.add(self.origin(index, base), found=found, expected=expected, remedy=remedy)
+
+    def filled(self, base: str) -> BoolArray:
+        """In which rows the column `base` holds anything, shape (n_rows,); nowhere when it is missing."""
+        if base not in self.found:
+            return np.zeros(len(self), dtype=bool)
+        return np.array([bool(text.strip()) for text in self.raw.columns[self.found[base]]], dtype=bool)
 
     def text(self, base: str) -> TextArray:
         """Read a column of words, shape (n_rows,); "" where it is empty or the column is missing."""
@@ -119,9 +125,9 @@ class Table:
         values[self._refuse_grouped(columns, codes, uniques)] = np.nan
         return np.asarray(values[codes].reshape(len(columns), len(self)))
 
-    def whole_numbers(self, base: str, *, least: int) -> FloatArray:
+    def whole_numbers(self, base: str, *, least: int, empty: bool = False) -> FloatArray:
         """Read a column of counts, shape (n_rows,); NaN where it holds none."""
-        values = self.numbers(base)
+        values = self.numbers(base, empty=empty)
         wrong = np.isfinite(values) & ((values < least) | (values != np.round(values)))
         for index in np.flatnonzero(wrong):
             self.refuse(

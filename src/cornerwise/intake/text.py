@@ -33,7 +33,10 @@ _MARKS = (
     (codecs.BOM_UTF16_BE, "utf-16"),
 )
 _COLUMN_WORDS = frozenset(
-    ("construct", "cell", "batch", "voltage", "charge", "holding", "phase", "median", "sem", "n", "method")
+    (
+        *("construct", "cell", "batch", "voltage", "charge", "holding", "phase", "median", "sem", "n"),
+        *("method", "channels", "citation", "open"),
+    )
 )
 
 

@@ -1,13 +1,14 @@
 """Workbooks: one table of a campaign, or a whole campaign.
 
-A campaign in one workbook has the sheets ``curves``, ``medians`` and ``charges`` with the columns of the
-files of these names, and in place of ``campaign.toml``
+A campaign in one workbook has the sheets ``curves``, ``medians``, ``charges`` and ``openings`` with the
+columns of the files of these names, and in place of ``campaign.toml``
 
 - ``campaign``: two columns, a key and its value; a first row ``key``, ``value`` may stand above them.
-  A stated charge takes two rows, ``charge.value_e0`` and ``charge.sem_e0``.
+  A stated charge takes two rows, ``charge.value_e0`` and ``charge.sem_e0``, and perhaps ``charge.citation``.
 - ``mutations`` (optional): the columns ``construct`` and ``mutations``, the latter separated by commas or
   written like a label (``E181A/R212Q``); left empty for a wild type whose label spells none.
 - ``cycles`` (optional): the columns ``name`` (may be left out) and ``mutations``, written in the same way.
+- ``exclude`` (optional): the columns ``construct``, ``cell`` and ``reason``, a row for each cell set aside.
 
 Empty sheets and sheets called ``notes`` or ``readme`` are passed over; any other sheet is refused. A workbook
 that stands for one table of a folder holds that table alone, on a sheet of any name.
@@ -21,16 +22,18 @@ from collections.abc import Sequence
 from ..errors import Origin
 from ..mutations import in_residue_order, parse_label
 from .book import Book, Refusal, cell_text, read_sheet, refuse_cell
+from .exclusions import EXCLUDE_KEYS
 from .findings import Findings, nearest, shown
 from .header import Field, RawTable
 from .settings import Document
 from .table import Table
 
-CAMPAIGN_SHEETS = ("campaign", "mutations", "cycles")
+CAMPAIGN_SHEETS = ("campaign", "mutations", "cycles", "exclude")
 NOTES = ("notes", "readme")
-TEXT_KEYS = ("title", "wild_type")
+TEXT_KEYS = ("title", "wild_type", "charge_method", "charge.citation")
 
 _MUTATION_FIELDS = (Field(base="construct"), Field(base="mutations"))
+_EXCLUDE_FIELDS = tuple(Field(base=key) for key in EXCLUDE_KEYS)
 _CYCLE_FIELDS = (Field(base="name", required=False), Field(base="mutations"))
 
 Places = dict[tuple[str | int, ...], tuple[str, int]]
@@ -86,7 +89,7 @@ def read_document(book: Book, findings: Findings) -> Document | None:
     places: Places = {}
     findings.take_up(book.place(titles["campaign"]))
     values = _keys(book, titles["campaign"], places, findings)
-    for name, read in (("mutations", _mutations), ("cycles", _cycles)):
+    for name, read in (("mutations", _mutations), ("cycles", _cycles), ("exclude", _exclude)):
         if name in titles and book.rows(titles[name]):
             findings.take_up(book.place(titles[name]))
             raw = read_sheet(book, titles[name], findings)
@@ -187,6 +190,17 @@ def _cycles(raw: RawTable, places: Places, findings: Findings) -> dict[str, obje
         places["cycle", len(cycles)] = (raw.file, int(raw.rows[index]))
         cycles.append({"mutations": _words(text)} | ({"name": name} if name else {}))
     return {"cycle": cycles}
+
+
+def _exclude(raw: RawTable, places: Places, findings: Findings) -> dict[str, object]:
+    table = Table(raw, _EXCLUDE_FIELDS, findings)
+    columns = [table.text(key) for key in EXCLUDE_KEYS]
+    entries: list[dict[str, object]] = []
+    for index, texts in enumerate(zip(*columns, strict=True)):
+        if table.readable and all(text.isprintable() for text in texts):
+            places["exclude", len(entries)] = (raw.file, int(raw.rows[index]))
+            entries.append({key: text for key, text in zip(EXCLUDE_KEYS, texts, strict=True) if text})
+    return {"exclude": entries}
 
 
 def _words(text: str) -> list[str]:
