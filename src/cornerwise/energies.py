@@ -70,7 +70,7 @@ def _construct_sources(measurement: Measurement) -> list[Source]:
         if q is not None:
             sources.append(_lone_source(f"total charge of {label} ({in_words(q)})", charge, q))
     if measurement.truncation_mv > 0:
-        name = f"charge outside the voltage range of {label}"
+        name = f"curve shape and extrapolation of {label}"
         component = Component("truncation", label)
         u = measurement.truncation_mv
         sources.append(StatedSource(name=name, component=component, mean=0.0, std_uncertainty=u))
