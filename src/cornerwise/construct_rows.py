@@ -15,6 +15,7 @@ from .flags import Flag, codes
 from .intervals import t_interval
 from .measurements import Measurement
 from .midpoints import midpoints
+from .quantities import Sample
 from .result import CellRow, ConstructRow, DrawnCurve, available
 from .verdicts import ChargeVerdict
 
@@ -123,8 +124,14 @@ def construct_row(
         sigmoid_energy=available(middle.sigmoid_energy),
         flags=codes(flags),
         curve=averaged_curve(measurement),
+        charge_values=_charge_values(measurement),
     )
     return row, flags, judged
+
+
+def _charge_values(measurement: Measurement) -> tuple[float, ...]:
+    charge = measurement.charge_e0
+    return tuple(map(float, charge.values)) if isinstance(charge, Sample) else ()
 
 
 class _ChargeFields(TypedDict):

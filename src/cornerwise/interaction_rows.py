@@ -31,11 +31,12 @@ from .result import (
     BudgetRow,
     ConstructRow,
     CornerCharge,
+    Edge,
     InteractionRow,
     ProfilePoint,
     available,
 )
-from .sources import Derived
+from .sources import Derived, linear
 from .verdicts import ShortcutVerdict, favours, interaction_verdict, shortcut_verdict
 
 FloatArray = NDArray[np.float64]
@@ -213,9 +214,40 @@ def _row(
         rank_low=ranks[1],
         rank_high=ranks[2],
         flags=codes(own, also=inherited),
+        edges=cycle_edges(cycle, book),
         **_charge_fields(one, book, corners, charges),
     )
     return row, own
+
+
+def cycle_edges(cycle: Cycle, book: EnergyBook) -> tuple[Edge, ...]:
+    """Differences of energy along the edges of a cycle, from fewer mutations to more.
+
+    Parameters
+    ----------
+    cycle : Cycle
+        Complete; every corner has an entry in `book`.
+    book : EnergyBook
+        Energies of the campaign; what two corners share (a charge, an offset) is counted once.
+    """
+    found = []
+    for start in cycle.corners:
+        for end in cycle.corners:
+            added = set(end.mutations) - set(start.mutations)
+            if len(added) != 1 or len(end.mutations) != len(start.mutations) + 1:
+                continue
+            energies = book.energies[end.label].energy, book.energies[start.label].energy
+            difference = linear([(1.0, energies[0]), (-1.0, energies[1])])
+            found.append(
+                Edge(
+                    start=start.label,
+                    end=end.label,
+                    mutation=str(*added),
+                    difference=available(difference.value),
+                    std_uncertainty=available(math.sqrt(book.ledger.spread(difference).variance)),
+                )
+            )
+    return tuple(found)
 
 
 def _budget_rows(one: _Judged, book: EnergyBook) -> list[BudgetRow]:

@@ -121,6 +121,17 @@ class ProfilePoint:
 
 
 @dataclass(frozen=True, kw_only=True, slots=True)
+class Edge:
+    """What one mutation adds to the activation free energy, between two corners of a cycle."""
+
+    start: str  # construct without the mutation
+    end: str  # construct with it
+    mutation: str
+    difference: float | None  # dG(end) - dG(start), in the row's unit
+    std_uncertainty: float | None  # what both corners share counted once
+
+
+@dataclass(frozen=True, kw_only=True, slots=True)
 class InteractionRow:
     """One cycle. Energies in `energy_unit` per channel; None where a field does not apply."""
 
@@ -171,6 +182,7 @@ class InteractionRow:
     offset_contribution: float | None  # standard uncertainty from the stated voltage offset
     breakdown: tuple[Breakdown, ...]  # where a charge is assumed and the interval excludes 0
     profile: tuple[ProfilePoint, ...]  # where the charges do not add up
+    edges: tuple[Edge, ...] = ()  # of the square, the cube, ...
 
     def cells(self) -> tuple[Value, ...]:
         """Values in the order of `columns`."""
@@ -215,6 +227,7 @@ class ConstructRow:
     sigmoid_energy: float | None  # apparent charge times that midpoint
     flags: tuple[str, ...]
     curve: DrawnCurve | None  # averaged over the cells that are used; None without curves
+    charge_values: tuple[float, ...] = ()  # e0 per channel, its own cell by cell; empty for summaries
 
     def cells(self) -> tuple[Value, ...]:
         """Values in the order of `columns`."""
