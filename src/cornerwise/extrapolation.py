@@ -56,12 +56,12 @@ def missing_charge(pooled: PooledShape) -> list[Missing]:
 
 def _outside(pooled: PooledShape, left: float, right: float) -> tuple[float, float]:
     """Fraction of the mean curve's charge outside a range, and the doubt it leaves about the median (mV)."""
-    median = float(pooled.median_mv.mean())
+    median, noise = float(pooled.median_mv.mean()), float(np.sqrt(pooled.variance))
     tail = np.linspace(0.0, _TAIL_MV, _TAIL_POINTS)
     below, above = _mean_curve(pooled, left - tail), 1.0 - _mean_curve(pooled, right + tail)
     area_low = below[0] * abs(median - left) + np.trapezoid(below, tail)
     area_high = above[0] * abs(right - median) + np.trapezoid(above, tail)
-    doubt = np.hypot(_doubt(below[0], area_low), _doubt(above[0], area_high))
+    doubt = np.hypot(_doubt(below[0], area_low, noise), _doubt(above[0], area_high, noise))
     return float(below[0] + above[0]), float(doubt)
 
 
@@ -70,9 +70,11 @@ def _mean_curve(pooled: PooledShape, v_mv: FloatArray) -> FloatArray:
     return curve
 
 
-def _doubt(fraction: float, area_mv: float) -> float:
-    relative = float(DOUBT_AT_ONE / np.sqrt(max(fraction, 1e-30)))
-    return area_mv * min(LARGEST_DOUBT, relative)
+def _doubt(fraction: float, area_mv: float, noise: float) -> float:
+    """Standard uncertainty of an extrapolated area; up to twice as large where noise hides the tail."""
+    fraction = max(fraction, 1e-30)
+    relative = min(LARGEST_DOUBT, float(DOUBT_AT_ONE / np.sqrt(fraction)))
+    return area_mv * relative * (1.0 + noise / (noise + fraction))
 
 
 def truncation_mv(pooled: PooledShape, missing: list[Missing], *, slope_shift_mv: float) -> float:

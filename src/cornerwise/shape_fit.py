@@ -49,8 +49,7 @@ class Cells:
         """Square root of the weights; None where all are 1, which saves the multiplications."""
         if bool((self.weight == 1.0).all()):
             return None
-        root: FloatArray = np.sqrt(self.weight)
-        return root
+        return np.asarray(np.sqrt(self.weight), dtype=np.float64)
 
     @property
     def baseline_basis(self) -> FloatArray:
@@ -59,7 +58,7 @@ class Cells:
             return np.empty((0, *self.v_mv.shape))
         root = np.sqrt(self.weight)
         total = self.weight.sum(axis=-1, keepdims=True)
-        level = root / np.sqrt(total)
+        level: FloatArray = root / np.sqrt(total)
         if self.baseline == "level":
             return level[None]
         centred = root * (self.v_mv - (self.weight * self.v_mv).sum(axis=-1, keepdims=True) / total)

@@ -145,6 +145,7 @@ def main_table(setting: Setting, trials: int) -> None:
 
 def worst_table(settings: list[Setting], trials: int) -> None:
     print(f"\n## Other recordings, {trials} constructs per scheme: worst scheme's RMSE of the mean (mV)\n")
+    print("Cells that would be refused are counted here like the others.\n")
     print("| recording | ours: largest bias |" + "".join(f" {name} |" for name in ESTIMATORS))
     print("|---|" + "---:|" * (len(ESTIMATORS) + 1))
     for setting in settings:
