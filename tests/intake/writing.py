@@ -18,6 +18,11 @@ TOML = 'wild_type = "WT"\ncharge = { value_e0 = 13.0, sem_e0 = 0.5 }\n'
 
 Rows = list[list[str]]
 
+MEDIANS: Rows = [
+    ["construct", "median_mV", "sem_mV", "n"],
+    *([label, str(-40 - 3 * i), "1.5", "5"] for i, label in enumerate(LABELS)),
+]
+
 
 def curve_rows(labels: Iterable[str] = LABELS, cells: Sequence[str] = ("c1",)) -> Rows:
     """Header and points of one curve per cell; the first point of the first cell stands in row 2."""
@@ -26,6 +31,13 @@ def curve_rows(labels: Iterable[str] = LABELS, cells: Sequence[str] = ("c1",)) -
         for cell in cells:
             rows += [[label, cell, str(v), str(q)] for v, q in zip(VOLTAGES, CHARGES, strict=True)]
     return rows
+
+
+def changed(rows: Rows, row: int, column: str, value: str) -> Rows:
+    """A copy with one field changed, by its row in the file."""
+    copy = [list(fields) for fields in rows]
+    copy[row - 1][rows[0].index(column)] = value
+    return copy
 
 
 def wide_rows(names: Iterable[str] = tuple(f"{label}/c1" for label in LABELS)) -> Rows:
@@ -112,13 +124,19 @@ def content(campaign: Campaign) -> object:
                 for c in construct.curves
             ],
             construct.median and (construct.median.median_mv, construct.median.sem_mv, construct.median.n),
-            [(r.cell, r.batch, r.charge_e0, r.method) for r in construct.charge_replicates],
-            [(s.charge_e0, s.sem_e0, s.n, s.method) for s in construct.charge_summaries],
+            [
+                (r.cell, r.batch, r.charge_e0, r.own_uncertainty_e0, r.method)
+                for r in construct.charge_replicates
+            ],
+            [(s.charge_e0, s.sem_e0, s.n, s.method, s.citation) for s in construct.charge_summaries],
+            [(o.cell, o.batch, tuple(o.voltage_mv), tuple(o.open_probability)) for o in construct.openings],
         )
         for construct in campaign.constructs
     ]
     requests = [(request.name, request.mutations) for request in campaign.requests]
-    return campaign.settings, constructs, campaign.cycles, requests, campaign.background
+    return (
+        campaign.settings, constructs, campaign.cycles, requests, campaign.background, campaign.exclusions
+    )  # fmt: skip
 
 
 def sigmoid(voltage_mv: np.ndarray, midpoint_mv: float) -> np.ndarray:

@@ -76,7 +76,7 @@ def charge_per_channel(table: Table, of_cells: BoolArray) -> tuple[FloatArray, F
     direct, raw = table.numbers("charge", empty=both), table.numbers(RAW, empty=both)
     if both:
         _refuse_none_or_both(table)
-    is_raw = table.filled(RAW) & of_cells
+    is_raw = table.filled(RAW) & ~table.filled("charge") & of_cells
     channels = _channels(table, is_raw)
     sem = _counts_sem(table, channels)
     charge = np.where(is_raw, np.nan, direct)
@@ -131,7 +131,7 @@ def _refuse_needless(table: Table) -> None:
             place = table.raw.header_origin(table.header(base))
             table.findings.add(place, found=found, expected=expected, remedy=remedy)
             return
-        for index in np.flatnonzero(table.filled(base) & ~table.filled(RAW)) if RAW in table else ():
+        for index in np.flatnonzero(table.filled(base) & table.filled("charge") & ~table.filled(RAW)):
             table.refuse(int(index), base, found=found, expected=expected, remedy=remedy)
 
 

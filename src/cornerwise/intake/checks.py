@@ -6,6 +6,7 @@ from dataclasses import replace
 
 from ..campaign import ChargeReplicate, ChargeSummary, Curve, OpeningCurve
 from ..errors import Origin
+from .charges import CITED, UNNAMED
 from .findings import Findings, listing, nearest, shown
 from .openings import METHOD as LIMITING_SLOPE
 from .parts import Parts
@@ -123,6 +124,8 @@ def _check_methods(parts: Parts, findings: Findings) -> None:
     wanted = parts.settings.charge_method
     known = (*parts.charges.methods, *((LIMITING_SLOPE,) if slopes else ()))
     if wanted is None or wanted in known or not parts.surely_without(wanted, parts.charges, parts.openings):
+        return
+    if wanted in (UNNAMED, CITED) and parts.charges.lost:  # a lost row may be one without a method
         return
     close = nearest(wanted, known)
     findings.add(

@@ -12,16 +12,17 @@ from collections.abc import Iterable, Mapping
 from ..campaign import Exclusion
 from ..errors import Origin
 from ..mutations import Cycle
-from .findings import Findings, nearest, shown
+from .findings import Findings, listing, nearest, shown
 from .parts import Parts
 from .settings import KEYS, Document, say, visible_text
 
 EXCLUDE_KEYS = ("construct", "cell", "reason")
+MOST_LISTED = 12  # cells named where one is not known
 
 _EXPECTED = {
     "construct": "the label of a construct, in quotes",
     "cell": "the label of one of its cells, in quotes",
-    "reason": "why the cell is set aside, in quotes",
+    "reason": "why the cell is set aside, in quotes and on one line",
 }
 
 
@@ -117,7 +118,9 @@ def _check_cell(parts: Parts, exclusion: Exclusion, origin: Origin, findings: Fi
         expected = "a construct with cells in curves, charges or openings"
     else:
         found, close = f"the cell {shown(cell)}, which {shown(construct)} has not", nearest(cell, own)
-        expected = f"a cell of {shown(construct)} in curves, charges or openings"
+        names = [shown(name) for name in sorted(own)]
+        known_ones = listing(names if len(names) <= MOST_LISTED else [*names[:MOST_LISTED], "another"])
+        expected = f"a cell of {shown(construct)} in curves, charges or openings: {known_ones}"
     remedy = f"did you mean {shown(close)}?" if close else "correct the label, or delete the entry"
     findings.add(origin, found=found, expected=expected, remedy=remedy)
 

@@ -15,6 +15,7 @@ SUFFIXES = (".csv", ".tsv", ".xlsx")
 CAMPAIGN_FILE = "campaign.toml"
 MOST_BYTES = 200_000_000
 
+_IN_CAMPAIGN_FILE = ("exclude", "exclusions")  # a table of this name would change figures if it were read
 _TABLE_LIKE = (*SUFFIXES, ".xls", ".xlsm", ".xlsb", ".ods", ".tab", ".dat", ".txt")
 
 
@@ -98,6 +99,14 @@ def _judge_stray(path: Path, findings: Findings) -> None:
     """Refuse a table that was most likely meant to be read."""
     stem, suffix = path.stem.casefold(), path.suffix.casefold()
     if suffix not in _TABLE_LIKE:
+        return
+    if nearest(stem, _IN_CAMPAIGN_FILE):
+        findings.add(
+            Origin(file=path.name),
+            found=f"the file {shown(path.name)}, which is not read",
+            expected=f"[[exclude]] entries in {CAMPAIGN_FILE}",
+            remedy=f"write them into {CAMPAIGN_FILE}, or move the file out of the folder",
+        )
         return
     names = ("campaign", *TABLES)
     inside = next((name for name in names if name in stem and (stem == name or suffix != ".txt")), None)
