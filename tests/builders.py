@@ -36,6 +36,7 @@ def construct(
     *,
     summarised: bool = False,
     charge_cells: str = "c",
+    batches: Sequence[str | None] = (),
 ) -> Construct:
     """Construct with one curve a median (or a median summary), and charges of cells c0, c1, ..."""
     curves: tuple[Curve, ...] = ()
@@ -44,7 +45,8 @@ def construct(
         mean, sem, n = medians
         summary = MedianSummary(construct=label, median_mv=mean, sem_mv=sem, n=int(n))
     else:
-        curves = tuple(sigmoid_curve(label, f"c{i}", vm) for i, vm in enumerate(medians))
+        of_cells = [*batches, *[None] * (len(medians) - len(batches))]
+        curves = tuple(sigmoid_curve(label, f"c{i}", vm, batch=of_cells[i]) for i, vm in enumerate(medians))
     replicates: tuple[ChargeReplicate, ...] = ()
     if charges is not None and not isinstance(charges, ChargeSummary):
         replicates = tuple(
@@ -73,8 +75,8 @@ def campaign(constructs: Sequence[Construct], **settings: object) -> Campaign:
 
 def measurement(
     label: str,
-    medians: Mapping[str, float] | Summary,
-    charges: Mapping[str, float] | Summary | None = None,
+    medians: Mapping[str, float] | Summary | Sample,
+    charges: Mapping[str, float] | Summary | Sample | None = None,
     truncation_mv: float = 0.0,
 ) -> Measurement:
     """Measurement from named cells, without going through curves."""
@@ -88,13 +90,13 @@ def measurement(
     )
 
 
-def _charge(given: Mapping[str, float] | Summary) -> ChargeValue:
+def _charge(given: Mapping[str, float] | Summary | Sample) -> ChargeValue:
     kind = "summary" if isinstance(given, Summary) else "cells"
     return ChargeValue(method="measured", kind=kind, quantity=_quantity(given))
 
 
-def _quantity(given: Mapping[str, float] | Summary) -> Sample | Summary:
-    if isinstance(given, Summary):
+def _quantity(given: Mapping[str, float] | Summary | Sample) -> Sample | Summary:
+    if isinstance(given, Summary | Sample):
         return given
     return Sample(cells=tuple(given), values=np.array(list(given.values()), dtype=float))
 
@@ -102,3 +104,12 @@ def _quantity(given: Mapping[str, float] | Summary) -> Sample | Summary:
 def cells(values: Sequence[float], prefix: str = "c") -> dict[str, float]:
     """Cells c0, c1, ... with these values."""
     return {f"{prefix}{i}": float(value) for i, value in enumerate(values)}
+
+
+def batched(values: Sequence[float], batches: Sequence[str | None], prefix: str = "c") -> Sample:
+    """Cells c0, c1, ... with these values and the batch of each."""
+    return Sample(
+        cells=tuple(f"{prefix}{i}" for i in range(len(values))),
+        values=np.array(values, dtype=float),
+        batches=tuple(batches),
+    )

@@ -71,7 +71,8 @@ def test_wild_type_shared_by_two_pairs_cancels_in_their_difference() -> None:
     scale = (KCAL * 10.0) ** 2
     assert book.ledger.spread(first).variance == pytest.approx(scale * (9 + 3), rel=1e-12)
     assert book.ledger.spread(difference).variance == pytest.approx(scale * 6, rel=1e-12)
-    draws = [interaction_draws(cycle, _big(wild, stated)) for cycle in _cycles(wild)]
+    big = _big(wild, stated)
+    draws = [interaction_draws(interact(cycle, big, "WT"), big) for cycle in _cycles(wild)]
     assert np.var(draws[0] - draws[1]) == pytest.approx(scale * 6, rel=0.03)
 
 

@@ -10,20 +10,23 @@ import cornerwise
 FLOORS = [
     {"errors", "flags", "units", "streams"},
     {"intervals", "mutations", "plausible"},
-    {"campaign"},
-    {"gating"},
-    {"sigmoids", "shape_fit", "plateaus", "curve_quality"},
-    {"median"},
+    {"campaign", "gating", "quantities"},
+    {"median", "charges"},
     {"measurements"},
     {"sources"},
+    {"ledger"},
+    {"batches"},
     {"energies"},
-    {"interactions"},
+    {"interactions", "midpoints"},
     {"verdicts"},
+    {"charge_judgement"},
     {"result"},
+    {"charge_trace"},
     {"construct_rows", "interaction_rows"},
     {"coupling", "surveying"},
     {"intake", "render", "starter"},
     {"cli"},
+    {"__main__"},
 ]
 FLOOR_OF = {room: floor for floor, rooms in enumerate(FLOORS) for room in rooms}
 

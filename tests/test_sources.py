@@ -5,12 +5,12 @@ import pytest
 from builders import cells
 from reference_values import load
 
+from cornerwise.ledger import Ledger
 from cornerwise.quantities import Sample, Summary
 from cornerwise.sources import (
     CellSource,
     Component,
     Derived,
-    Ledger,
     StatedSource,
     cell_source,
     linear,

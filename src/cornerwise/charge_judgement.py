@@ -6,6 +6,7 @@ import math
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 
+from .batches import regroup
 from .campaign import Settings
 from .energies import EnergyBook
 from .intervals import (
@@ -109,8 +110,9 @@ def judge_charge(
     charge, wild_type = measured[label].charge_e0, measured[settings.wild_type].charge_e0
     if own is None or reference is None or charge is None or wild_type is None:
         return ASSUMED
-    logarithm = log_ratio(own, reference)
-    spread = book.ledger.spread(logarithm)
+    ledger, _ = regroup(book.ledger, [(label, 1.0), (settings.wild_type, -1.0)], book.shared_batches)
+    logarithm = ledger.adjusted(log_ratio(own, reference))
+    spread = ledger.spread(logarithm)
     ratio, u = math.exp(logarithm.value), math.sqrt(spread.variance)
     difference = ratio_interval(ratio, u, spread.dof, settings.confidence)
     equivalence = ratio_interval(ratio, u, spread.dof, 2 * settings.confidence - 1)

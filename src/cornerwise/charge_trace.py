@@ -52,7 +52,7 @@ def profile(interaction: Interaction, book: EnergyBook, settings: Settings) -> t
     for voltage in map(float, grid):
         away = -book.per_e0_mv * (voltage - settings.reference_voltage_mv)
         there = linear([(1.0, interaction.energy), (away, interaction.charge)])
-        low, high = there.interval(book.ledger, settings.confidence)
+        low, high = there.interval(interaction.ledger, settings.confidence)
         points.append(
             ProfilePoint(
                 voltage_mv=voltage, interaction=there.value, low=available(low), high=available(high)

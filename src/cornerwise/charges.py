@@ -50,6 +50,7 @@ def _of_cells(method: str, replicates: Sequence[ChargeReplicate]) -> ChargeValue
         quantity = Sample(
             cells=tuple(replicate.cell for replicate in ordered),
             values=np.array([replicate.charge_e0 for replicate in ordered], dtype=float),
+            batches=tuple(replicate.batch for replicate in ordered),
         )
     return ChargeValue(method=method, kind="cells", quantity=quantity)
 

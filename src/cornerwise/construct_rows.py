@@ -8,6 +8,7 @@ from typing import TypedDict
 
 import numpy as np
 
+from .batches import alone
 from .campaign import Settings, StatedCharge
 from .charge_judgement import ASSUMED, ChargeJudgement, judge_charge
 from .energies import Energy, EnergyBook
@@ -87,9 +88,11 @@ def construct_row(
     """
     label = measurement.label
     energy = book.energies[label]
-    spread = book.ledger.spread(energy.energy)
+    ledger, units = alone(book.ledger, label, book.shared_batches)
+    own = ledger.adjusted(energy.energy)
+    spread = ledger.spread(own)
     u = math.sqrt(spread.variance)
-    low, high = t_interval(energy.energy.value, u, spread.dof, settings.confidence)
+    low, high = t_interval(own.value, u, spread.dof, settings.confidence)
     judged = None if label == settings.wild_type else judge_charge(label, measurements, book, settings)
     shared = "the stated one" if isinstance(settings.charge, StatedCharge) else "the wild type's"
     middle, misled = midpoints(measurement, energy, book, settings)
@@ -110,7 +113,7 @@ def construct_row(
         charge_sem_e0=available(math.sqrt(book.ledger.spread(energy.charge).variance)),
         charge_n=_charge_n(energy, measurements, settings),
         charge_source=_charge_words(energy, measurements, settings),
-        energy=available(energy.energy.value),
+        energy=available(own.value),
         energy_unit=settings.energy_unit,
         std_uncertainty=available(u),
         dof=available(spread.dof),
@@ -123,6 +126,7 @@ def construct_row(
         slope_charge_e0=available(middle.slope_charge_e0),
         sigmoid_energy=available(middle.sigmoid_energy),
         flags=codes(flags),
+        units=units,
         curve=averaged_curve(measurement),
         charge_values=_charge_values(measurement),
     )

@@ -6,6 +6,7 @@ import platform
 from collections.abc import Callable, Sequence
 from importlib.metadata import version
 
+from .batches import units_notes
 from .campaign import Campaign, Settings, StatedCharge
 from .construct_rows import cell_rows, construct_row
 from .energies import EnergyBook
@@ -39,6 +40,16 @@ def _notes(measurements: Sequence[Measurement], settings: Settings) -> tuple[str
             f"{settings.subunits}, and it has not been divided here"
         )
     return tuple(notes)
+
+
+def _units_notes(
+    interactions: Sequence[InteractionRow], constructs: Sequence[ConstructRow]
+) -> tuple[str, ...]:
+    """What was counted where cells were recorded in batches."""
+    return (
+        *units_notes("interaction", [(row.cycle, row.units) for row in interactions]),
+        *units_notes("energy", [(row.construct, row.units) for row in constructs]),
+    )
 
 
 def couple(campaign: Campaign, progress: Progress | None = None) -> Result:
@@ -78,7 +89,7 @@ def couple(campaign: Campaign, progress: Progress | None = None) -> Result:
         cells=Table(CellRow, [row for measurement in measured for row in cell_rows(measurement)]),
         budget=Table(BudgetRow, budget),
         flags=(*(flag for _, own, _ in described for flag in own), *flags),
-        notes=_notes(measured, settings),
+        notes=(*_notes(measured, settings), *_units_notes(interactions, list(rows.values()))),
         inputs=campaign.inputs,
         versions=_versions(),
     )

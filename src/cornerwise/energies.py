@@ -9,13 +9,14 @@ from typing import Literal
 import numpy as np
 from numpy.typing import NDArray
 
+from .batches import shared_batches
 from .campaign import Settings, StatedCharge
+from .ledger import Ledger
 from .measurements import Measurement
 from .quantities import Quantity, Sample, Summary, in_words, shared_cells
 from .sources import (
     Component,
     Derived,
-    Ledger,
     Source,
     StatedSource,
     cell_source,
@@ -123,6 +124,7 @@ class EnergyBook:
 
     def __init__(self, measurements: Sequence[Measurement], settings: Settings) -> None:
         self.ledger = build_ledger(measurements, settings)
+        self.shared_batches = shared_batches(self.ledger)
         self.per_e0_mv = energy_per_e0_mv(settings.energy_unit, settings.temperature_c)
         self._measurements = {measurement.label: measurement for measurement in measurements}
         self._settings = settings

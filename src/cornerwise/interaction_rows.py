@@ -10,6 +10,7 @@ from typing import TypedDict
 import numpy as np
 from numpy.typing import NDArray
 
+from .batches import regroup
 from .campaign import Settings
 from .charge_judgement import ChargeJudgement
 from .charge_trace import breakdowns, corner_charges, largest_margin, most_cells, per_10_mv, profile
@@ -24,6 +25,7 @@ from .intervals import (
     t_p_value,
     t_quantile,
 )
+from .ledger import Ledger
 from .measurements import Measurement, protocol_flags
 from .mutations import Cycle
 from .result import (
@@ -70,9 +72,9 @@ class _Judged:
 def _judge(cycle: Cycle, book: EnergyBook, settings: Settings) -> _Judged:
     interaction = interact(cycle, book, settings.wild_type)
     value = interaction.energy.value
-    spread = book.ledger.spread(interaction.energy)
+    spread = interaction.ledger.spread(interaction.energy)
     u, level = math.sqrt(spread.variance), settings.confidence
-    draws = interaction_draws(cycle, book)
+    draws = interaction_draws(interaction, book)
     stretch = t_quantile(0.5 + level / 2, spread.dof) / t_quantile(0.5 + level / 2, math.inf)
     return _Judged(
         interaction=interaction,
@@ -99,8 +101,8 @@ def _ranks(judged: Sequence[_Judged], confidence: float) -> list[tuple[int | Non
     return ranks
 
 
-def _limits(derived: Derived | None, book: EnergyBook, confidence: float) -> Interval:
-    return _NOT_AVAILABLE if derived is None else derived.interval(book.ledger, confidence)
+def _limits(derived: Derived | None, ledger: Ledger, confidence: float) -> Interval:
+    return _NOT_AVAILABLE if derived is None else derived.interval(ledger, confidence)
 
 
 def _value(derived: Derived | None) -> float | None:
@@ -152,9 +154,9 @@ class _ChargeFields(TypedDict):
 def _charge_fields(one: _Judged, book: EnergyBook, corners: Corners, charges: Interval) -> _ChargeFields:
     settings, interaction = corners.settings, one.interaction
     trace = _charge_trace(one, corners)
-    bias = _limits(interaction.shortcut_bias, book, settings.confidence)
+    bias = _limits(interaction.shortcut_bias, interaction.ledger, settings.confidence)
     slope = per_10_mv(interaction, book.per_e0_mv)
-    slope_limits = _limits(slope, book, settings.confidence)
+    slope_limits = _limits(slope, interaction.ledger, settings.confidence)
     offset = None if slope is None else abs(slope.value) / 10 * settings.voltage_offset_mv
     assumed = [charge.construct for charge in trace if charge.verdict == "assumed"]
     return {
@@ -187,7 +189,7 @@ def _row(
 ) -> tuple[InteractionRow, tuple[Flag, ...]]:
     interaction, cycle, settings = one.interaction, one.interaction.cycle, corners.settings
     labels = [corner.label for corner in cycle.corners]
-    charges = _limits(interaction.charge, book, settings.confidence)
+    charges = _limits(interaction.charge, interaction.ledger, settings.confidence)
     own = _nonadditive(interaction, charges, book.per_e0_mv, settings.energy_unit)
     own += protocol_flags(cycle.name, tuple(corners.measurements[label].construct for label in labels))
     inherited = {code for label in labels for code in corners.rows[label].flags}
@@ -214,6 +216,7 @@ def _row(
         rank_low=ranks[1],
         rank_high=ranks[2],
         flags=codes(own, also=inherited),
+        units=interaction.units,
         edges=cycle_edges(cycle, book),
         **_charge_fields(one, book, corners, charges),
     )
@@ -237,20 +240,21 @@ def cycle_edges(cycle: Cycle, book: EnergyBook) -> tuple[Edge, ...]:
             if len(added) != 1 or len(end.mutations) != len(start.mutations) + 1:
                 continue
             energies = book.energies[end.label].energy, book.energies[start.label].energy
-            difference = linear([(1.0, energies[0]), (-1.0, energies[1])])
+            ledger, _ = regroup(book.ledger, [(end.label, 1.0), (start.label, -1.0)], book.shared_batches)
+            difference = ledger.adjusted(linear([(1.0, energies[0]), (-1.0, energies[1])]))
             found.append(
                 Edge(
                     start=start.label,
                     end=end.label,
                     mutation=str(*added),
                     difference=available(difference.value),
-                    std_uncertainty=available(math.sqrt(book.ledger.spread(difference).variance)),
+                    std_uncertainty=available(math.sqrt(ledger.spread(difference).variance)),
                 )
             )
     return tuple(found)
 
 
-def _budget_rows(one: _Judged, book: EnergyBook) -> list[BudgetRow]:
+def _budget_rows(one: _Judged) -> list[BudgetRow]:
     return [
         BudgetRow(
             cycle=one.interaction.cycle.name,
@@ -258,7 +262,7 @@ def _budget_rows(one: _Judged, book: EnergyBook) -> list[BudgetRow]:
             contribution=available(part.contribution),
             share=available(part.share),
         )
-        for part in book.ledger.budget(one.interaction.energy)
+        for part in one.interaction.ledger.budget(one.interaction.energy)
     ]
 
 
@@ -293,5 +297,5 @@ def interaction_rows(
         row, own = _row(one, rank, p_adjusted, book, corners)
         rows.append(row)
         flags.extend(own)
-        budget.extend(_budget_rows(one, book))
+        budget.extend(_budget_rows(one))
     return rows, budget, flags

@@ -8,7 +8,9 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from .batches import Units, regroup
 from .energies import EnergyBook
+from .ledger import Ledger
 from .mutations import Cycle
 from .sources import Derived, linear, product
 
@@ -24,6 +26,8 @@ class Interaction:
     shortcut: Derived  # F Q_wt sum s_k Vm_k, same unit
     shortcut_bias: Derived | None  # I - shortcut with every corner's own measured charge, same unit
     charge: Derived | None  # J = sum s_k Q_k, e0
+    ledger: Ledger  # the sources, grouped by batch where that is due
+    units: tuple[Units, ...]  # what is counted in each family of cells
 
 
 def interact(cycle: Cycle, book: EnergyBook, wild_type: str) -> Interaction:
@@ -54,19 +58,30 @@ def interact(cycle: Cycle, book: EnergyBook, wild_type: str) -> Interaction:
         charge = linear((sign, q) for sign, q, _ in full)
         one_charge = linear([(book.per_e0_mv, product(reference.own_charge, medians))])
         bias = linear([*((sign, energy) for sign, _, energy in full), (-1.0, one_charge)])
+    ledger, units = regroup(
+        book.ledger, [(corner.label, float(corner.sign)) for corner in cycle.corners], book.shared_batches
+    )
     return Interaction(
         cycle=cycle,
-        energy=linear((sign, corner.energy) for sign, corner in corners),
-        shortcut=shortcut,
-        shortcut_bias=bias,
-        charge=charge,
+        energy=ledger.adjusted(linear((sign, corner.energy) for sign, corner in corners)),
+        shortcut=ledger.adjusted(shortcut),
+        shortcut_bias=None if bias is None else ledger.adjusted(bias),
+        charge=None if charge is None else ledger.adjusted(charge),
+        ledger=ledger,
+        units=units,
     )
 
 
-def interaction_draws(cycle: Cycle, book: EnergyBook) -> FloatArray:
-    """Bootstrap replicates of a cycle's interaction energy, shape (replicates,), jointly with all others."""
+def interaction_draws(interaction: Interaction, book: EnergyBook) -> FloatArray:
+    """Bootstrap replicates of a cycle's interaction energy, shape (replicates,), jointly with all others.
+
+    Products of charge and median are drawn as products; where batches are the units or are compared within,
+    the replicates are those of the energy's first-order expansion.
+    """
+    if interaction.ledger is not book.ledger:
+        return interaction.ledger.linear_draws(interaction.energy)
     total = np.zeros(book.ledger.replicates)
-    for corner in cycle.corners:
+    for corner in interaction.cycle.corners:
         total += corner.sign * book.energy_draws(corner.label)
     return total
 

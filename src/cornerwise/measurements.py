@@ -74,6 +74,7 @@ def _median(construct: Construct, readings: tuple[CellReading, ...]) -> Quantity
     return Sample(
         cells=tuple(reading.cell for reading in used),
         values=np.array([reading.median_mv for reading in used], dtype=float),
+        batches=tuple(reading.batch for reading in used),
     )
 
 

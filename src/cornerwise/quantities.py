@@ -17,6 +17,7 @@ class Sample:
 
     cells: tuple[str, ...]
     values: FloatArray  # (n_cells,)
+    batches: tuple[str | None, ...] = ()  # of each cell, None where not stated; empty when none is stated
 
     @property
     def n(self) -> int:

@@ -9,6 +9,7 @@ from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 from typing import TYPE_CHECKING, ClassVar, Generic, Protocol, TypeVar, overload
 
+from .batches import Units
 from .campaign import InputFile, Settings
 from .flags import Flag
 from .verdicts import ChargeVerdict, Favours, InteractionVerdict, ShortcutVerdict
@@ -182,6 +183,7 @@ class InteractionRow:
     offset_contribution: float | None  # standard uncertainty from the stated voltage offset
     breakdown: tuple[Breakdown, ...]  # where a charge is assumed and the interval excludes 0
     profile: tuple[ProfilePoint, ...]  # where the charges do not add up
+    units: tuple[Units, ...]  # what was counted in each family of cells: cells, or batches, and why
     edges: tuple[Edge, ...] = ()  # of the square, the cube, ...
 
     def cells(self) -> tuple[Value, ...]:
@@ -226,6 +228,7 @@ class ConstructRow:
     slope_charge_e0: float | None  # apparent charge from that sigmoid's slope
     sigmoid_energy: float | None  # apparent charge times that midpoint
     flags: tuple[str, ...]
+    units: tuple[Units, ...]  # what its energy's uncertainty counts in each family of cells
     curve: DrawnCurve | None  # averaged over the cells that are used; None without curves
     charge_values: tuple[float, ...] = ()  # e0 per channel, its own cell by cell; empty for summaries
 

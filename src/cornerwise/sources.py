@@ -9,16 +9,15 @@ two quantities share is counted once, in one cycle and across all of them.
 from __future__ import annotations
 
 import math
-from collections.abc import Iterable, Mapping, Sequence
+from collections.abc import Callable, Iterable, Mapping, Sequence
 from dataclasses import dataclass, field
 from typing import Literal, NamedTuple, Protocol
 
 import numpy as np
 from numpy.typing import NDArray
 
-from .intervals import Interval, t_interval, t_p_value, welch_satterthwaite
+from .intervals import Interval, t_interval, t_p_value
 from .quantities import Sample, Summary
-from .streams import named_stream
 
 FloatArray = NDArray[np.float64]
 BoolArray = NDArray[np.bool_]
@@ -38,6 +37,24 @@ class Spread(NamedTuple):
     dof: float
 
 
+Stream = Callable[[Component], np.random.Generator]  # the stream named after a source's first component
+
+
+class Part(NamedTuple):
+    """What one source, or one construct of a joint source, adds to a squared standard uncertainty."""
+
+    name: str
+    spread: Spread
+
+
+class Spreads(Protocol):
+    """What knows the uncertainty of a derived quantity."""
+
+    def spread(self, derived: Derived) -> Spread:
+        """Squared standard uncertainty and degrees of freedom."""
+        ...
+
+
 @dataclass(frozen=True, kw_only=True, slots=True)
 class Derived:
     """A number with its sensitivity to every component it depends on."""
@@ -45,12 +62,12 @@ class Derived:
     value: float
     sensitivities: Mapping[Component, float]
 
-    def interval(self, ledger: Ledger, confidence: float) -> Interval:
+    def interval(self, ledger: Spreads, confidence: float) -> Interval:
         """Propagated interval at `confidence`."""
         spread = ledger.spread(self)
         return t_interval(self.value, math.sqrt(spread.variance), spread.dof, confidence)
 
-    def p_value(self, ledger: Ledger) -> float:
+    def p_value(self, ledger: Spreads) -> float:
         """Two-sided p value against 0."""
         spread = ledger.spread(self)
         return t_p_value(self.value, math.sqrt(spread.variance), spread.dof)
@@ -90,12 +107,20 @@ class Source(Protocol):
         """The numbers it determines, each in no other source."""
         ...
 
-    def spread(self, gradient: Sequence[float]) -> Spread:
-        """Squared standard uncertainty of ``sum(gradient * components)``."""
+    def parts(self, gradient: Sequence[float]) -> tuple[Part, ...]:
+        """Squared standard uncertainty of ``sum(gradient * components)``, by what causes it."""
+        ...
+
+    def shift(self, gradient: Sequence[float]) -> float:
+        """What its estimate of ``sum(gradient * components)`` adds to that from the plain means of cells."""
         ...
 
     def draws(self, rng: np.random.Generator, replicates: int) -> FloatArray:
         """Joint replicates of the components' means, shape (n_components, replicates)."""
+        ...
+
+    def deviations_drawn(self, gradient: Sequence[float], stream: Stream, replicates: int) -> FloatArray:
+        """Replicates of ``sum(gradient * components)`` less its estimate, shape (replicates,)."""
         ...
 
 
@@ -114,13 +139,23 @@ class StatedSource:
         """The one number."""
         return (self.component,)
 
-    def spread(self, gradient: Sequence[float]) -> Spread:
+    def parts(self, gradient: Sequence[float]) -> tuple[Part, ...]:
         """Squared standard uncertainty of ``gradient[0]`` times the number."""
-        return Spread((gradient[0] * self.std_uncertainty) ** 2, self.dof)
+        return (Part(self.name, Spread((gradient[0] * self.std_uncertainty) ** 2, self.dof)),)
+
+    def shift(self, gradient: Sequence[float]) -> float:
+        """None: the mean is taken as it stands."""
+        return 0.0 * gradient[0]
 
     def draws(self, rng: np.random.Generator, replicates: int) -> FloatArray:
         """Normal replicates, shape (1, replicates)."""
         return (self.mean + self.std_uncertainty * rng.standard_normal(replicates))[np.newaxis]
+
+    def deviations_drawn(self, gradient: Sequence[float], stream: Stream, replicates: int) -> FloatArray:
+        """Normal replicates of ``gradient[0]`` times the error of the number."""
+        scale = gradient[0] * self.std_uncertainty
+        drawn: FloatArray = scale * stream(self.component).standard_normal(replicates)
+        return drawn
 
 
 @dataclass(frozen=True, kw_only=True, slots=True, eq=False)
@@ -134,6 +169,7 @@ class CellSource:
     name: str
     components: tuple[Component, ...]
     values: FloatArray  # (n_components, n_cells), NaN where a cell does not show a number
+    batches: tuple[str | None, ...] = ()  # (n_cells,), None where not stated; empty when none is stated
     shown: BoolArray = field(init=False)  # (n_components, n_cells)
     deviations: FloatArray = field(init=False)  # from the component's mean; 0 where not shown
     counts: FloatArray = field(init=False)  # (n_components,) cells that show it
@@ -150,8 +186,17 @@ class CellSource:
         object.__setattr__(self, "covariance", _pairwise_covariance(filled, shown))
 
     @property
-    def _fully_shared(self) -> bool:
+    def fully_shared(self) -> bool:
+        """Whether every cell shows every number."""
         return bool((self.shown == self.shown[0]).all())
+
+    def parts(self, gradient: Sequence[float]) -> tuple[Part, ...]:
+        """One part: the cells of the construct."""
+        return (Part(self.name, self.spread(gradient)),)
+
+    def shift(self, gradient: Sequence[float]) -> float:
+        """None: the plain means of cells are the estimate."""
+        return 0.0 * gradient[0]
 
     def spread(self, gradient: Sequence[float]) -> Spread:
         """Squared standard uncertainty of the weighted sum of means, and its degrees of freedom.
@@ -167,7 +212,7 @@ class CellSource:
         active = np.flatnonzero(weights != 0)
         if not len(active):
             return Spread(0.0, math.inf)
-        if self._fully_shared or len(active) == 1:
+        if self.fully_shared or len(active) == 1:
             n = float(self.counts[active[0]])
             per_cell = np.sum(weights[:, np.newaxis] * self.deviations, axis=0)
             return Spread(float(np.sum(per_cell**2)) / (n - 1) / n if n > 1 else math.nan, n - 1)
@@ -200,16 +245,48 @@ class CellSource:
         ndarray, shape (n_components, replicates)
             A component shown by one cell or none does not vary.
         """
-        n_cells = self.values.shape[1]
-        picked = rng.integers(0, n_cells, size=(n_cells, replicates))
         means: FloatArray = np.array(
             [np.mean(row[shown]) for row, shown in zip(self.values, self.shown, strict=True)]
         )
-        sums = np.zeros((len(self.components), replicates))
-        for chosen in picked:  # cell by cell, so that the sum never depends on a linear-algebra library
-            sums += self.deviations[:, chosen]
-        inflate = np.sqrt(self.counts / np.maximum(self.counts - 1, 1)) / self.counts
-        return means[:, np.newaxis] + inflate[:, np.newaxis] * sums
+        sums = resampled_sums(self.deviations, rng, replicates)
+        return means[:, np.newaxis] + self._inflate[:, np.newaxis] * sums
+
+    @property
+    def _inflate(self) -> FloatArray:
+        inflate: FloatArray = np.sqrt(self.counts / np.maximum(self.counts - 1, 1)) / self.counts
+        return inflate
+
+    def deviations_drawn(self, gradient: Sequence[float], stream: Stream, replicates: int) -> FloatArray:
+        """Bootstrap replicates of the weighted sum of means, less the sum itself."""
+        weights = np.asarray(gradient, dtype=float) * self._inflate
+        per_cell = np.sum(weights[:, np.newaxis] * self.deviations, axis=0)
+        (drawn,) = resampled_sums(per_cell[np.newaxis], stream(self.components[0]), replicates)
+        deviations: FloatArray = drawn
+        return deviations
+
+
+def resampled_sums(values: FloatArray, rng: np.random.Generator, replicates: int) -> FloatArray:
+    """Sum over as many cells, drawn with replacement, as there are.
+
+    Parameters
+    ----------
+    values : ndarray, shape (n_rows, n_cells)
+        Drawn jointly: all rows of one cell together.
+    rng : numpy.random.Generator
+        Gives the same cells for the same number of cells.
+    replicates : int
+        Number of sums.
+
+    Returns
+    -------
+    ndarray, shape (n_rows, replicates)
+    """
+    n_cells = values.shape[1]
+    sums = np.zeros((len(values), replicates))
+    for picked in rng.integers(0, n_cells, size=(n_cells, replicates)):
+        # cell by cell, so that the sum never depends on a linear-algebra library
+        sums += np.take(values, picked, axis=1)
+    return sums
 
 
 def _pairwise_covariance(filled: FloatArray, shown: BoolArray) -> FloatArray:
@@ -243,9 +320,18 @@ def cell_source(name: str, samples: Mapping[Component, Sample]) -> CellSource:
     cells = sorted({cell for sample in samples.values() for cell in sample.cells})
     place = {cell: index for index, cell in enumerate(cells)}
     values = np.full((len(samples), len(cells)), np.nan)
+    batches: dict[str, str | None] = {}
     for row, sample in enumerate(samples.values()):
         values[row, [place[cell] for cell in sample.cells]] = sample.values
-    return CellSource(name=name, components=tuple(samples), values=values)
+        for cell, batch in zip(sample.cells, sample.batches, strict=False):
+            batches[cell] = batches.get(cell) or batch
+    stated = any(batch is not None for batch in batches.values())
+    return CellSource(
+        name=name,
+        components=tuple(samples),
+        values=values,
+        batches=tuple(batches.get(cell) for cell in cells) if stated else (),
+    )
 
 
 def summary_source(name: str, component: Component, summary: Summary) -> StatedSource:
@@ -253,74 +339,3 @@ def summary_source(name: str, component: Component, summary: Summary) -> StatedS
     return StatedSource(
         name=name, component=component, mean=summary.mean, std_uncertainty=summary.sem, dof=summary.dof
     )
-
-
-class Contribution(NamedTuple):
-    """What one source adds to a standard uncertainty."""
-
-    source: str
-    contribution: float  # the standard uncertainty it would cause alone, in the unit of the quantity
-    share: float  # of the variance, 0 to 1
-
-
-class Ledger:
-    """All sources of a campaign; knows where each component belongs.
-
-    Parameters
-    ----------
-    sources : sequence of Source
-        Independent of each other.
-    seed : int
-        Of the campaign; each source draws from a stream named after its first component.
-    replicates : int
-        Number of joint replicates.
-    """
-
-    def __init__(self, sources: Sequence[Source], *, seed: int, replicates: int) -> None:
-        self.sources = tuple(sources)
-        self.replicates = replicates
-        self._seed = seed
-        self._place = {
-            component: (number, column)
-            for number, source in enumerate(self.sources)
-            for column, component in enumerate(source.components)
-        }
-        self._draws: dict[int, FloatArray] = {}
-
-    def __contains__(self, component: Component) -> bool:
-        return component in self._place
-
-    def _spreads(self, derived: Derived) -> list[tuple[int, Spread]]:
-        gradients: dict[int, list[float]] = {}
-        for component, sensitivity in derived.sensitivities.items():
-            number, column = self._place[component]
-            gradient = gradients.setdefault(number, [0.0] * len(self.sources[number].components))
-            gradient[column] += sensitivity
-        return [(number, self.sources[number].spread(gradients[number])) for number in sorted(gradients)]
-
-    def spread(self, derived: Derived) -> Spread:
-        """Squared standard uncertainty and Welch-Satterthwaite degrees of freedom of `derived`."""
-        spreads = [spread for _, spread in self._spreads(derived)]
-        variances, dofs = [s.variance for s in spreads], [s.dof for s in spreads]
-        return Spread(math.fsum(variances), welch_satterthwaite(variances, dofs))
-
-    def budget(self, derived: Derived) -> tuple[Contribution, ...]:
-        """Every source's part in the uncertainty of `derived`, the largest first."""
-        spreads = [(self.sources[number].name, spread.variance) for number, spread in self._spreads(derived)]
-        total = math.fsum(variance for _, variance in spreads)
-        parts = [
-            Contribution(name, math.sqrt(variance), variance / total if total > 0 else 0.0)
-            for name, variance in spreads
-        ]
-        return tuple(sorted(parts, key=lambda part: (-part.contribution, part.source)))
-
-    def draws(self, component: Component) -> FloatArray:
-        """Replicates of one component, shape (replicates,), jointly with all others."""
-        number, column = self._place[component]
-        if number not in self._draws:
-            source = self.sources[number]
-            kind, construct = source.components[0]
-            rng = named_stream(self._seed, f"{kind}|{construct}")
-            self._draws[number] = source.draws(rng, self.replicates)
-        drawn: FloatArray = self._draws[number][column]
-        return drawn
