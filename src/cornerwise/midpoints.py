@@ -11,7 +11,7 @@ from .campaign import Settings
 from .energies import Energy, EnergyBook
 from .flags import Flag
 from .measurements import Measurement
-from .single_sigmoid import single_sigmoid
+from .median import single_sigmoid
 
 
 @dataclass(frozen=True, kw_only=True, slots=True)

@@ -17,7 +17,7 @@ from scipy.stats import t as student
 from cornerwise.campaign import Curve
 from cornerwise.gating import GatingScheme, example_schemes
 from cornerwise.median import CellReading, read_construct
-from cornerwise.plateaus import plain_median_mv
+from cornerwise.median.plateaus import plain_median_mv
 
 SHIFT_SD_MV = 2.0
 LOWEST_MV, HIGHEST_MV = -170.0, 130.0

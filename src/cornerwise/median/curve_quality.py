@@ -8,7 +8,7 @@ from dataclasses import dataclass
 import numpy as np
 from scipy.special import stdtrit
 
-from .flags import Flag
+from ..flags import Flag
 from .shapes import FloatArray
 
 MISSING_LIMIT = 0.02  # fraction of the charge outside the range at one end

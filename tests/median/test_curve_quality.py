@@ -6,12 +6,12 @@ import numpy as np
 import pytest
 from scipy.stats import t
 
-from cornerwise import curve_quality as limits
 from cornerwise.campaign import Curve
-from cornerwise.curve_quality import Evidence, cell_flags, outlying_flags
 from cornerwise.flags import codes
 from cornerwise.gating import TwoStates, example_schemes
+from cornerwise.median import curve_quality as limits
 from cornerwise.median import read_construct
+from cornerwise.median.curve_quality import Evidence, cell_flags, outlying_flags
 
 SOUND = Evidence(
     subject="invented/c1",

@@ -7,7 +7,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from .campaign import Curve
+from ..campaign import Curve
 from .plateaus import plain_median_mv, plain_plateaus
 from .shape_fit import Cells
 from .shapes import FloatArray

@@ -6,9 +6,10 @@ whatever the gating scheme (Wyman 1964; derived in `cornerwise.gating`), so noth
 
 One construct's cells are read together. Several families of smooth curves are fitted to all of them, one
 shape for the construct and a gain, an offset and a shift for each cell, and averaged by their marginal
-likelihood (`cornerwise.shape_average`). The averaged shape supplies plateaus, tails and what lies between
-the points; each cell's residuals then say how far its own shape departs (`cornerwise.departures`). The
-plain area between three-point plateaus is reported beside every estimate.
+likelihood (`cornerwise.median.shape_average`). The averaged shape supplies plateaus, tails and what lies
+between the points; each cell's residuals then say how far its own shape departs
+(`cornerwise.median.departures`). The plain area between three-point plateaus is reported beside every
+estimate.
 """
 
 from __future__ import annotations
@@ -18,7 +19,7 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from .campaign import Curve
+from ..campaign import Curve
 from .cell_reading import CellReading, FittedCurve, unreadable
 from .curve_quality import Evidence, cell_flags, outlying_flags
 from .departures import own_departures, smooth_leftover_mv
@@ -29,8 +30,6 @@ from .shape_average import PooledShape, pool_shape
 from .shape_fit import Cells
 from .shapes import FloatArray
 from .sloping import Slopes, find_slopes, no_slopes
-
-__all__ = ["CellReading", "FittedCurve", "plain_median_mv", "read_construct"]
 
 _UNEVEN_NOISE = 3.0  # ratio of the cells' variances from which they are weighted
 _NOISE_PRIOR_POINTS = 10.0  # points' worth of the typical variance that steadies each cell's

@@ -7,7 +7,7 @@ import pytest
 
 from cornerwise.campaign import Curve
 from cornerwise.gating import LinearSequence, TwoStates, example_schemes
-from cornerwise.single_sigmoid import sigmoid_of_cell, single_sigmoid
+from cornerwise.median.single_sigmoid import sigmoid_of_cell, single_sigmoid
 from cornerwise.units import thermal_voltage_mv
 
 # NIST Statistical Reference Datasets, nonlinear regression, Rat42 (Ratkowsky 1983, Nonlinear Regression

@@ -17,9 +17,9 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from ..units import thermal_voltage_mv
 from .shape_fit import Cells, PooledFit, Prior, fit_shape
 from .shapes import Family, FloatArray
-from .units import thermal_voltage_mv
 
 _ROOM_KT_MV = thermal_voltage_mv(22.0)  # bounds need no exact temperature
 _SHALLOWEST_E0, _STEEPEST_E0 = 0.8, 15.0

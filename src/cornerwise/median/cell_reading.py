@@ -6,8 +6,8 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from .campaign import Curve
-from .flags import Flag
+from ..campaign import Curve
+from ..flags import Flag
 from .shapes import Family, FloatArray
 
 

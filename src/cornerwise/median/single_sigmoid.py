@@ -12,10 +12,10 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from .campaign import Curve
+from ..campaign import Curve
+from ..units import thermal_voltage_mv
 from .scaled_cells import canonical, scale, why_unreadable
 from .shape_average import fit_single
-from .units import thermal_voltage_mv
 
 
 @dataclass(frozen=True, kw_only=True, slots=True)
