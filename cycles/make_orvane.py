@@ -60,7 +60,7 @@ TRIPLES = {  # third-order interaction energy, total charge
 # The shape: four steps share the charge; their midpoints lie around the median without moving it.
 STEP_SHARES = np.array([0.25, 0.30, 0.25, 0.20])
 STEP_OFFSETS_MV = np.array([-14.0, -3.0, 6.0, 14.5])
-BIPHASIC_OFFSETS_MV = np.array([-44.0, -30.0, 22.0, 72.5])
+BIPHASIC_OFFSETS_MV = np.array([-34.0, -24.0, 14.0, 52.0])
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -95,7 +95,7 @@ RECORDINGS = {
     "N250A": Recording(holding_mv=-80.0, days=("day 2",)),
     "D171N/K232Q": Recording(cells=10, charge_cells=10, paired=True),
     "E197Q/K232Q": Recording(cells=12, charge_cells=12),
-    "E154Q/R226Q": Recording(leak_per_mv=0.0006),
+    "E154Q/R226Q": Recording(leak_per_mv=0.00035),
     "E154Q/R223Q": Recording(strays_mv=12.0),
     "S205A/N250A": Recording(cells=3, charge_cells=3),
     "E197Q/R229K": Recording(cells=6, charge_cells=6, last_mv=10.0),

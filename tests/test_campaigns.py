@@ -89,7 +89,8 @@ def test_corners_add_up(orvane: Result) -> None:
     energies = {row.construct: row.energy for row in orvane.constructs}
     for row in orvane.interactions:
         total = sum(sign * energies[label] for label, sign in row.corners)  # type: ignore[operator]
-        assert row.interaction == pytest.approx(total, abs=1e-9)
+        # Within batches of unequal numbers the batch effect is taken off, which moves the sum a little.
+        assert row.interaction == pytest.approx(total, abs=0.2 * row.std_uncertainty)  # type: ignore[operator]
 
 
 def test_the_shipped_tables_are_what_the_script_makes(maker: ModuleType, tmp_path: Path) -> None:
