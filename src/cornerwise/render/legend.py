@@ -2,12 +2,17 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterable
+
 from ..campaign import Settings, StatedCharge
 
 FORMULA = "I = sum over the corners of s F Q Vm; s = (-1)^(order - mutations in the corner)"
 SIGN_OF_PAIR = (
     "I > 0: the native pair's interaction favours the resting state over the activated one; "
     "I < 0: the activated one"
+)
+SIGN_OF_ODD = (
+    "I > 0: the native residues' joint interaction favours the activated state; I < 0: the resting one"
 )
 SIGN_OF_ODD_ORDER = "orders 3, 5, ...: the wild type enters with a minus sign, so read the two the other way"
 CAUTION = "a coupling energy is a difference between two states and no proof of a contact"
@@ -17,6 +22,17 @@ def sign_sentences(orders: set[int]) -> list[str]:
     """What the sign of I means for cycles of these orders."""
     odd = [SIGN_OF_ODD_ORDER] if any(order % 2 for order in orders) else []
     return [SIGN_OF_PAIR, *odd]
+
+
+def formula_and_sign(orders: Iterable[int]) -> list[str]:
+    """Formula and meaning of the sign for a figure with cycles of these orders."""
+    found = set(orders)
+    only_odd = bool(found) and all(order % 2 for order in found)
+    signs = [SIGN_OF_ODD] if only_odd else sign_sentences(found)
+    kept_together = [
+        sign.replace("I > 0", "I\u00a0>\u00a00").replace("I < 0", "I\u00a0<\u00a00") for sign in signs
+    ]
+    return [f"{FORMULA}.", *(f"{sign}." for sign in kept_together)]
 
 
 def unit_phrase(settings: Settings) -> str:
