@@ -19,6 +19,8 @@ SOUND = Evidence(
     lowest_mv=-170.0,
     highest_mv=130.0,
     missing_low=0.0,
+    doubt_low_mv=0.0,
+    doubt_high_mv=0.0,
     missing_high=0.0,
     slope_charge=0.0,
     slope_shift_mv=0.0,
@@ -34,6 +36,8 @@ SOUND = Evidence(
 
 EDGES = [
     ("unsaturated-low", "missing_low", limits.MISSING_LIMIT, +1),
+    ("unsaturated-low", "doubt_low_mv", limits.DOUBT_LIMIT_MV, +1),
+    ("unsaturated-high", "doubt_high_mv", limits.DOUBT_LIMIT_MV, +1),
     ("unsaturated-high", "missing_high", limits.MISSING_LIMIT, +1),
     ("sloping-plateau", "slope_charge", limits.SLOPE_LIMIT, +1),
     ("sloping-plateau", "slope_charge", -limits.SLOPE_LIMIT, -1),

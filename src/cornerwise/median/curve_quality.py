@@ -12,6 +12,7 @@ from ..flags import Flag
 from .shapes import FloatArray
 
 MISSING_LIMIT = 0.02  # fraction of the charge outside the range at one end
+DOUBT_LIMIT_MV = 1.0  # standard uncertainty of the median from what has to be extrapolated at one end
 SLOPE_LIMIT = 0.03  # charge that a slope adds over the measured span, as a fraction of the total
 REVERSAL_LIMIT = 0.05  # fraction of the charge by which the curve falls back
 REVERSAL_IN_NOISE = 6.0  # and times the noise of a point
@@ -35,6 +36,8 @@ class Evidence:
     highest_mv: float
     missing_low: float
     missing_high: float
+    doubt_low_mv: float  # standard uncertainty of the construct's median from what lies below the range
+    doubt_high_mv: float  # and above it
     slope_charge: float  # what a line under the curve adds over the measured span; 0 where none is supported
     slope_shift_mv: float  # by how much the construct's mean median would move without it
     reversal: float  # largest fall below what was reached before
@@ -99,13 +102,14 @@ def outlying_flags(subjects: Sequence[str], medians_mv: FloatArray) -> dict[str,
 
 
 def _unsaturated_low(e: Evidence) -> Flag | None:
-    if e.missing_low <= MISSING_LIMIT:
+    if e.missing_low <= MISSING_LIMIT and e.doubt_low_mv <= DOUBT_LIMIT_MV:
         return None
     return Flag(
         code="unsaturated-low",
         subject=e.subject,
         message=f"an estimated {e.missing_low:.1%} of the charge moves below {e.lowest_mv:g} mV, where the "
-        f"curve begins; more than {MISSING_LIMIT:.0%} is extrapolated and widens the uncertainty: start at a "
+        f"curve begins; what has to be extrapolated makes the construct's median uncertain by "
+        f"{e.doubt_low_mv:.1f} mV ({MISSING_LIMIT:.0%} and {DOUBT_LIMIT_MV:g} mV are tolerated): start at a "
         "more negative voltage",
         value=e.missing_low,
         limit=MISSING_LIMIT,
@@ -113,13 +117,14 @@ def _unsaturated_low(e: Evidence) -> Flag | None:
 
 
 def _unsaturated_high(e: Evidence) -> Flag | None:
-    if e.missing_high <= MISSING_LIMIT:
+    if e.missing_high <= MISSING_LIMIT and e.doubt_high_mv <= DOUBT_LIMIT_MV:
         return None
     return Flag(
         code="unsaturated-high",
         subject=e.subject,
         message=f"an estimated {e.missing_high:.1%} of the charge moves above {e.highest_mv:g} mV, where the "
-        f"curve ends; more than {MISSING_LIMIT:.0%} is extrapolated and widens the uncertainty: go on to a "
+        f"curve ends; what has to be extrapolated makes the construct's median uncertain by "
+        f"{e.doubt_high_mv:.1f} mV ({MISSING_LIMIT:.0%} and {DOUBT_LIMIT_MV:g} mV are tolerated): go on to a "
         "more positive voltage",
         value=e.missing_high,
         limit=MISSING_LIMIT,

@@ -26,7 +26,15 @@ class Missing:
     low: float
     high: float
     typical: float  # both ends, of the construct's mean curve: depends on the range, not on the cell's shift
-    doubt_mv: float  # standard uncertainty of what the charge outside contributes to the mean curve's median
+    doubt_low_mv: (
+        float  # standard uncertainty of what the charge below contributes to the mean curve's median
+    )
+    doubt_high_mv: float  # and from that above
+
+    @property
+    def doubt_mv(self) -> float:
+        """Both ends together."""
+        return float(np.hypot(self.doubt_low_mv, self.doubt_high_mv))
 
     @property
     def reason(self) -> str | None:
@@ -49,20 +57,29 @@ def missing_charge(pooled: PooledShape) -> list[Missing]:
     outside = {span: _outside(pooled, *span) for span in {(float(a), float(b)) for a, b in ends}}
     found = []
     for (low, high), (left, right) in zip(pooled.q(ends, pooled.shifts_mv), ends, strict=True):
-        typical, doubt = outside[float(left), float(right)]
-        found.append(Missing(low=float(low), high=float(1.0 - high), typical=typical, doubt_mv=doubt))
+        typical, doubt_low, doubt_high = outside[float(left), float(right)]
+        found.append(
+            Missing(
+                low=float(low),
+                high=float(1.0 - high),
+                typical=typical,
+                doubt_low_mv=doubt_low,
+                doubt_high_mv=doubt_high,
+            )
+        )
     return found
 
 
-def _outside(pooled: PooledShape, left: float, right: float) -> tuple[float, float]:
-    """Fraction of the mean curve's charge outside a range, and the doubt it leaves about the median (mV)."""
+def _outside(pooled: PooledShape, left: float, right: float) -> tuple[float, float, float]:
+    """Fraction of the mean curve's charge outside a range, and the doubt each end leaves (mV)."""
     median, noise = float(pooled.median_mv.mean()), float(np.sqrt(pooled.variance))
     tail = np.linspace(0.0, _TAIL_MV, _TAIL_POINTS)
     below, above = _mean_curve(pooled, left - tail), 1.0 - _mean_curve(pooled, right + tail)
     area_low = below[0] * abs(median - left) + np.trapezoid(below, tail)
     area_high = above[0] * abs(right - median) + np.trapezoid(above, tail)
-    doubt = np.hypot(_doubt(below[0], area_low, noise), _doubt(above[0], area_high, noise))
-    return float(below[0] + above[0]), float(doubt)
+    doubt_low = float(_doubt(below[0], area_low, noise))
+    doubt_high = float(_doubt(above[0], area_high, noise))
+    return float(below[0] + above[0]), doubt_low, doubt_high
 
 
 def _mean_curve(pooled: PooledShape, v_mv: FloatArray) -> FloatArray:

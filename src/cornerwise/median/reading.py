@@ -229,6 +229,8 @@ def _evidence(found: _Findings, i: int, median_mv: float, disagreement_mv: float
         highest_mv=float(curve.voltage_mv[-1]),
         missing_low=found.missing[i].low,
         missing_high=found.missing[i].high,
+        doubt_low_mv=found.missing[i].doubt_low_mv,
+        doubt_high_mv=found.missing[i].doubt_high_mv,
         slope_charge=float(found.slopes.added[i]) if found.slopes.supported else 0.0,
         slope_shift_mv=found.slopes.shift_mv,
         reversal=float(fallen.max()),
