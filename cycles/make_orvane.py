@@ -47,10 +47,10 @@ PAIRS = {  # interaction energy, total charge of the double mutant
     "E154Q/R226Q": (2.5, 9.0),  # a salt bridge to a sensor charge: total charge drops
     "E154Q/R223Q": (0.0, 11.6),  # the charge of the double does not add up
     "F188A/Y241A": (-1.2, 13.1),  # an aromatic pair that favours the activated state
-    "S205A/N250A": (0.3, 12.7),  # three cells: nothing can be said
+    "S205A/N250A": (0.3, 12.7),  # three cells over a range that begins too late: nothing can be said
     "E197Q/R229K": (-2.2, 12.9),  # recorded over a range that ends too early
     "F188A/K232Q": (0.2, 13.1),  # total charge of the double never measured
-    "Y241A/N250A": (0.5, 12.7),  # recorded over a range that begins too late
+    "Y241A/N250A": (0.5, 12.7),  # a leak slopes the plateaus of the double
     "D171N/F188A": (0.0, 13.1),
 }
 TRIPLES = {  # third-order interaction energy, total charge
@@ -92,14 +92,14 @@ RECORDINGS = {
     "R229K": Recording(cells=6, charge_cells=6),
     "Y241A": Recording(biphasic=True, noise=0.008),
     "S205A": Recording(cells=5, charge_cells=3, noise=0.04),
-    "N250A": Recording(holding_mv=-80.0, days=("day 2",), leak_per_mv=0.0005),
+    "N250A": Recording(holding_mv=-80.0, days=("day 2",)),
     "D171N/K232Q": Recording(cells=10, charge_cells=10, paired=True),
     "E197Q/K232Q": Recording(cells=12, charge_cells=12),
     "E154Q/R223Q": Recording(strays_mv=12.0),
-    "S205A/N250A": Recording(cells=3, charge_cells=3),
+    "S205A/N250A": Recording(cells=3, charge_cells=3, first_mv=-60.0),
     "E197Q/R229K": Recording(cells=6, charge_cells=6, last_mv=10.0),
     "F188A/K232Q": Recording(charge_cells=0),
-    "Y241A/N250A": Recording(first_mv=-60.0),
+    "Y241A/N250A": Recording(leak_per_mv=0.0005),
     "D171N/F188A": Recording(step_mv=20.0),
 }
 
