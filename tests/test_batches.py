@@ -9,7 +9,8 @@ import statsmodels.api as sm
 from builders import batched, campaign, construct, measurement
 from scipy import stats
 
-from cornerwise.batches import Blocks, alone, regroup, units_notes
+from cornerwise.batches import alone, regroup, units_notes
+from cornerwise.blocks import Blocks
 from cornerwise.campaign import Settings, StatedCharge
 from cornerwise.coupling import couple
 from cornerwise.energies import EnergyBook

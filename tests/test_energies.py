@@ -10,7 +10,7 @@ from hypothesis import strategies as st
 
 from cornerwise.campaign import Settings, StatedCharge
 from cornerwise.energies import EnergyBook
-from cornerwise.interactions import interact, interaction_draws, rank_intervals, strength_ranks
+from cornerwise.interactions import interact, interaction_draws
 from cornerwise.measurements import Measurement
 from cornerwise.mutations import Cycle, find_cycles
 from cornerwise.quantities import Summary
@@ -265,11 +265,3 @@ def test_third_order_is_the_change_of_a_pair_between_backgrounds() -> None:
     found = interact(triple, book, "WT").energy
     assert found.value == pytest.approx(KCAL * 10 * (in_third_mutant - in_wild_type))
     assert book.ledger.spread(found).variance == pytest.approx((KCAL * 10) ** 2 * 8)
-
-
-def test_ranks_by_strength_and_their_intervals() -> None:
-    assert strength_ranks([0.1, -3.0, 2.0]) == [3, 1, 2]
-    draws = np.array([[0.1, 0.2, 0.1], [-3.0, -3.1, -2.9], [2.0, 2.2, 1.9]])
-    assert rank_intervals(draws, 0.95) == [(3, 3), (1, 1), (2, 2)]
-    crossing = np.array([[1.0, 3.0], [2.0, -0.5]])
-    assert rank_intervals(crossing, 0.95) == [(1, 2), (1, 2)]

@@ -73,12 +73,12 @@ def test_welch_interval_of_the_yield_data() -> None:
 @pytest.mark.parametrize("table", load("holm_bh")["tables"])
 def test_adjusted_p_values_against_r(table: dict) -> None:
     assert intervals.adjusted_p_values(table["p"]) == pytest.approx(table["holm"], rel=1e-8)
-    assert intervals.adjusted_p_values(table["p"], "fdr_bh") == pytest.approx(table["bh"], rel=1e-8)
+    assert intervals.adjusted_p_values(table["p"], "benjamini-hochberg") == pytest.approx(table["bh"], rel=1e-8)
 
 
 def test_benjamini_hochberg_1995() -> None:
     case = load("holm_bh")["bh1995"]
-    adjusted = intervals.adjusted_p_values(case["p"], "fdr_bh")
+    adjusted = intervals.adjusted_p_values(case["p"], "benjamini-hochberg")
     assert adjusted == pytest.approx(case["bh"], abs=1e-8)
     assert sum(p <= 0.05 for p in adjusted) == case["rejected_at_5_percent"]
 

@@ -55,7 +55,21 @@ def test_shortcut_verdict(corners: list, bias: tuple, expected: str) -> None:
     ],
 )
 def test_interaction_verdict(interval: tuple, expected: str) -> None:
-    assert verdicts.interaction_verdict(Interval(*interval), 1.0) == expected
+    assert verdicts.interaction_verdict(Interval(*interval), 1.0, established=True) == expected
+
+
+@pytest.mark.parametrize(
+    ("interval", "expected"),
+    [
+        ((1.01, 3.0), "unresolved"),
+        ((0.01, 1.5), "unresolved"),
+        ((0.01, 0.9), "uncoupled"),
+        (NONE, "unresolved"),
+    ],
+)
+def test_nothing_is_coupled_or_detected_without_the_adjusted_p_value(interval: tuple, expected: str) -> None:
+    assert verdicts.interaction_verdict(Interval(*interval), 1.0, established=False) == expected
+    assert verdicts.favours(2.0, Interval(*interval), 2, established=False) is None
 
 
 @pytest.mark.parametrize(
@@ -71,4 +85,4 @@ def test_interaction_verdict(interval: tuple, expected: str) -> None:
     ],
 )
 def test_which_state_is_favoured(value: float, interval: tuple, order: int, expected: str | None) -> None:
-    assert verdicts.favours(value, Interval(*interval), order) == expected
+    assert verdicts.favours(value, Interval(*interval), order, established=True) == expected

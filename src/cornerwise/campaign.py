@@ -2,12 +2,15 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass, field
+from typing import Literal
 
 import numpy as np
 from numpy.typing import NDArray
 
 from .errors import Origin
+from .intervals import Adjustment
 from .mutations import Cycle, CycleRequest, Mutation
 from .units import EnergyUnit, convert_energy
 
@@ -87,6 +90,8 @@ class StatedCharge:
     citation: str | None = None
 
 
+IntervalKind = Literal["propagated", "monte-carlo"]
+RankOrder = Literal["estimate", "lower bound"]
 ChargePolicy = StatedCharge | str  # "measured", "wild-type" or a stated value
 
 
@@ -122,6 +127,11 @@ class Settings:
     reference_voltage_mv: float = 0.0  # voltage at which energies are given
     charge: ChargePolicy = "measured"
     charge_method: str | None = None  # of charges.csv; None: the wild type's
+    interval: IntervalKind = "propagated"  # the one that verdicts go by
+    adjustment: Adjustment = "holm"  # of p values for the number of cycles
+    simultaneous: bool = False  # whether intervals that hold all cycles at once are formed too
+    rank_by: RankOrder = "estimate"
+    first: int = 3  # how many the probability of being among the first is for
     defaulted: tuple[str, ...] = ()  # keys of campaign.toml the user left out
 
     @property
@@ -150,6 +160,22 @@ class Exclusion:
 
 
 @dataclass(frozen=True, kw_only=True, slots=True)
+class Distance:
+    """Distance between the side chains of two residues in a structure."""
+
+    residues: frozenset[int]  # two residue numbers
+    angstrom: float
+    origin: Origin = field(default_factory=Origin)
+
+
+def distance_between(mutations: Sequence[Mutation], distances: Sequence[Distance]) -> float | None:
+    """Distance between the residues of a pair; None where it is not known or there is no pair."""
+    residues = {mutation.position for mutation in mutations}
+    found = [one.angstrom for one in distances if len(mutations) == 2 and one.residues == residues]
+    return found[0] if found else None
+
+
+@dataclass(frozen=True, kw_only=True, slots=True)
 class InputFile:
     """A file that was read, for the record in ``result.json``."""
 
@@ -168,6 +194,7 @@ class Campaign:
     background: tuple[Mutation, ...] = ()  # carried by every construct
     exclusions: tuple[Exclusion, ...] = ()
     inputs: tuple[InputFile, ...] = ()
+    distances: tuple[Distance, ...] = ()
 
     def construct(self, label: str) -> Construct:
         """Return the construct called `label`.

@@ -13,8 +13,9 @@ from .energies import EnergyBook
 from .interactions import Interaction
 from .intervals import Interval
 from .measurements import Measurement
-from .result import Breakdown, CornerCharge, ProfilePoint, available
+from .rows import Breakdown, CornerCharge, ProfilePoint
 from .sources import Derived, linear
+from .tables import available
 
 _PROFILE_POINTS = 41
 _BEYOND_MEDIANS_MV = 60.0

@@ -17,7 +17,8 @@ from .intervals import t_interval
 from .measurements import Measurement
 from .midpoints import midpoints
 from .quantities import Sample
-from .result import CellRow, ConstructRow, DrawnCurve, available
+from .rows import CellRow, ConstructRow, DrawnCurve
+from .tables import available
 from .verdicts import ChargeVerdict
 
 _DRAWN_POINTS = 121

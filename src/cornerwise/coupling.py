@@ -6,15 +6,18 @@ import platform
 from collections.abc import Callable, Sequence
 from importlib.metadata import version
 
+from .backgrounds import background_rows
 from .batches import units_notes
 from .campaign import Campaign, Settings, StatedCharge
 from .construct_rows import cell_rows, construct_row
 from .energies import EnergyBook
 from .interaction_rows import Corners, interaction_rows
 from .measurements import Measurement, measure
-from .result import BudgetRow, CellRow, ConstructRow, InteractionRow, Result, Table
+from .result import Result
+from .rows import BackgroundRow, BudgetRow, CellRow, ConstructRow, InteractionRow
+from .tables import Table
 
-_RECORDED_VERSIONS = ("cornerwise", "numpy", "scipy", "statsmodels", "pandas")
+_RECORDED_VERSIONS = ("cornerwise", "numpy", "scipy", "pandas")
 
 Progress = Callable[[str, int, int], None]
 
@@ -79,7 +82,13 @@ def couple(campaign: Campaign, progress: Progress | None = None) -> Result:
     described = [construct_row(measurement, book, measurements, settings) for measurement in measured]
     rows = {row.construct: row for row, _, _ in described}
     charges = {row.construct: judged for row, _, judged in described if judged is not None}
-    corners = Corners(measurements=measurements, rows=rows, charges=charges, settings=settings)
+    corners = Corners(
+        measurements=measurements,
+        rows=rows,
+        charges=charges,
+        settings=settings,
+        distances=campaign.distances,
+    )
     interactions, budget, flags = interaction_rows(campaign.cycles, book, corners, step("interactions"))
     return Result(
         settings=settings,
@@ -88,6 +97,7 @@ def couple(campaign: Campaign, progress: Progress | None = None) -> Result:
         constructs=Table(ConstructRow, list(rows.values())),
         cells=Table(CellRow, [row for measurement in measured for row in cell_rows(measurement)]),
         budget=Table(BudgetRow, budget),
+        backgrounds=Table(BackgroundRow, background_rows(campaign.cycles, book, settings)),
         flags=(*(flag for _, own, _ in described for flag in own), *flags),
         notes=(*_notes(measured, settings), *_units_notes(interactions, list(rows.values()))),
         inputs=campaign.inputs,

@@ -128,7 +128,8 @@ class EnergyBook:
         self.per_e0_mv = energy_per_e0_mv(settings.energy_unit, settings.temperature_c)
         self._measurements = {measurement.label: measurement for measurement in measurements}
         self._settings = settings
-        self._energy_draws: dict[str, FloatArray] = {}
+        self._conservative = self.ledger.conservatively()
+        self._energy_draws: dict[tuple[str, bool], FloatArray] = {}
         self.energies: Mapping[str, Energy] = {label: self._energy(label) for label in self._measurements}
 
     def _median(self, label: str) -> Derived:
@@ -217,14 +218,18 @@ class EnergyBook:
             measured_energy=measured,
         )
 
-    def energy_draws(self, label: str) -> FloatArray:
-        """Joint replicates of one construct's energy, shape (replicates,)."""
-        if label not in self._energy_draws:
-            self._energy_draws[label] = self._draw(label)
-        return self._energy_draws[label]
+    def energy_draws(self, label: str, *, conservative: bool = False) -> FloatArray:
+        """Joint replicates of one construct's energy, shape (replicates,).
 
-    def _draw(self, label: str) -> FloatArray:
-        energy, ledger = self.energies[label], self.ledger
+        Cells are resampled; `conservative` draws every source from its Student's t distribution instead.
+        """
+        if (label, conservative) not in self._energy_draws:
+            ledger = self._conservative if conservative else self.ledger
+            self._energy_draws[label, conservative] = self._draw(label, ledger)
+        return self._energy_draws[label, conservative]
+
+    def _draw(self, label: str, ledger: Ledger) -> FloatArray:
+        energy = self.energies[label]
         by_cell = Component("charge x median", label)
         charge = _draw_linear(energy.charge, ledger)
         at_reference = -self.per_e0_mv * self._settings.reference_voltage_mv * charge

@@ -7,41 +7,30 @@ from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
 from typing import TypedDict
 
-import numpy as np
-from numpy.typing import NDArray
-
 from .batches import regroup
-from .campaign import Settings
+from .campaign import Distance, Settings, distance_between
 from .charge_judgement import ChargeJudgement
 from .charge_trace import breakdowns, corner_charges, largest_margin, most_cells, per_10_mv, profile
 from .energies import EnergyBook
+from .estimates import Estimate, estimate_all
 from .flags import Flag, codes
-from .interactions import Interaction, interact, interaction_draws, rank_intervals, strength_ranks
-from .intervals import (
-    Interval,
-    adjusted_p_values,
-    expanded_percentile_interval,
-    t_interval,
-    t_p_value,
-    t_quantile,
-)
+from .interactions import Interaction
+from .intervals import Interval
 from .ledger import Ledger
 from .measurements import Measurement, protocol_flags
-from .mutations import Cycle
-from .result import (
-    Breakdown,
-    BudgetRow,
-    ConstructRow,
-    CornerCharge,
-    Edge,
-    InteractionRow,
-    ProfilePoint,
-    available,
-)
+from .mutations import Cycle, opposite_charges
+from .rows import Breakdown, BudgetRow, ConstructRow, CornerCharge, Edge, InteractionRow, ProfilePoint
 from .sources import Derived, linear
-from .verdicts import ShortcutVerdict, favours, interaction_verdict, shortcut_verdict
-
-FloatArray = NDArray[np.float64]
+from .standings import Standing, standings
+from .tables import available
+from .verdicts import (
+    Favours,
+    InteractionVerdict,
+    ShortcutVerdict,
+    favours,
+    interaction_verdict,
+    shortcut_verdict,
+)
 
 _NOT_AVAILABLE = Interval(math.nan, math.nan)
 
@@ -54,51 +43,7 @@ class Corners:
     rows: Mapping[str, ConstructRow]
     charges: Mapping[str, ChargeJudgement]  # of every mutant
     settings: Settings
-
-
-@dataclass(frozen=True, kw_only=True, slots=True, eq=False)
-class _Judged:
-    """One cycle before it is compared with the others."""
-
-    interaction: Interaction
-    std_uncertainty: float
-    dof: float
-    interval: Interval
-    boot: Interval
-    p_value: float
-    deviations: FloatArray  # of the draws from the estimate, widened to Student's t; (n_replicates,)
-
-
-def _judge(cycle: Cycle, book: EnergyBook, settings: Settings) -> _Judged:
-    interaction = interact(cycle, book, settings.wild_type)
-    value = interaction.energy.value
-    spread = interaction.ledger.spread(interaction.energy)
-    u, level = math.sqrt(spread.variance), settings.confidence
-    draws = interaction_draws(interaction, book)
-    stretch = t_quantile(0.5 + level / 2, spread.dof) / t_quantile(0.5 + level / 2, math.inf)
-    return _Judged(
-        interaction=interaction,
-        std_uncertainty=u,
-        dof=spread.dof,
-        interval=t_interval(value, u, spread.dof, level),
-        boot=expanded_percentile_interval(value, draws, spread.dof, level),
-        p_value=t_p_value(value, u, spread.dof),
-        deviations=stretch * (draws - value),
-    )
-
-
-def _ranks(judged: Sequence[_Judged], confidence: float) -> list[tuple[int | None, int | None, int | None]]:
-    """Rank and its limits of every cycle; None where the energy is not available."""
-    known = [i for i, one in enumerate(judged) if math.isfinite(one.std_uncertainty)]
-    ranks: list[tuple[int | None, int | None, int | None]] = [(None, None, None)] * len(judged)
-    if not known:
-        return ranks
-    values = [judged[i].interaction.energy.value for i in known]
-    draws = np.array([judged[i].interaction.energy.value + judged[i].deviations for i in known])
-    limits = rank_intervals(draws, confidence)
-    for i, rank, (low, high) in zip(known, strength_ranks(values), limits, strict=True):
-        ranks[i] = (rank, min(low, rank), max(high, rank))
-    return ranks
+    distances: tuple[Distance, ...] = ()
 
 
 def _limits(derived: Derived | None, ledger: Ledger, confidence: float) -> Interval:
@@ -121,7 +66,7 @@ def _nonadditive(interaction: Interaction, limits: Interval, per_e0_mv: float, u
     return (Flag(code="charge-nonadditive", subject=name, message=message, value=j, limit=0.0),)
 
 
-def _charge_trace(one: _Judged, corners: Corners) -> tuple[CornerCharge, ...]:
+def _charge_trace(one: Estimate, corners: Corners) -> tuple[CornerCharge, ...]:
     mutants = [c.label for c in one.interaction.cycle.corners if c.label in corners.charges]
     return corner_charges(
         mutants,
@@ -151,7 +96,7 @@ class _ChargeFields(TypedDict):
     profile: tuple[ProfilePoint, ...]
 
 
-def _charge_fields(one: _Judged, book: EnergyBook, corners: Corners, charges: Interval) -> _ChargeFields:
+def _charge_fields(one: Estimate, book: EnergyBook, corners: Corners, charges: Interval) -> _ChargeFields:
     settings, interaction = corners.settings, one.interaction
     trace = _charge_trace(one, corners)
     bias = _limits(interaction.shortcut_bias, interaction.ledger, settings.confidence)
@@ -180,12 +125,42 @@ def _charge_fields(one: _Judged, book: EnergyBook, corners: Corners, charges: In
     }
 
 
+class _StandingFields(TypedDict):
+    p_adjusted: float | None
+    interaction_verdict: InteractionVerdict
+    favours: Favours | None
+    rank: int | None
+    rank_low: int | None
+    rank_high: int | None
+    strength_low: float | None
+    first_probability: float | None
+    shrunken: float | None
+    simultaneous_low: float | None
+    simultaneous_high: float | None
+
+
+def _standing_fields(one: Estimate, standing: Standing, settings: Settings) -> _StandingFields:
+    order, established = one.interaction.cycle.order, standing.established
+    low, high = standing.ranks or (None, None)
+    return {
+        "p_adjusted": available(standing.p_adjusted),
+        "interaction_verdict": interaction_verdict(
+            one.interval, settings.energy_threshold, established=established
+        ),
+        "favours": favours(one.value, one.interval, order, established=established),
+        "rank": standing.rank,
+        "rank_low": low,
+        "rank_high": high,
+        "strength_low": available(standing.strength_low),
+        "first_probability": available(standing.first_probability),
+        "shrunken": available(standing.shrunken),
+        "simultaneous_low": available(standing.simultaneous.low),
+        "simultaneous_high": available(standing.simultaneous.high),
+    }
+
+
 def _row(
-    one: _Judged,
-    ranks: tuple[int | None, int | None, int | None],
-    p_adjusted: float,
-    book: EnergyBook,
-    corners: Corners,
+    one: Estimate, standing: Standing, book: EnergyBook, corners: Corners
 ) -> tuple[InteractionRow, tuple[Flag, ...]]:
     interaction, cycle, settings = one.interaction, one.interaction.cycle, corners.settings
     labels = [corner.label for corner in cycle.corners]
@@ -199,25 +174,24 @@ def _row(
         mutations=tuple(map(str, cycle.mutations)),
         wild_type=settings.wild_type,
         corners=tuple((corner.label, corner.sign) for corner in cycle.corners),
-        interaction=available(interaction.energy.value),
+        interaction=available(one.value),
         energy_unit=settings.energy_unit,
         std_uncertainty=available(one.std_uncertainty),
         dof=available(one.dof),
         low=available(one.interval.low),
         high=available(one.interval.high),
-        boot_low=available(one.boot.low),
-        boot_high=available(one.boot.high),
+        boot_low=available(one.bootstrap.low),
+        boot_high=available(one.bootstrap.high),
+        monte_carlo_low=available(one.monte_carlo.low),
+        monte_carlo_high=available(one.monte_carlo.high),
         p_value=available(one.p_value),
-        p_adjusted=available(p_adjusted),
         shortcut=available(interaction.shortcut.value),
-        interaction_verdict=interaction_verdict(one.interval, settings.energy_threshold),
-        favours=favours(interaction.energy.value, one.interval, cycle.order),
-        rank=ranks[0],
-        rank_low=ranks[1],
-        rank_high=ranks[2],
         flags=codes(own, also=inherited),
         units=interaction.units,
         edges=cycle_edges(cycle, book),
+        opposite_charges=opposite_charges(cycle.mutations),
+        distance_angstrom=distance_between(cycle.mutations, corners.distances),
+        **_standing_fields(one, standing, settings),
         **_charge_fields(one, book, corners, charges),
     )
     return row, own
@@ -254,7 +228,7 @@ def cycle_edges(cycle: Cycle, book: EnergyBook) -> tuple[Edge, ...]:
     return tuple(found)
 
 
-def _budget_rows(one: _Judged) -> list[BudgetRow]:
+def _budget_rows(one: Estimate) -> list[BudgetRow]:
     return [
         BudgetRow(
             cycle=one.interaction.cycle.name,
@@ -285,16 +259,10 @@ def interaction_rows(
     progress : callable, optional
         Called with the number of cycles done and their total.
     """
-    judged = []
-    for count, cycle in enumerate(cycles, start=1):
-        judged.append(_judge(cycle, book, corners.settings))
-        if progress is not None:
-            progress(count, len(cycles))
-    adjusted = adjusted_p_values([one.p_value for one in judged])
-    ranks = _ranks(judged, corners.settings.confidence)
+    estimates, deviations = estimate_all(cycles, book, corners.settings, progress)
     rows, budget, flags = [], list[BudgetRow](), list[Flag]()
-    for one, rank, p_adjusted in zip(judged, ranks, adjusted, strict=True):
-        row, own = _row(one, rank, p_adjusted, book, corners)
+    for one, standing in zip(estimates, standings(estimates, deviations, corners.settings), strict=True):
+        row, own = _row(one, standing, book, corners)
         rows.append(row)
         flags.extend(own)
         budget.extend(_budget_rows(one))

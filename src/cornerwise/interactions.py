@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -72,47 +71,19 @@ def interact(cycle: Cycle, book: EnergyBook, wild_type: str) -> Interaction:
     )
 
 
-def interaction_draws(interaction: Interaction, book: EnergyBook) -> FloatArray:
-    """Bootstrap replicates of a cycle's interaction energy, shape (replicates,), jointly with all others.
+def interaction_draws(
+    interaction: Interaction, book: EnergyBook, *, conservative: bool = False
+) -> FloatArray:
+    """Replicates of a cycle's interaction energy, shape (replicates,), jointly with all others.
 
     Products of charge and median are drawn as products; where batches are the units or are compared within,
-    the replicates are those of the energy's first-order expansion.
+    the replicates are those of the energy's first-order expansion. Cells are resampled; `conservative` draws
+    every source from its Student's t distribution instead.
     """
     if interaction.ledger is not book.ledger:
-        return interaction.ledger.linear_draws(interaction.energy)
+        ledger = interaction.ledger.conservatively() if conservative else interaction.ledger
+        return ledger.linear_draws(interaction.energy)
     total = np.zeros(book.ledger.replicates)
     for corner in interaction.cycle.corners:
-        total += corner.sign * book.energy_draws(corner.label)
+        total += corner.sign * book.energy_draws(corner.label, conservative=conservative)
     return total
-
-
-def strength_ranks(energies: Sequence[float]) -> list[int]:
-    """Rank of each interaction by absolute size, 1 for the strongest; ties keep the order given."""
-    order = np.argsort(-np.abs(np.asarray(energies, dtype=float)), kind="stable")
-    ranks = np.empty(len(order), dtype=int)
-    ranks[order] = np.arange(1, len(order) + 1)
-    return [int(rank) for rank in ranks]
-
-
-def rank_intervals(draws: FloatArray, confidence: float) -> list[tuple[int, int]]:
-    """Percentile intervals of the rank by absolute size.
-
-    Parameters
-    ----------
-    draws : ndarray, shape (n_cycles, n_replicates)
-        Joint replicates, so that what two cycles share does not separate them.
-    confidence : float
-        Level, between 0 and 1.
-
-    Returns
-    -------
-    list of (int, int)
-        Lowest and highest rank, one pair a cycle.
-    """
-    order = np.argsort(-np.abs(draws), axis=0, kind="stable")
-    ranks = np.empty_like(order)
-    np.put_along_axis(ranks, order, np.arange(1, len(draws) + 1)[:, np.newaxis], axis=0)
-    levels = [(1 - confidence) / 2, (1 + confidence) / 2]
-    low = np.quantile(ranks, levels[0], axis=1, method="lower")
-    high = np.quantile(ranks, levels[1], axis=1, method="higher")
-    return [(int(a), int(b)) for a, b in zip(low, high, strict=True)]

@@ -4,13 +4,14 @@ from __future__ import annotations
 
 import math
 from collections.abc import Sequence
-from typing import NamedTuple
+from typing import Literal, NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
 from scipy import special
 
 FloatArray = NDArray[np.float64]
+Adjustment = Literal["holm", "benjamini-hochberg"]
 
 # A percentile is read off the draws only where at least this many of them lie beyond it.
 _DRAWS_BEYOND = 10
@@ -154,27 +155,34 @@ def expanded_percentile_interval(
     return Interval(estimate + (low - estimate) * stretch, estimate + (high - estimate) * stretch)
 
 
-def adjusted_p_values(p_values: Sequence[float], method: str = "holm") -> list[float]:
+def adjusted_p_values(p_values: Sequence[float], method: Adjustment = "holm") -> list[float]:
     """Adjust p values for looking at many interactions.
 
     Parameters
     ----------
     p_values : sequence of float, shape (n_cycles,)
         NaN where none is available; these are not counted as tests.
-    method : {"holm", "fdr_bh"}
+    method : {"holm", "benjamini-hochberg"}
         Holm's step-down (family-wise error) or Benjamini and Hochberg's step-up (false discovery rate).
 
     Returns
     -------
     list of float
         In the order given; NaN stays NaN.
-    """
-    # Costs as much to import as numpy and scipy together, so it is fetched only where it works.
-    from statsmodels.stats.multitest import multipletests
 
+    References
+    ----------
+    S. Holm, Scand. J. Stat. 6 (1979) 65-70; Y. Benjamini and Y. Hochberg, J. R. Stat. Soc. B 57 (1995)
+    289-300.
+    """
     p = np.asarray(p_values, dtype=float)
     adjusted = np.full(p.shape, np.nan)
-    available = np.isfinite(p)
-    if available.any():
-        adjusted[available] = multipletests(p[available], method=method)[1]
+    available = np.flatnonzero(np.isfinite(p))
+    order = available[np.argsort(p[available], kind="stable")]
+    m = len(order)
+    if method == "holm":
+        stepwise = np.maximum.accumulate((m - np.arange(m)) * p[order])
+    else:
+        stepwise = np.minimum.accumulate((m / np.arange(m, 0, -1)) * p[order][::-1])[::-1]
+    adjusted[order] = np.minimum(stepwise, 1.0)
     return [float(value) for value in adjusted]

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Iterator, Sequence
+from collections.abc import Hashable, Iterator, Sequence
 from dataclasses import replace
 from typing import NamedTuple
 
@@ -11,7 +11,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from .intervals import welch_satterthwaite
-from .sources import Component, Derived, Part, Source, Spread
+from .sources import Component, Derived, Part, Source, Spread, t_factors
 from .streams import named_stream
 
 FloatArray = NDArray[np.float64]
@@ -36,11 +36,20 @@ class Ledger:
         Of the campaign; each source draws from a stream named after its first component.
     replicates : int
         Number of joint replicates.
+    conservative : bool, optional
+        Draw every source from Student's t with its degrees of freedom rather than resample its cells.
+
+    References
+    ----------
+    JCGM 101:2008 (GUM supplement 1), 6.4.9: a t distribution for the mean of a few observations.
     """
 
-    def __init__(self, sources: Sequence[Source], *, seed: int, replicates: int) -> None:
+    def __init__(
+        self, sources: Sequence[Source], *, seed: int, replicates: int, conservative: bool = False
+    ) -> None:
         self.sources = tuple(sources)
         self.replicates = replicates
+        self.conservative = conservative
         self._seed = seed
         self._place = {
             component: (number, column)
@@ -56,7 +65,7 @@ class Ledger:
         """Ledger in which `sources` speak for their components in place of the sources here."""
         if not sources:
             return self
-        fresh = Ledger((), seed=self._seed, replicates=self.replicates)
+        fresh = Ledger((), seed=self._seed, replicates=self.replicates, conservative=self.conservative)
         fresh.sources = (*self.sources, *sources)
         own = {
             component: (number, column)
@@ -64,6 +73,12 @@ class Ledger:
             for column, component in enumerate(source.components)
         }
         fresh._place = {**self._place, **own}
+        return fresh
+
+    def conservatively(self) -> Ledger:
+        """The same sources, drawn from Student's t distributions."""
+        fresh = Ledger((), seed=self._seed, replicates=self.replicates, conservative=True)
+        fresh.sources, fresh._place = self.sources, self._place
         return fresh
 
     def source_of(self, component: Component) -> Source | None:
@@ -110,16 +125,35 @@ class Ledger:
         number, column = self._place[component]
         if number not in self._draws:
             source = self.sources[number]
-            self._draws[number] = source.draws(self._stream(source.components[0]), self.replicates)
+            rng = self._stream(source.components[0])
+            draw = source.conservative_draws if self.conservative else source.draws
+            self._draws[number] = draw(rng, self.replicates)
         drawn: FloatArray = self._draws[number][column]
         return drawn
 
     def _stream(self, component: Component) -> np.random.Generator:
-        return named_stream(self._seed, f"{component.kind}|{component.construct}")
+        return self._named(f"{component.kind}|{component.construct}")
+
+    def _named(self, name: str) -> np.random.Generator:
+        return named_stream(self._seed, f"t|{name}" if self.conservative else name)
+
+    def footprint(self, derived: Derived) -> dict[Hashable, FloatArray]:
+        """Independent errors in `derived`; see `Source.footprint`."""
+        return {
+            component: errors
+            for source, gradient in self._gradients(derived)
+            for component, errors in source.footprint(gradient).items()
+        }
 
     def linear_draws(self, derived: Derived) -> FloatArray:
         """Replicates of `derived` to first order, jointly with all others, shape (replicates,)."""
         total = np.full(self.replicates, derived.value)
+        if self.conservative:
+            for name, (variance, dof) in self.parts(derived):
+                rng = self._named(name)
+                normal = rng.standard_normal(self.replicates)
+                total += math.sqrt(variance) * normal * t_factors(dof, rng, self.replicates)
+            return total
         for source, gradient in self._gradients(derived):
             total += source.deviations_drawn(gradient, self._stream, self.replicates)
         return total

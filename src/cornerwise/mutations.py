@@ -3,9 +3,10 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Iterable, Mapping
+from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass, field
 from itertools import combinations
+from typing import Literal
 
 from .errors import Origin
 
@@ -46,6 +47,38 @@ class Mutation:
 def in_residue_order(mutations: Iterable[Mutation]) -> tuple[Mutation, ...]:
     """Sort `mutations` by residue number."""
     return tuple(sorted(mutations, key=lambda mutation: mutation.residue_order))
+
+
+_ACIDIC, _BASIC = frozenset("DE"), frozenset("KR")
+
+OppositeCharges = Literal["opposite charges", "opposite charges with histidine"]
+
+
+def opposite_charges(mutations: Sequence[Mutation]) -> OppositeCharges | None:
+    """Whether the native residues of a pair carry opposite charges, as those of a salt bridge do.
+
+    Parameters
+    ----------
+    mutations : sequence of Mutation
+        Of one cycle; anything but a pair of substitutions is no candidate.
+
+    Returns
+    -------
+    {"opposite charges", "opposite charges with histidine"} or None
+        Aspartate or glutamate with lysine or arginine; histidine is stated apart, its charge depends on
+        the pH (common practice, no source). It says that the pair could form a salt bridge, no more.
+
+    Examples
+    --------
+    >>> opposite_charges([Mutation("E154Q", 154, "E", "Q"), Mutation("R226Q", 226, "R", "Q")])
+    'opposite charges'
+    """
+    natives = [mutation.native for mutation in mutations]
+    if len(natives) != 2 or not any(native in _ACIDIC for native in natives):
+        return None
+    if any(native in _BASIC for native in natives):
+        return "opposite charges"
+    return "opposite charges with histidine" if "H" in natives else None
 
 
 def parse_mutation(token: str) -> Mutation | None:

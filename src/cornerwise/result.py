@@ -1,331 +1,55 @@
-"""What comes out: frozen rows with everything a table, a figure or a report needs, and nothing to compute."""
+"""What comes out: everything `couple` found, and its text as JSON."""
 
 from __future__ import annotations
 
 import dataclasses
 import json
-import math
-from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
-from typing import TYPE_CHECKING, ClassVar, Generic, Protocol, TypeVar, overload
+from typing import TYPE_CHECKING
 
-from .batches import Units
 from .campaign import InputFile, Settings
 from .flags import Flag
-from .verdicts import ChargeVerdict, Favours, InteractionVerdict, ShortcutVerdict
+from .rows import (
+    BackgroundRow,
+    Breakdown,
+    BudgetRow,
+    CellRow,
+    ConstructRow,
+    CornerCharge,
+    DrawnCurve,
+    Edge,
+    InteractionRow,
+    MidpointRow,
+    ProfilePoint,
+    RankRow,
+)
+from .tables import Row, Table, Value
 
 if TYPE_CHECKING:
     import pandas as pd
 
+# A result's tables and rows are fetched from here.
+__all__ = [
+    "SCHEMA",
+    "BackgroundRow",
+    "Breakdown",
+    "BudgetRow",
+    "CellRow",
+    "ConstructRow",
+    "CornerCharge",
+    "DrawnCurve",
+    "Edge",
+    "InteractionRow",
+    "MidpointRow",
+    "ProfilePoint",
+    "RankRow",
+    "Result",
+    "Row",
+    "Table",
+    "Value",
+]
+
 SCHEMA = "cornerwise-result/1"
-
-Value = str | int | float | bool | None
-
-
-def available(value: float) -> float | None:
-    """Turn NaN and infinity, which stand for "not available", into None."""
-    return float(value) if math.isfinite(value) else None
-
-
-class Row(Protocol):
-    """What every kind of row has: column names and a value for each."""
-
-    columns: ClassVar[tuple[str, ...]]
-
-    def cells(self) -> tuple[Value, ...]:
-        """Values in the order of `columns`."""
-        ...
-
-
-RowT = TypeVar("RowT", bound=Row, covariant=True)
-
-
-class Table(Sequence[RowT], Generic[RowT]):
-    """Rows of one kind, in a fixed order.
-
-    Parameters
-    ----------
-    kind : type
-        The dataclass of the rows; gives the column names of an empty table too.
-    rows : iterable
-        The rows.
-    """
-
-    def __init__(self, kind: type[RowT], rows: Sequence[RowT]) -> None:
-        self.kind = kind
-        self._rows = tuple(rows)
-
-    @overload
-    def __getitem__(self, index: int) -> RowT: ...
-    @overload
-    def __getitem__(self, index: slice) -> Sequence[RowT]: ...
-    def __getitem__(self, index: int | slice) -> RowT | Sequence[RowT]:
-        """Return one row, or several as a tuple."""
-        return self._rows[index]
-
-    def __len__(self) -> int:
-        return len(self._rows)
-
-    def __iter__(self) -> Iterator[RowT]:
-        return iter(self._rows)
-
-    @property
-    def columns(self) -> tuple[str, ...]:
-        """Column names, as in the CSV file."""
-        return self.kind.columns
-
-    def to_frame(self) -> pd.DataFrame:
-        """Data frame with the columns of the CSV file; fields that do not apply are missing values."""
-        import pandas as pd
-
-        return pd.DataFrame([row.cells() for row in self._rows], columns=list(self.columns))
-
-
-@dataclass(frozen=True, kw_only=True, slots=True)
-class DrawnCurve:
-    """A smooth Q-V curve at the points where it is drawn."""
-
-    voltage_mv: tuple[float, ...]
-    q: tuple[float, ...]  # scaled 0..1
-
-
-@dataclass(frozen=True, kw_only=True, slots=True)
-class CornerCharge:
-    """Why one mutant's total charge was judged as it was."""
-
-    construct: str
-    source: str | None  # None when never measured
-    ratio: float | None  # to the wild type's charge
-    low: float | None
-    high: float | None
-    verdict: ChargeVerdict  # the error of all corners of the cycle held together
-    passing_margin: float | None  # smallest margin within which it would count as equal
-    cells_needed: int | None  # values on mutant and wild type each for a verdict at this scatter
-
-
-@dataclass(frozen=True, kw_only=True, slots=True)
-class Breakdown:
-    """Change of one assumed charge that would bring the interaction's interval to 0."""
-
-    construct: str
-    fraction: float  # of the assumed charge
-
-
-@dataclass(frozen=True, kw_only=True, slots=True)
-class ProfilePoint:
-    """Interaction energy at one voltage, in the row's unit."""
-
-    voltage_mv: float
-    interaction: float
-    low: float | None
-    high: float | None
-
-
-@dataclass(frozen=True, kw_only=True, slots=True)
-class Edge:
-    """What one mutation adds to the activation free energy, between two corners of a cycle."""
-
-    start: str  # construct without the mutation
-    end: str  # construct with it
-    mutation: str
-    difference: float | None  # dG(end) - dG(start), in the row's unit
-    std_uncertainty: float | None  # what both corners share counted once
-
-
-@dataclass(frozen=True, kw_only=True, slots=True)
-class InteractionRow:
-    """One cycle. Energies in `energy_unit` per channel; None where a field does not apply."""
-
-    columns: ClassVar[tuple[str, ...]] = (
-        "cycle", "order", "mutations", "wild_type", "interaction", "energy_unit", "std_uncertainty", "dof",
-        "low", "high", "boot_low", "boot_high", "p_value", "p_adjusted", "shortcut", "shortcut_bias",
-        "shortcut_bias_low", "shortcut_bias_high", "shortcut_verdict", "charge_interaction_e0",
-        "charge_interaction_low", "charge_interaction_high", "interaction_verdict", "favours", "rank",
-        "rank_low", "rank_high", "flags",
-    )  # fmt: skip
-
-    cycle: str
-    order: int
-    mutations: tuple[str, ...]
-    wild_type: str
-    corners: tuple[tuple[str, int], ...]  # label and sign
-    interaction: float | None
-    energy_unit: str
-    std_uncertainty: float | None
-    dof: float | None
-    low: float | None
-    high: float | None
-    boot_low: float | None
-    boot_high: float | None
-    p_value: float | None
-    p_adjusted: float | None
-    shortcut: float | None
-    shortcut_bias: float | None
-    shortcut_bias_low: float | None
-    shortcut_bias_high: float | None
-    shortcut_verdict: ShortcutVerdict
-    charge_interaction_e0: float | None
-    charge_interaction_low: float | None
-    charge_interaction_high: float | None
-    interaction_verdict: InteractionVerdict
-    favours: Favours | None
-    rank: int | None
-    rank_low: int | None
-    rank_high: int | None
-    flags: tuple[str, ...]
-    corner_charges: tuple[CornerCharge, ...]  # of the mutants
-    passing_margin: float | None  # smallest charge margin that all mutants pass
-    passing_tolerance: float | None  # smallest tolerance that holds the bias's interval
-    charge_cells_needed: int | None  # charge values a construct for a verdict on every mutant
-    change_per_10_mv: float | None  # of the interaction
-    change_per_10_mv_low: float | None
-    change_per_10_mv_high: float | None
-    offset_contribution: float | None  # standard uncertainty from the stated voltage offset
-    breakdown: tuple[Breakdown, ...]  # where a charge is assumed and the interval excludes 0
-    profile: tuple[ProfilePoint, ...]  # where the charges do not add up
-    units: tuple[Units, ...]  # what was counted in each family of cells: cells, or batches, and why
-    edges: tuple[Edge, ...] = ()  # of the square, the cube, ...
-
-    def cells(self) -> tuple[Value, ...]:
-        """Values in the order of `columns`."""
-        return flat_values(self)
-
-
-@dataclass(frozen=True, kw_only=True, slots=True)
-class ConstructRow:
-    """One construct. Energies in `energy_unit` per channel; None where a field does not apply."""
-
-    columns: ClassVar[tuple[str, ...]] = (
-        "construct", "mutations", "cells", "median_mV", "median_sem_mV", "charge_e0", "charge_sem_e0",
-        "charge_n", "charge_source", "energy", "energy_unit", "std_uncertainty", "dof", "low", "high",
-        "charge_ratio", "charge_ratio_low", "charge_ratio_high", "charge_verdict", "flags",
-    )  # fmt: skip
-
-    construct: str
-    mutations: tuple[str, ...]
-    cells_used: int
-    median_mv: float | None
-    median_sem_mv: float | None
-    charge_e0: float | None
-    charge_sem_e0: float | None
-    charge_n: int | None
-    charge_source: str
-    energy: float | None
-    energy_unit: str
-    std_uncertainty: float | None
-    dof: float | None
-    low: float | None
-    high: float | None
-    charge_ratio: float | None
-    charge_ratio_low: float | None
-    charge_ratio_high: float | None
-    charge_verdict: ChargeVerdict | None  # None for the wild type
-    charge_passing_margin: float | None  # smallest margin within which the charge counts as equal
-    charge_cells_needed: int | None  # values on mutant and wild type each for a verdict at this scatter
-    midpoint_mv: float | None  # mean over cells of the voltage where q = 0.5
-    midpoint_energy: float | None  # the same charge times the midpoint
-    sigmoid_midpoint_mv: float | None  # of one sigmoid fitted to each cell
-    slope_charge_e0: float | None  # apparent charge from that sigmoid's slope
-    sigmoid_energy: float | None  # apparent charge times that midpoint
-    flags: tuple[str, ...]
-    units: tuple[Units, ...]  # what its energy's uncertainty counts in each family of cells
-    curve: DrawnCurve | None  # averaged over the cells that are used; None without curves
-    charge_values: tuple[float, ...] = ()  # e0 per channel, its own cell by cell; empty for summaries
-
-    def cells(self) -> tuple[Value, ...]:
-        """Values in the order of `columns`."""
-        return flat_values(self)
-
-
-@dataclass(frozen=True, kw_only=True, slots=True)
-class MidpointRow:
-    """Midpoint-based numbers of one construct beside its median-based energy."""
-
-    columns: ClassVar[tuple[str, ...]] = (
-        "construct", "median_mV", "energy", "energy_unit", "midpoint_mV", "midpoint_energy",
-        "sigmoid_midpoint_mV", "slope_charge_e0", "sigmoid_energy",
-    )  # fmt: skip
-
-    construct: str
-    median_mv: float | None
-    energy: float | None
-    energy_unit: str
-    midpoint_mv: float | None
-    midpoint_energy: float | None
-    sigmoid_midpoint_mv: float | None
-    slope_charge_e0: float | None
-    sigmoid_energy: float | None
-
-    def cells(self) -> tuple[Value, ...]:
-        """Values in the order of `columns`."""
-        return flat_values(self)
-
-
-@dataclass(frozen=True, kw_only=True, slots=True)
-class CellRow:
-    """One cell's curve and what was read off it."""
-
-    columns: ClassVar[tuple[str, ...]] = (
-        "construct", "cell", "batch", "median_mV", "midpoint_mV", "low_plateau", "high_plateau", "points",
-        "used", "flags",
-    )  # fmt: skip
-
-    construct: str
-    cell: str
-    batch: str | None
-    median_mv: float | None
-    midpoint_mv: float | None
-    plain_median_mv: float | None  # area between plateaus without a model
-    low_plateau: float | None
-    high_plateau: float | None
-    points: int
-    used: bool
-    reason: str | None  # why it is not used
-    flags: tuple[str, ...]
-    voltage_mv: tuple[float, ...]
-    charge: tuple[float, ...]  # as recorded, the cell's own scale
-
-    def cells(self) -> tuple[Value, ...]:
-        """Values in the order of `columns`."""
-        return flat_values(self)
-
-
-@dataclass(frozen=True, kw_only=True, slots=True)
-class BudgetRow:
-    """What one source of error adds to one cycle's uncertainty, in the unit of its interaction."""
-
-    columns: ClassVar[tuple[str, ...]] = ("cycle", "source", "contribution", "share")
-
-    cycle: str
-    source: str
-    contribution: float | None
-    share: float | None
-
-    def cells(self) -> tuple[Value, ...]:
-        """Values in the order of `columns`."""
-        return flat_values(self)
-
-
-# Columns whose name is not the field's: units are spelled as in the trade, `cells` is taken by a method.
-_FIELD_OF_COLUMN = {
-    "median_mV": "median_mv",
-    "median_sem_mV": "median_sem_mv",
-    "midpoint_mV": "midpoint_mv",
-    "sigmoid_midpoint_mV": "sigmoid_midpoint_mv",
-    "cells": "cells_used",
-}
-
-
-def flat_values(row: Row) -> tuple[Value, ...]:
-    """Values of a row in the order of its columns; lists become text."""
-    return tuple(_flat(column, getattr(row, _FIELD_OF_COLUMN.get(column, column))) for column in row.columns)
-
-
-def _flat(column: str, value: object) -> Value:
-    if isinstance(value, tuple):
-        return ("/" if column == "mutations" else " ").join(map(str, value))
-    assert value is None or isinstance(value, str | int | float | bool)
-    return value
 
 
 @dataclass(frozen=True, kw_only=True, slots=True)
@@ -338,6 +62,7 @@ class Result:
     constructs: Table[ConstructRow]  # the wild type first
     cells: Table[CellRow]
     budget: Table[BudgetRow]
+    backgrounds: Table[BackgroundRow]  # of the cycles of order 3 and above
     flags: tuple[Flag, ...]
     notes: tuple[str, ...]  # decisions the reader should know of, a sentence each
     inputs: tuple[InputFile, ...]
@@ -353,6 +78,17 @@ class Result:
             if row.midpoint_mv is not None
         ]
         return Table(MidpointRow, rows)
+
+    @property
+    def ranking(self) -> Table[RankRow]:
+        """The cycles that have an uncertainty, in the order of their ranks."""
+        names = [field.name for field in dataclasses.fields(RankRow)]
+        ranked = [row for row in self.interactions if row.rank is not None]
+        rows = [
+            RankRow(**{name: getattr(row, name) for name in names})
+            for row in sorted(ranked, key=lambda row: row.rank or 0)
+        ]
+        return Table(RankRow, rows)
 
     def to_frame(self) -> pd.DataFrame:
         """The interactions as a data frame; see `interactions`, `constructs`, `cells`, `budget`."""
@@ -370,6 +106,7 @@ class Result:
             "constructs": [_plain(row) for row in self.constructs],
             "cells": [_plain(row) for row in self.cells],
             "budget": [_plain(row) for row in self.budget],
+            "backgrounds": [_plain(row) for row in self.backgrounds],
             "flags": [_plain(flag) for flag in self.flags],
             "notes": self.notes,
             "inputs": [_plain(file) for file in self.inputs],

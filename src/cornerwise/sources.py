@@ -123,6 +123,18 @@ class Source(Protocol):
         """Replicates of ``sum(gradient * components)`` less its estimate, shape (replicates,)."""
         ...
 
+    def footprint(self, gradient: Sequence[float]) -> dict[Component, FloatArray]:
+        """Independent errors in ``sum(gradient * components)``, by the component they are named after.
+
+        Products of two footprints, summed, are the covariance of two quantities; the sum of squares is the
+        squared standard uncertainty.
+        """
+        ...
+
+    def conservative_draws(self, rng: np.random.Generator, replicates: int) -> FloatArray:
+        """As `draws`, from Student's t distributions: shape (n_components, replicates)."""
+        ...
+
 
 @dataclass(frozen=True, kw_only=True, slots=True)
 class StatedSource:
@@ -156,6 +168,15 @@ class StatedSource:
         scale = gradient[0] * self.std_uncertainty
         drawn: FloatArray = scale * stream(self.component).standard_normal(replicates)
         return drawn
+
+    def footprint(self, gradient: Sequence[float]) -> dict[Component, FloatArray]:
+        """One error."""
+        return {self.component: np.array([gradient[0] * self.std_uncertainty])}
+
+    def conservative_draws(self, rng: np.random.Generator, replicates: int) -> FloatArray:
+        """Student's t replicates, shape (1, replicates)."""
+        normal = rng.standard_normal(replicates)
+        return (self.mean + self.std_uncertainty * normal * t_factors(self.dof, rng, replicates))[np.newaxis]
 
 
 @dataclass(frozen=True, kw_only=True, slots=True, eq=False)
@@ -263,6 +284,38 @@ class CellSource:
         (drawn,) = resampled_sums(per_cell[np.newaxis], stream(self.components[0]), replicates)
         deviations: FloatArray = drawn
         return deviations
+
+    def footprint(self, gradient: Sequence[float]) -> dict[Component, FloatArray]:
+        """One error a cell."""
+        weights = np.asarray(gradient, dtype=float) * self._inflate
+        per_cell = np.sum(weights[:, np.newaxis] * self.deviations, axis=0)
+        wanted, found = self.spread(gradient).variance, float(np.sum(per_cell**2))
+        factor = math.sqrt(wanted / found) if found > 0 else 0.0
+        return {self.components[0]: per_cell * factor}
+
+    def conservative_draws(self, rng: np.random.Generator, replicates: int) -> FloatArray:
+        """Multivariate Student's t replicates of the means, shape (n_components, replicates)."""
+        both = self.shown[:, np.newaxis] & self.shown[np.newaxis]
+        of_means = self.covariance * both.sum(axis=2) / np.outer(self.counts, self.counts)
+        sizes, directions = np.linalg.eigh(of_means)
+        factor = directions * np.sqrt(np.maximum(sizes, 0.0))
+        drawn = np.zeros((len(self.components), replicates))
+        for column in factor.T:
+            drawn += column[:, np.newaxis] * rng.standard_normal(replicates)
+        drawn *= t_factors(float(self.counts.min()) - 1, rng, replicates)
+        means = np.sum(np.where(self.shown, self.values, 0.0), axis=1) / self.counts
+        shifted: FloatArray = means[:, np.newaxis] + drawn
+        return shifted
+
+
+def t_factors(dof: float, rng: np.random.Generator, replicates: int) -> FloatArray:
+    """What turns normal replicates into Student's t ones, shape (replicates,); NaN without any dof."""
+    if math.isinf(dof):
+        return np.ones(replicates)
+    if not dof > 0:
+        return np.full(replicates, math.nan)
+    factors: FloatArray = np.sqrt(dof / rng.chisquare(dof, replicates))
+    return factors
 
 
 def resampled_sums(values: FloatArray, rng: np.random.Generator, replicates: int) -> FloatArray:

@@ -12,7 +12,8 @@ from .construct_rows import averaged_curve, cell_rows
 from .flags import Flag, codes
 from .measurements import Measurement, measure, protocol_flags
 from .mutations import incomplete_cycles
-from .result import CellRow, DrawnCurve, Table, Value, available, flat_values
+from .rows import CellRow, DrawnCurve
+from .tables import Table, Value, available, flat_values
 
 
 @dataclass(frozen=True, kw_only=True, slots=True)

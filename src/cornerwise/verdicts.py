@@ -57,16 +57,27 @@ def shortcut_verdict(corners: Sequence[ChargeVerdict], bias: Interval, tolerance
     return "unresolved"
 
 
-def interaction_verdict(interval: Interval, threshold: float) -> InteractionVerdict:
-    """Judge an interaction energy by its interval and the threshold, same unit."""
-    if interval.outside(-threshold, threshold):
+def interaction_verdict(interval: Interval, threshold: float, *, established: bool) -> InteractionVerdict:
+    """Judge an interaction energy.
+
+    Parameters
+    ----------
+    interval : Interval
+        Of the energy, at the campaign's confidence.
+    threshold : float
+        Size it must exceed to be called coupled, same unit.
+    established : bool
+        Whether the p value adjusted for the number of cycles is at most 1 - confidence: `coupled` and
+        `detected` need it, so that looking at many pairs does not make some of them couple by chance.
+    """
+    if established and interval.outside(-threshold, threshold):
         return "coupled"
-    if interval.excludes(0.0):
+    if established and interval.excludes(0.0):
         return "detected"
     return "uncoupled" if interval.inside(-threshold, threshold) else "unresolved"
 
 
-def favours(interaction: float, interval: Interval, order: int) -> Favours | None:
+def favours(interaction: float, interval: Interval, order: int, *, established: bool) -> Favours | None:
     """State the native interaction favours; None while its sign is not known.
 
     Parameters
@@ -77,6 +88,8 @@ def favours(interaction: float, interval: Interval, order: int) -> Favours | Non
         Its interval, same unit.
     order : int
         Number of mutations of the cycle.
+    established : bool
+        As for `interaction_verdict`.
 
     Notes
     -----
@@ -84,6 +97,6 @@ def favours(interaction: float, interval: Interval, order: int) -> Favours | Non
     energy enters the cycle with the wild type's sign: I = (-1)**order e. A positive e favours the resting
     state. It is a difference between two states, never a contact.
     """
-    if not interval.excludes(0.0):
+    if not (established and interval.excludes(0.0)):
         return None
     return "resting" if interaction * (-1) ** order > 0 else "activated"
