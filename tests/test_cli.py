@@ -33,7 +33,8 @@ def test_new_check_and_couple_work_on_each_other(tmp_path: Path) -> None:
     assert "wrote result.json" in coupled.stderr
     written = sorted(p.name for p in (tmp_path / "results").iterdir())
     assert written == [
-        "budget.csv", "cells.csv", "constructs.csv", "interactions.csv", "midpoints.csv", "result.json",
+        "budget.csv", "cells.csv", "constructs.csv", "interactions.csv", "midpoints.csv", "report.html",
+        "result.json",
     ]  # fmt: skip
 
 

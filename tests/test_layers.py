@@ -40,6 +40,9 @@ ALLOWED = {
     "typer": {"cli"},
     "statsmodels": set(),  # the tests compare with it
     "matplotlib": {"render"},
+    "fontTools": {"render"},
+    "jinja2": {"render"},
+    "markupsafe": {"render"},
 }
 
 SOURCE = Path(cornerwise.__file__).parent

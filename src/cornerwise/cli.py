@@ -6,14 +6,18 @@ import os
 import sys
 import time
 import traceback
-from collections.abc import Callable, Mapping
+from collections import Counter
+from collections.abc import Callable, Iterable, Mapping
 from pathlib import Path
-from typing import Annotated
+from typing import TYPE_CHECKING, Annotated
 
 import typer
 from typer.core import TyperGroup
 
-from .errors import CornerwiseError, DataRefused
+from .errors import CornerwiseError, DataRefused, UsageError
+
+if TYPE_CHECKING:
+    from .result import Result
 
 _PATIENCE_S = 1.0
 
@@ -79,7 +83,28 @@ def _write(files: Mapping[str, str | bytes], folder: Path, *, force: bool) -> No
     from .render.files import write_folder
 
     write_folder(files, folder, force=force)
-    print(f"cornerwise: wrote {', '.join(files)} into {folder}", file=sys.stderr)
+    print(f"cornerwise: wrote {_listed(files)} into {folder}", file=sys.stderr)
+
+
+def _listed(files: Iterable[str]) -> str:
+    """Names of files, those in a folder only counted."""
+    names = list(files)
+    below = Counter(name.partition("/")[0] for name in names if "/" in name)
+    return ", ".join(
+        [name for name in names if "/" not in name] + [f"{n} files in {d}" for d, n in below.items()]
+    )
+
+
+def _rendered(result: Result, *, figures: bool) -> dict[str, str | bytes]:
+    """Everything that ``--out`` writes of a result."""
+    from .render.files import result_files
+
+    files: dict[str, str | bytes] = {**result_files(result)}
+    if figures:
+        from .render.figures.files import figure_files
+
+        files |= figure_files(result, _progress())
+    return files
 
 
 def _version(asked: bool) -> None:
@@ -164,30 +189,36 @@ def check(
 def couple(
     path: _Campaign,
     out: Annotated[
-        Path | None, typer.Option(metavar="DIR", help="Write result.json and the CSV tables into DIR.")
+        Path | None,
+        typer.Option(metavar="DIR", help="Write result.json, the CSV tables and report.html into DIR."),
     ] = None,
+    figures: Annotated[
+        bool, typer.Option("--figures", help="With --out: draw all figures too, SVG, PDF and PNG.")
+    ] = False,
     force: _Force = False,
     as_json: _Json = False,
 ) -> None:
     """Compute the interaction energies of all cycles.
 
-    Prints the coupling table; with --out also writes result.json and the CSV tables.
+    Prints the coupling table; with --out also writes result.json, the CSV tables and a report in one HTML
+    file, and with --figures the figures at journal widths.
 
     \b
     For example:
       cornerwise couple trial
-      cornerwise couple trial --out results --force
+      cornerwise couple trial --out results --figures --force
       cornerwise couple trial.xlsx --json > result.json
     """  # noqa: D301
     from . import couple as run
     from . import read
-    from .render.files import result_files
     from .render.terminal import print_result
 
+    if figures and out is None:
+        raise UsageError("--figures needs a folder to draw into; give --out DIR")
     _expect_room(out, force=force)
     result = run(read(path), _progress())
     if out is not None:  # before the table is printed: the reader of a pipe may go away
-        _write(result_files(result), out, force=force)
+        _write(_rendered(result, figures=figures), out, force=force)
     if as_json:
         print(result.to_json(), end="")
     else:

@@ -33,7 +33,9 @@ def _csv(table: Table[Row]) -> str:
 
 
 def result_files(result: Result) -> dict[str, str]:
-    """Name and text of every file of a result."""
+    """Name and text of every file of a result but the figures; those are `figures.files.figure_files`."""
+    from .report.page import report_html  # with its templates, only when files are written
+
     return {
         "result.json": result.to_json(),
         "interactions.csv": _csv(result.interactions),
@@ -41,6 +43,7 @@ def result_files(result: Result) -> dict[str, str]:
         "cells.csv": _csv(result.cells),
         "midpoints.csv": _csv(result.midpoints),
         "budget.csv": _csv(result.budget),
+        "report.html": report_html(result),
     }
 
 
@@ -50,7 +53,8 @@ def write_folder(files: Mapping[str, str | bytes], folder: Path, *, force: bool 
     Parameters
     ----------
     files : mapping of str to str or bytes
-        File name to contents, text written as UTF-8 with ``\n`` line ends.
+        File name, or a path below `folder` with forward slashes, to contents; text is written
+        as UTF-8 with ``\n`` line ends.
     folder : Path
         Appears, or is replaced, as a whole once every file is complete.
     force : bool, optional
@@ -69,13 +73,23 @@ def write_folder(files: Mapping[str, str | bytes], folder: Path, *, force: bool 
         raise UsageError(f"cannot write beside {folder}: {error.strerror}") from error
     try:
         for name, contents in files.items():
-            (fresh / name).write_bytes(contents.encode("utf-8") if isinstance(contents, str) else contents)
+            place = _place_below(fresh, name)
+            place.parent.mkdir(parents=True, exist_ok=True)
+            place.write_bytes(contents.encode("utf-8") if isinstance(contents, str) else contents)
         fresh.chmod(0o755)
         _move_into_place(fresh, folder)
     except OSError as error:
         raise UsageError(f"cannot write {folder}: {error.strerror}; nothing was changed") from error
     finally:
         shutil.rmtree(fresh, ignore_errors=True)
+
+
+def _place_below(folder: Path, name: str) -> Path:
+    """Path of a file inside `folder`; a name that would leave it is a fault of the program."""
+    parts = name.split("/")
+    if any(part in ("", ".", "..") or "\\" in part or ":" in part for part in parts):
+        raise ValueError(f"{name!r} is no path below a folder")
+    return folder.joinpath(*parts)
 
 
 def _move_into_place(fresh: Path, folder: Path) -> None:

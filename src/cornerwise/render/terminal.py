@@ -12,9 +12,10 @@ from rich.table import Table as Grid
 from rich.text import Text
 
 from ..flags import FLAG_CODES, Flag
-from ..result import InteractionRow, Result
+from ..result import Result
 from ..surveying import Survey, SurveyRow
 from .legend import CAUTION, FORMULA, percent, settings_sentences, sign_sentences, unit_phrase
+from .ordering import by_strength
 from .rounding import span, with_uncertainty
 
 _VERDICT_STYLE = {
@@ -94,11 +95,6 @@ def _interaction_grid(result: Result, marks: dict[str, str], plus_minus: str) ->
             Text(" ".join(marks[code] for code in row.flags)),
         )
     return grid
-
-
-def by_strength(rows: Sequence[InteractionRow]) -> list[InteractionRow]:
-    """Rows by rank, those without a rank last."""
-    return sorted(rows, key=lambda row: (row.rank is None, row.rank or 0))
 
 
 def _flag_lines(flags: Sequence[Flag], marks: dict[str, str]) -> list[tuple[str, str]]:

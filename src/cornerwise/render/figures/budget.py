@@ -5,8 +5,8 @@ from __future__ import annotations
 from collections.abc import Sequence
 
 from ...result import BudgetRow, InteractionRow, Result
+from ..ordering import by_strength, grouped
 from ..rounding import decimals_for, number
-from .interactions import by_strength
 from .lettering import width_of
 from .marks import Sheet
 from .scales import Scale, rule_below
@@ -68,9 +68,7 @@ def _share(share: float | None) -> str:
 
 def budget_sheets(result: Result, width: float) -> list[Sheet]:
     """One line a cycle: its standard uncertainty and which sources make it up."""
-    parts: dict[str, list[BudgetRow]] = {}
-    for part in _known(result.budget):
-        parts.setdefault(part.cycle, []).append(part)
+    parts = grouped((part.cycle, part) for part in _known(result.budget))
     rows = [row for row in by_strength(result.interactions) if row.cycle in parts]
     each = int((TALLEST_MM - 6.0 - _BOTTOM) / (2 * _LINE_MM - 1.0))
     return [_sheet(rows[start : start + each], parts, width) for start in range(0, len(rows), each)]

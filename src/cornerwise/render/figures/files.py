@@ -8,12 +8,13 @@ from collections.abc import Callable, Iterable, Mapping, Sequence
 from concurrent.futures import ProcessPoolExecutor
 from multiprocessing import get_context
 
-from ...result import BudgetRow, CellRow, InteractionRow, Result, Table
+from ...result import CellRow, InteractionRow, Result, Table
 from ...surveying import Survey
+from ..ordering import by_strength, grouped
 from .budget import budget_sheets, cycle_budget
 from .charges import charge_sheets
 from .curves import ConstructCurves, curve_sheets, cycle_curves
-from .interactions import by_strength, interaction_sheets
+from .interactions import interaction_sheets
 from .marks import Sheet
 from .matrix import matrix_sheet
 from .printing import printed
@@ -33,10 +34,7 @@ def rendered(sheet: Sheet, form: Format) -> bytes:
 
 def cells_by_construct(cells: Table[CellRow]) -> dict[str, tuple[CellRow, ...]]:
     """Cells of each construct in the order of the table."""
-    grouped: dict[str, list[CellRow]] = {}
-    for cell in cells:
-        grouped.setdefault(cell.construct, []).append(cell)
-    return {label: tuple(own) for label, own in grouped.items()}
+    return {label: tuple(own) for label, own in grouped((cell.construct, cell) for cell in cells).items()}
 
 
 def curve_files(survey: Survey) -> dict[str, bytes]:
@@ -77,9 +75,7 @@ class CycleFigures:
         self._result = result
         self._constructs = {row.construct: row for row in result.constructs}
         self._cells = cells_by_construct(result.cells)
-        self._budget: dict[str, list[BudgetRow]] = {}
-        for part in result.budget:
-            self._budget.setdefault(part.cycle, []).append(part)
+        self._budget = grouped((part.cycle, part) for part in result.budget)
 
     def of(self, row: InteractionRow, width: float) -> dict[str, Sheet]:
         """Sheets that apply to a cycle, by kind: ``shape``, ``curves``, ``voltage``, ``budget``."""

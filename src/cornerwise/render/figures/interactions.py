@@ -6,6 +6,7 @@ from collections.abc import Sequence
 
 from ...result import InteractionRow, Result
 from ..legend import formula_and_sign
+from ..ordering import by_strength
 from ..rounding import with_uncertainty
 from .lettering import signed, width_of
 from .marks import Sheet, Symbol
@@ -22,20 +23,15 @@ SYMBOL_OF: dict[str, tuple[Symbol, Ink]] = {
 }
 
 
-def by_strength(rows: Sequence[InteractionRow]) -> list[InteractionRow]:
-    """Rows by rank, those without a rank last."""
-    return sorted(rows, key=lambda row: (row.rank is None, row.rank or 0))
-
-
 def interaction_sheets(result: Result, width: float) -> list[Sheet]:
     """All cycles that have an energy, strongest first, as many to a sheet as a page holds."""
     rows = [row for row in by_strength(result.interactions) if row.interaction is not None]
     each = int((TALLEST_MM - _TOP - _BOTTOM) / _LINE_MM)
-    scale = _limits(rows, result) if rows else (0.0, 1.0)
+    scale = scale_limits(rows, result) if rows else (0.0, 1.0)
     return [_sheet(rows[start : start + each], result, scale, width) for start in range(0, len(rows), each)]
 
 
-def _limits(rows: Sequence[InteractionRow], result: Result) -> tuple[float, float]:
+def scale_limits(rows: Sequence[InteractionRow], result: Result) -> tuple[float, float]:
     """Ends of the scale: every value, the threshold, and intervals up to a few times that reach."""
     threshold = result.settings.energy_threshold
     reach = 1.6 * max(threshold, *(abs(row.interaction or 0.0) for row in rows))

@@ -30,17 +30,26 @@ def svg_file(sheet: Sheet) -> bytes:
     ).encode()
 
 
-def svg_inline(sheet: Sheet) -> str:
+def svg_inline(sheet: Sheet, *, decorative: bool = False) -> str:
     """SVG element for an HTML page whose style sheet gives the inks their colours.
 
-    Strokes have class ``s-`` and the ink's name, fills ``f-``.
+    Parameters
+    ----------
+    sheet : Sheet
+        The figure.
+    decorative : bool, optional
+        Hide it from those who cannot see it: the text beside it says the same.
+
+    Returns
+    -------
+    str
+        Strokes have class ``s-`` and the ink's name, fills ``f-``.
     """
     body = "".join(_drawn(mark, _by_class) for mark in sheet.marks)
     width, height = _n(sheet.width), _n(sheet.height)
-    return (
-        f'<svg class="drawn" viewBox="0 0 {width} {height}" role="img" aria-label="{plain(sheet.title)}">'
-        f"{body}</svg>"
-    )
+    named = 'aria-hidden="true"' if decorative else f'role="img" aria-label="{plain(sheet.title)}"'
+    kind = "strip" if decorative else "drawn"
+    return f'<svg class="{kind}" viewBox="0 0 {width} {height}" {named}>{body}</svg>'
 
 
 def plain(text: str) -> str:
@@ -51,7 +60,7 @@ def plain(text: str) -> str:
 
 def _n(number: float) -> str:
     text = f"{number:.2f}".rstrip("0").rstrip(".")
-    return "0" if text == "-0" else text
+    return "0" if text == "-0" else text.replace("0.", ".", 1) if text.startswith(("0.", "-0.")) else text
 
 
 def _fixed(kind: str, ink: Ink) -> str:
@@ -102,8 +111,8 @@ def _symbols(mark: Symbols, paint: Paint) -> str:
             pen = f'{paint("stroke", mark.ink)} stroke-width="{_n(mark.size)}" stroke-linecap="round"'
             return f'<path d="{dots}" {pen}/>\n'
         case "ring":
-            turn = f"a{half} {half} 0 1 0 {_n(mark.size)} 0a{half} {half} 0 1 0 {_n(-mark.size)} 0"
-            rings = "".join(f"M{_n(x - mark.size / 2)} {_n(y)}{turn}" for x, y in mark.points)
+            turn = f"a{half} {half} 0 1 0 0 .01z"  # all the way round but a hair, which the z closes
+            rings = "".join(f"M{_n(x + mark.size / 2)} {_n(y)}{turn}" for x, y in mark.points)
             return f'<path d="{rings}" {stroke}/>\n'
         case "cross":
             strokes = []

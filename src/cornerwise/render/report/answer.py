@@ -1,0 +1,150 @@
+"""The answer first: which pairs, how sure, what not to trust."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+from ...flags import FLAG_CODES
+from ...result import Result
+from ..legend import percent
+from ..methods import counted
+from .views import CycleView, typeset
+
+_MOST = 12  # cycles named in one line
+
+_VERDICT_TITLES = {
+    "coupled": "Coupled: the whole interval lies beyond {threshold} on one side of 0",
+    "detected": "Detected: an interaction, but maybe a weaker one than {threshold}",
+    "unresolved": "Unresolved: the data say neither that there is an interaction nor that there is none",
+    "uncoupled": "Uncoupled: shown to be weaker than {threshold}",
+}
+_WHAT_FLAGS_SAY = {
+    "unsaturated-low": "curves do not level off at the low end",
+    "unsaturated-high": "curves do not level off at the high end",
+    "sloping-plateau": "a plateau slopes",
+    "not-monotonic": "a curve falls where it should rise",
+    "coarse-steps": "voltage steps are coarse for the steepness",
+    "noisy": "curves are noisy",
+    "midpoint-misleads": "midpoints would give another energy than medians",
+    "few-cells": "a construct rests on few cells",
+    "single-batch": "all cells come from one batch",
+    "charge-shift": "a mutant's total charge changed",
+    "charge-nonadditive": "charges do not add up: the energy depends on the voltage",
+    "charge-assumed": "a total charge was never measured",
+    "charge-methods-differ": "methods for total charge disagree",
+    "charge-lower-bound": "a total charge is only a lower bound",
+    "charge-implausible": "a total charge is implausible",
+    "mixed-ranges": "corners were recorded over different voltages",
+    "mixed-protocol": "corners were recorded with different protocols",
+    "outlying-cell": "a cell lies far from the others",
+}
+
+
+@dataclass(frozen=True, kw_only=True, slots=True)
+class Group:
+    """Cycles that share a verdict or a doubt."""
+
+    key: str
+    title: str
+    shown: tuple[CycleView, ...]
+    more: int  # that are not shown
+
+
+@dataclass(frozen=True, kw_only=True, slots=True)
+class Answer:
+    """The first screen of the report."""
+
+    headline: str
+    verdicts: tuple[Group, ...]
+    sureness: tuple[str, ...]
+    doubts: tuple[Group, ...]
+    clean: Group  # coupled or detected without any doubt
+
+
+def _group(key: str, title: str, cycles: Sequence[CycleView]) -> Group:
+    return Group(key=key, title=title, shown=tuple(cycles[:_MOST]), more=max(0, len(cycles) - _MOST))
+
+
+def answer(result: Result, cycles: Sequence[CycleView]) -> Answer:
+    """Sort the cycles into what is known, how surely, and what is doubtful.
+
+    Parameters
+    ----------
+    result : Result
+        What `cornerwise.couple` returned.
+    cycles : sequence of CycleView
+        Strongest first.
+    """
+    threshold = f"{result.settings.energy_threshold:.3g} {result.settings.energy_unit}"
+    verdicts = []
+    for verdict, title in _VERDICT_TITLES.items():
+        members = [one for one in cycles if one.row.interaction_verdict == verdict]
+        if members:
+            verdicts.append(_group(verdict, title.format(threshold=threshold), members))
+    found = [one for one in cycles if one.row.interaction_verdict in ("coupled", "detected")]
+    return Answer(
+        headline=_headline(cycles, threshold),
+        verdicts=tuple(verdicts),
+        sureness=tuple(_sureness(result, cycles)),
+        doubts=tuple(_doubts(cycles)),
+        clean=_group("clean", "", [one for one in found if not one.row.flags]),
+    )
+
+
+def _headline(cycles: Sequence[CycleView], threshold: str) -> str:
+    if not cycles:
+        return "No cycle is complete, so there is no interaction energy to give."
+    coupled = sum(one.row.interaction_verdict == "coupled" for one in cycles)
+    detected = sum(one.row.interaction_verdict == "detected" for one in cycles)
+    kinds = "cycle" if any(one.row.order != 2 for one in cycles) else "pair"
+    found = "None" if not coupled else str(coupled)
+    verb = "are" if coupled > 1 else "is"
+    text = f"{found} of {counted(len(cycles), kinds)} {verb} coupled by more than {threshold}"
+    if not detected:
+        return f"{text}."
+    return f"{text}; {detected} more {'is' if detected == 1 else 'are'} detected."
+
+
+def _sureness(result: Result, cycles: Sequence[CycleView]) -> list[str]:
+    level = percent(result.settings.confidence)
+    sentences = [
+        f"Every interval is a {level} interval for that cycle alone, from the scatter of cells and from all "
+        f"stated uncertainties; p values are adjusted for {counted(len(cycles), 'cycle')}."
+    ]
+    strongest = next((one for one in cycles if one.row.rank == 1), None)
+    if strongest is not None and len(cycles) > 1:
+        row = strongest.row
+        place = (
+            "and stays first in the interval of its rank"
+            if row.rank_high == 1
+            else f"but the data allow it any rank from {row.rank_low} to {row.rank_high}"
+        )
+        sentences.append(f"{row.cycle} has the largest energy, {place}.")
+    weak = [
+        one.row.cycle
+        for one in cycles
+        if one.row.interaction_verdict == "detected"
+        and one.row.p_adjusted is not None
+        and one.row.p_adjusted > 1 - result.settings.confidence
+    ]
+    if weak:
+        sentences.append(
+            f"Among so many cycles, {', '.join(weak[:_MOST])} could be chance: adjusted p above "
+            f"{1 - result.settings.confidence:.2g}."
+        )
+    return [typeset(sentence) for sentence in sentences]
+
+
+def _doubts(cycles: Sequence[CycleView]) -> list[Group]:
+    """What not to trust: shortcuts that are wrong or untested, then every flag with the cycles it touches."""
+    invalid = [one for one in cycles if one.row.shortcut_verdict == "invalid"]
+    groups = []
+    if invalid:
+        title = "Median voltages alone give a wrong energy; only the full energy counts"
+        groups.append(_group("shortcut invalid", title, invalid))
+    for code in FLAG_CODES:
+        touched = [one for one in cycles if code in one.row.flags]
+        if touched:
+            groups.append(_group(code, _WHAT_FLAGS_SAY.get(code, code), touched))
+    return groups

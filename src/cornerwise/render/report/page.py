@@ -1,0 +1,120 @@
+"""The report's page: templates filled, style and behaviour inlined, nothing fetched."""
+
+from __future__ import annotations
+
+import base64
+import hashlib
+from importlib.resources import files
+
+from jinja2 import Environment, PackageLoader, StrictUndefined
+from markupsafe import Markup
+
+from ...result import Result
+from ..figures.files import overview_sheets
+from ..figures.style import SINGLE_COLUMN_MM
+from ..figures.vector import svg_inline
+from ..legend import CAUTION, FORMULA, percent, setting_values, sign_sentences, unit_phrase
+from ..methods import figure_legends, methods_paragraphs
+from .answer import answer
+from .views import CycleViews, cell_views, construct_view, typeset
+
+MOST_DRAWN_CYCLES = 60  # beyond it a cycle's figures are left out unless they are asked for
+_OVERVIEW_TITLES = {
+    "interactions": "All interactions, strongest first",
+    "matrix": "Residue by residue",
+    "charges": "Total charge against the wild type",
+    "budget": "Where the uncertainty comes from",
+}
+RESEARCH_ONLY = (
+    "For research use; not for clinical variant interpretation. A coupling energy is a difference between "
+    "two states and no proof of a contact. Your laboratory's rules and expert review come first."
+)
+
+
+def report_html(result: Result, *, cycle_figures: bool | None = None) -> str:
+    """Report of a result as one HTML page.
+
+    Parameters
+    ----------
+    result : Result
+        What `cornerwise.couple` returned.
+    cycle_figures : bool, optional
+        Whether each cycle has its figures; None for yes up to 60 cycles.
+
+    Returns
+    -------
+    str
+        A whole document that needs no other file and no network; the same text for the same result.
+    """
+    drawn = len(result.interactions) <= MOST_DRAWN_CYCLES if cycle_figures is None else cycle_figures
+    cycles = CycleViews(result, with_figures=drawn).all()
+    style, script = _asset("style.css"), _asset("behaviour.js")
+    paragraphs, references = methods_paragraphs(result)
+    overview = _overview(result)
+    first = next((sheets[0] for kind, _, sheets in overview if kind == "interactions"), None)
+    return (
+        _environment()
+        .get_template("report.html")
+        .render(
+            result=result,
+            settings=result.settings,
+            title=result.settings.title or "Interaction energies",
+            answer=answer(result, cycles),
+            cycles=cycles,
+            drawn=drawn,
+            first_figure=first,
+            overview=[one for one in overview if one[0] != "interactions" or len(one[2]) > 1],
+            constructs=[construct_view(row) for row in result.constructs],
+            cells=cell_views(result),
+            methods=[typeset(text) for text in paragraphs],
+            references=references,
+            legends=[(kind, typeset(text)) for kind, text in figure_legends(result).items()],
+            setting_values=setting_values(result.settings),
+            level=percent(result.settings.confidence),
+            unit=unit_phrase(result.settings),
+            formula=FORMULA,
+            signs=sign_sentences({row.order for row in result.interactions}),
+            caution=CAUTION,
+            research_only=RESEARCH_ONLY,
+            style=Markup(style),
+            script=Markup(script),
+            policy=_policy(style, script),
+        )
+    )
+
+
+def _environment() -> Environment:
+    environment = Environment(
+        loader=PackageLoader("cornerwise.render.report"),
+        autoescape=True,
+        undefined=StrictUndefined,
+        trim_blocks=True,
+        lstrip_blocks=True,
+    )
+    environment.filters["typeset"] = typeset
+    return environment
+
+
+def _asset(name: str) -> str:
+    return (files(__package__) / "templates" / name).read_text(encoding="utf-8")
+
+
+def _policy(style: str, script: str) -> str:
+    """Content security policy: this style, this script, no request to anywhere."""
+
+    def digest(text: str) -> str:
+        return base64.b64encode(hashlib.sha256(text.encode("utf-8")).digest()).decode("ascii")
+
+    return (
+        f"default-src 'none'; style-src 'sha256-{digest(style)}'; script-src 'sha256-{digest(script)}'; "
+        "base-uri 'none'; form-action 'none'"
+    )
+
+
+def _overview(result: Result) -> list[tuple[str, str, list[Markup]]]:
+    """Kind, title and drawings of the figures of the whole campaign."""
+    return [
+        (kind, _OVERVIEW_TITLES[kind], [Markup(svg_inline(sheet)) for sheet in sheets])
+        for kind, sheets in overview_sheets(result, SINGLE_COLUMN_MM).items()
+        if sheets
+    ]
