@@ -9,6 +9,7 @@ from importlib.metadata import version
 from .backgrounds import background_rows
 from .batches import units_notes
 from .campaign import Campaign, Settings, StatedCharge
+from .charges import LIMITING_SLOPE
 from .construct_rows import cell_rows, construct_row
 from .energies import EnergyBook
 from .interaction_rows import Corners, interaction_rows
@@ -36,6 +37,12 @@ def _notes(measurements: Sequence[Measurement], settings: Settings) -> tuple[str
             f"energies use {shared} total charge for every construct as the settings ask; the measured "
             f"charges of {', '.join(measured)} serve only for charge verdicts and the shortcut's bias"
         )
+    sloped = [m.label for m in measurements if m.charge is not None and m.charge.kind == LIMITING_SLOPE]
+    if sloped:
+        notes.append(
+            f"the total charge of {', '.join(sloped)} is a limiting slope of the open probability, which sees "
+            "only charge coupled to opening"
+        )
     if settings.subunits > 1:
         notes.append(
             f"every energy is per channel; the protein has {settings.subunits} subunits and each carries "
@@ -52,6 +59,22 @@ def _units_notes(
     return (
         *units_notes("interaction", [(row.cycle, row.units) for row in interactions]),
         *units_notes("energy", [(row.construct, row.units) for row in constructs]),
+    )
+
+
+def _ranking_notes(interactions: Sequence[InteractionRow]) -> tuple[str, ...]:
+    """A warning that the top of a ranking is too good to be true, where shrunken estimates tell."""
+    first = [row for row in interactions if row.rank == 1]
+    ranked = sum(row.rank is not None for row in interactions)
+    if not first or first[0].interaction is None or first[0].shrunken is None:
+        return ()
+    (top,) = first
+    if top.shrunken == top.interaction:
+        return ()
+    return (
+        f"the strongest of {ranked} interactions tend to exaggerate, chance having helped to put them there: "
+        f"{top.cycle} at {top.interaction:.2f} {top.energy_unit} is likely to be worth {top.shrunken:.2f}; "
+        "the ranking gives such an estimate for every cycle",
     )
 
 
@@ -99,7 +122,11 @@ def couple(campaign: Campaign, progress: Progress | None = None) -> Result:
         budget=Table(BudgetRow, budget),
         backgrounds=Table(BackgroundRow, background_rows(campaign.cycles, book, settings)),
         flags=(*(flag for _, own, _ in described for flag in own), *flags),
-        notes=(*_notes(measured, settings), *_units_notes(interactions, list(rows.values()))),
+        notes=(
+            *_notes(measured, settings),
+            *_units_notes(interactions, list(rows.values())),
+            *_ranking_notes(interactions),
+        ),
         inputs=campaign.inputs,
         versions=_versions(),
     )

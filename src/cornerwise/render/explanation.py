@@ -74,12 +74,18 @@ def _interaction(result: Result, row: InteractionRow) -> str:
     text += (
         f" The {percent(settings.confidence)} interval is {span((row.low, row.high), row.std_uncertainty)} "
         f"(Student's t, {row.dof:.1f} degrees of freedom; p = {row.p_value:.2g}"
-        f"{_adjusted(result, row)}). It is {row.interaction_verdict}: "
-        f"{_VERDICT_REASONS[row.interaction_verdict].format(threshold=threshold)}."
+        f"{_adjusted(result, row)}). It is {row.interaction_verdict}: {_reason(row, threshold)}."
     )
     if row.favours is not None:
         text += f" The native interaction favours the {row.favours} state; this is no proof of a contact."
     return text
+
+
+def _reason(row: InteractionRow, threshold: str) -> str:
+    beyond_0 = row.low is not None and row.high is not None and (row.low > 0 or row.high < 0)
+    if row.interaction_verdict == "unresolved" and beyond_0:
+        return "the interval excludes 0, but not once the p value is adjusted for the number of cycles"
+    return _VERDICT_REASONS[row.interaction_verdict].format(threshold=threshold)
 
 
 def _adjusted(result: Result, row: InteractionRow) -> str:
