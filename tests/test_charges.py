@@ -7,7 +7,14 @@ import pytest
 from builders import campaign, construct
 from reference_values import load
 
-from cornerwise.campaign import ChargeReplicate, ChargeSummary, Construct, Exclusion, StatedCharge
+from cornerwise.campaign import (
+    ChargeReplicate,
+    ChargeSummary,
+    Construct,
+    Exclusion,
+    OpeningCurve,
+    StatedCharge,
+)
 from cornerwise.charges import (
     PLAUSIBLE_CHARGE_E0,
     PLAUSIBLE_LOSS_PER_MUTATION_E0,
@@ -17,6 +24,8 @@ from cornerwise.charges import (
     plausibility_flags,
 )
 from cornerwise.coupling import couple
+from cornerwise.errors import DataRefused, Origin
+from cornerwise.gating import LinearSequence
 from cornerwise.mutations import parse_mutation
 
 
@@ -35,7 +44,7 @@ NOISE, COUNT = _cells("noise analysis", [13.0, 12.6, 13.4]), _cells("channel cou
 
 
 def test_values_are_kept_apart_by_method() -> None:
-    values = charge_values(_construct(*NOISE, *COUNT))
+    values = charge_values(_construct(*NOISE, *COUNT), 22.0)
     assert [(v.method, v.quantity.n, round(v.quantity.mean, 6)) for v in values] == [
         ("channel count", 2, 12.1),
         ("noise analysis", 3, 13.0),
@@ -43,7 +52,7 @@ def test_values_are_kept_apart_by_method() -> None:
 
 
 def test_the_method_with_most_cells_is_used_unless_another_is_preferred() -> None:
-    values = charge_values(_construct(*NOISE, *COUNT))
+    values = charge_values(_construct(*NOISE, *COUNT), 22.0)
     assert choose(values, None).method == "noise analysis"  # type: ignore[union-attr]
     assert choose(values, "channel count").method == "channel count"  # type: ignore[union-attr]
     assert choose(values, "a third").method == "noise analysis"  # type: ignore[union-attr]
@@ -52,22 +61,22 @@ def test_the_method_with_most_cells_is_used_unless_another_is_preferred() -> Non
 
 def test_literature_value_is_trusted_as_it_stands_and_cited() -> None:
     cited = ChargeSummary(construct="WT", charge_e0=13.0, sem_e0=0.4, n=None, citation="a paper, 2001")
-    (value,) = charge_values(_construct(summaries=(cited,)))
+    (value,) = charge_values(_construct(summaries=(cited,)), 22.0)
     assert value.source == "literature: a paper, 2001"
     assert math.isinf(value.quantity.dof)
 
 
 def test_one_counted_cell_has_the_uncertainty_of_its_count() -> None:
-    (value,) = charge_values(_construct(*_cells(None, [13.0], own_uncertainty_e0=0.7)))
+    (value,) = charge_values(_construct(*_cells(None, [13.0], own_uncertainty_e0=0.7)), 22.0)
     assert (value.quantity.mean, value.quantity.sem) == (13.0, 0.7)
-    (pair,) = charge_values(_construct(*_cells(None, [13.0, 12.0], own_uncertainty_e0=0.7)))
+    (pair,) = charge_values(_construct(*_cells(None, [13.0, 12.0], own_uncertainty_e0=0.7)), 22.0)
     assert pair.quantity.sem == pytest.approx(np.std([13.0, 12.0], ddof=1) / math.sqrt(2))
 
 
 @pytest.mark.parametrize(("other", "flagged"), [([12.9, 13.3, 12.7], False), ([11.0, 11.2, 10.9], True)])
 def test_methods_that_disagree_are_flagged(other: list[float], flagged: bool) -> None:
     one = _construct(*NOISE, *_cells("channel count", other))
-    values = charge_values(one)
+    values = charge_values(one, 22.0)
     flags = method_flags(one, values, choose(values, "noise analysis"), 0.95)  # type: ignore[arg-type]
     assert [flag.code for flag in flags] == (["charge-methods-differ"] if flagged else [])
     if flagged:
@@ -183,3 +192,67 @@ def test_stated_charge_carries_its_citation() -> None:
     stated = StatedCharge(value_e0=13.0, sem_e0=0.2, citation="a paper, 2001")
     rows = couple(campaign(constructs, charge=stated)).constructs
     assert {row.charge_source for row in rows} == {"stated: a paper, 2001"}
+
+
+def _opening(label: str, cell: str, lowest_po: float, scale: float = 1.0) -> OpeningCurve:
+    scheme = LinearSequence(
+        charges_e0=tuple(scale * z for z in (3.5, 3.5, 3.5, 2.5)),
+        midpoints_mv=(-60.0, -50.0, -40.0, -30.0),
+        temperature_c=22.0,
+    )
+    voltage = np.arange(-140.0, 21.0, 5.0)
+    po = scheme.open_probability(voltage)
+    kept = po >= lowest_po
+    return OpeningCurve(construct=label, cell=cell, voltage_mv=voltage[kept], open_probability=po[kept])
+
+
+def test_limiting_slope_stands_for_the_charge() -> None:
+    one = Construct(label="WT", mutations=(), openings=tuple(_opening("WT", f"o{i}", 1e-7) for i in range(3)))
+    (value,) = charge_values(one, 22.0)
+    assert (value.method, value.kind, value.lower_bound) == ("limiting slope", "limiting slope", False)
+    assert value.quantity.mean == pytest.approx(13.0, rel=0.05)
+
+
+def test_a_slope_short_of_its_limit_is_flagged_as_a_bound() -> None:
+    one = Construct(label="WT", mutations=(), openings=tuple(_opening("WT", f"o{i}", 1e-2) for i in range(3)))
+    (value,) = charge_values(one, 22.0)
+    assert value.source == "limiting slope (lower bound)"
+    assert value.quantity.mean < 13.0
+    assert [flag.code for flag in method_flags(one, (value,), value, 0.95)] == ["charge-lower-bound"]
+
+
+def test_a_direct_measurement_goes_before_a_limiting_slope() -> None:
+    openings = tuple(_opening("WT", f"o{i}", 1e-7) for i in range(5))
+    one = Construct(label="WT", mutations=(), charge_replicates=NOISE, openings=openings)
+    values = charge_values(one, 22.0)
+    assert choose(values, None).method == "noise analysis"  # type: ignore[union-attr]
+    assert choose(values, "limiting slope").method == "limiting slope"  # type: ignore[union-attr]
+
+
+def test_limiting_slopes_carry_a_campaign_and_its_note() -> None:
+    import dataclasses
+
+    constructs = [construct(label, [-30.0, -31.0, -29.0]) for label in ("WT", "E5A", "R9Q", "E5A/R9Q")]
+    with_slopes = [
+        dataclasses.replace(
+            one, openings=tuple(_opening(one.label, f"o{i}", 1e-7, 1 + 0.004 * i) for i in range(3))
+        )
+        for one in constructs
+    ]
+    result = couple(campaign(with_slopes))
+    assert {row.charge_source for row in result.constructs} == {"limiting slope"}
+    assert {row.charge_verdict for row in result.constructs} == {None, "equal"}
+    assert any("sees only charge coupled to opening" in note for note in result.notes)
+
+
+def test_open_probability_that_falls_is_refused() -> None:
+    rising = _opening("WT", "o1", 1e-5)
+    falling = OpeningCurve(
+        construct="WT",
+        cell="o1",
+        voltage_mv=rising.voltage_mv,
+        open_probability=rising.open_probability[::-1].copy(),
+        origin=Origin(file="openings.csv", row=2),
+    )
+    with pytest.raises(DataRefused, match=r"openings\.csv, row 2: found open probabilities of WT/o1"):
+        charge_values(Construct(label="WT", mutations=(), openings=(falling,)), 22.0)

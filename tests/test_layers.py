@@ -9,8 +9,8 @@ import cornerwise
 
 FLOORS = [
     {"errors", "flags", "units", "streams"},
-    {"intervals", "mutations", "plausible"},
-    {"campaign", "gating", "quantities", "ranking"},
+    {"intervals", "mutations", "plausible", "opening_schemes"},
+    {"campaign", "gating", "limiting_slope", "quantities", "ranking"},
     {"median", "charges"},
     {"measurements"},
     {"sources"},

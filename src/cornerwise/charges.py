@@ -9,9 +9,11 @@ from typing import Literal
 
 import numpy as np
 
-from .campaign import ChargeReplicate, Construct
+from .campaign import ChargeReplicate, Construct, OpeningCurve
+from .errors import DataRefused, Problem, UsageError
 from .flags import Flag
 from .intervals import t_interval, welch_satterthwaite
+from .limiting_slope import LimitingSlope, limiting_slope
 from .mutations import joined
 from .quantities import Quantity, Sample, Summary
 
@@ -20,6 +22,8 @@ from .quantities import Quantity, Sample, Summary
 # sources stand in tests/reference/gating_charge.json. Outside these a warning is due, not a refusal.
 PLAUSIBLE_CHARGE_E0 = (3.0, 16.0)
 PLAUSIBLE_LOSS_PER_MUTATION_E0 = 5.0
+
+LIMITING_SLOPE = "limiting slope"
 
 Kind = Literal["cells", "summary", "limiting slope"]
 
@@ -55,18 +59,51 @@ def _of_cells(method: str, replicates: Sequence[ChargeReplicate]) -> ChargeValue
     return ChargeValue(method=method, kind="cells", quantity=quantity)
 
 
-def charge_values(construct: Construct) -> tuple[ChargeValue, ...]:
+def _slope(curve: OpeningCurve, temperature_c: float) -> LimitingSlope:
+    try:
+        return limiting_slope(curve.voltage_mv, curve.open_probability, temperature_c=temperature_c)
+    except UsageError as error:
+        problem = Problem(
+            origin=curve.origin,
+            found=f"open probabilities of {curve.construct}/{curve.cell} without a limiting slope: {error}",
+            expected="an open probability that rises with voltage, above 0 at four voltages or more",
+            remedy="correct the cell, or leave it out",
+        )
+        raise DataRefused([problem]) from error
+
+
+def _of_openings(curves: Sequence[OpeningCurve], temperature_c: float) -> ChargeValue:
+    """Limiting slopes of all cells; a lower bound as soon as one of them is no more than that."""
+    ordered = sorted(curves, key=lambda curve: curve.cell)
+    slopes = [_slope(curve, temperature_c) for curve in ordered]
+    quantity = Sample(
+        cells=tuple(curve.cell for curve in ordered),
+        values=np.array([slope.charge_e0 for slope in slopes]),
+        batches=tuple(curve.batch for curve in ordered),
+    )
+    bound = any(slope.is_lower_bound for slope in slopes)
+    return ChargeValue(method=LIMITING_SLOPE, kind="limiting slope", quantity=quantity, lower_bound=bound)
+
+
+def charge_values(construct: Construct, temperature_c: float) -> tuple[ChargeValue, ...]:
     """Every value of a construct's total charge, by method.
 
     Parameters
     ----------
     construct : Construct
-        Its charges, cell by cell, summarised or from the literature.
+        Its charges, cell by cell, summarised or from the literature, and its open probabilities.
+    temperature_c : float
+        Temperature (degrees Celsius); the limiting slope is kT d ln Po / dV.
 
     Returns
     -------
     tuple of ChargeValue
         Sorted by method; empty when nothing was measured.
+
+    Raises
+    ------
+    DataRefused
+        If open probabilities have no limiting slope.
     """
     methods: dict[str, list[ChargeReplicate]] = {}
     for replicate in construct.charge_replicates:
@@ -78,6 +115,8 @@ def charge_values(construct: Construct) -> tuple[ChargeValue, ...]:
         values.append(
             ChargeValue(method=method, kind="summary", quantity=quantity, citation=summary.citation)
         )
+    if construct.openings:
+        values.append(_of_openings(construct.openings, temperature_c))
     return tuple(sorted(values, key=lambda value: (value.method, value.kind)))
 
 

@@ -40,8 +40,8 @@ def _notes(measurements: Sequence[Measurement], settings: Settings) -> tuple[str
     sloped = [m.label for m in measurements if m.charge is not None and m.charge.kind == LIMITING_SLOPE]
     if sloped:
         notes.append(
-            f"the total charge of {', '.join(sloped)} is a limiting slope of the open probability, which sees "
-            "only charge coupled to opening"
+            f"the total charge of {', '.join(sloped)} is a limiting slope of the open probability, which "
+            "sees only charge coupled to opening"
         )
     if settings.subunits > 1:
         notes.append(

@@ -102,7 +102,8 @@ def _marked(reading: CellReading) -> CellReading:
 def _without(construct: Construct, set_aside: Mapping[str, str]) -> Construct:
     """The construct without the charges of cells that are set aside; their curves stay, to be shown."""
     charges = tuple(one for one in construct.charge_replicates if one.cell not in set_aside)
-    return replace(construct, charge_replicates=charges)
+    openings = tuple(one for one in construct.openings if one.cell not in set_aside)
+    return replace(construct, charge_replicates=charges, openings=openings)
 
 
 @dataclass(frozen=True, kw_only=True, slots=True)
@@ -112,12 +113,13 @@ class _Choice:
     method: str | None
     wild_type_e0: float | None  # None while the wild type itself is measured
     confidence: float
+    temperature_c: float
 
 
 def _measure(construct: Construct, set_aside: Mapping[str, str], choice: _Choice) -> Measurement:
     readings = _readings(construct, set_aside)
     median = _median(construct, readings)
-    values = charge_values(_without(construct, set_aside))
+    values = charge_values(_without(construct, set_aside), choice.temperature_c)
     used = choose(values, choice.method)
     flags = _few_cells(construct.label, "the median voltages", median.n)
     if used is not None:
@@ -158,7 +160,12 @@ def measure(
         set_aside.setdefault(exclusion.construct, {})[exclusion.cell] = exclusion.reason
     settings = campaign.settings
     method, wild_type_e0 = _wild_type_charge(campaign, set_aside.get(settings.wild_type, {}))
-    choice = _Choice(method=method, wild_type_e0=wild_type_e0, confidence=settings.confidence)
+    choice = _Choice(
+        method=method,
+        wild_type_e0=wild_type_e0,
+        confidence=settings.confidence,
+        temperature_c=settings.temperature_c,
+    )
     done = []
     for count, construct in enumerate(campaign.constructs, start=1):
         done.append(_measure(construct, set_aside.get(construct.label, {}), choice))
@@ -170,7 +177,8 @@ def measure(
 def _wild_type_charge(campaign: Campaign, set_aside: Mapping[str, str]) -> tuple[str | None, float | None]:
     """Method that the charges of all constructs are taken from where they have it, and the wild type's."""
     wild_type = campaign.construct(campaign.settings.wild_type)
-    used = choose(charge_values(_without(wild_type, set_aside)), campaign.settings.charge_method)
+    values = charge_values(_without(wild_type, set_aside), campaign.settings.temperature_c)
+    used = choose(values, campaign.settings.charge_method)
     if used is None:
         return campaign.settings.charge_method, None
     return campaign.settings.charge_method or used.method, used.quantity.mean
