@@ -127,6 +127,7 @@ class Settings:
     reference_voltage_mv: float = 0.0  # voltage at which energies are given
     charge: ChargePolicy = "measured"
     charge_method: str | None = None  # of charges.csv; None: the wild type's
+    correct_sloping_plateaus: bool = False  # take off the line under curves that sloping plateaus call for
     interval: IntervalKind = "propagated"  # the one that verdicts go by
     adjustment: Adjustment = "holm"  # of p values for the number of cycles
     simultaneous: bool = False  # whether intervals that hold all cycles at once are formed too

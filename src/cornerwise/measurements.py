@@ -78,17 +78,23 @@ def _median(construct: Construct, readings: tuple[CellReading, ...]) -> Quantity
     )
 
 
-def _readings(construct: Construct, set_aside: Mapping[str, str]) -> tuple[CellReading, ...]:
+def _readings(
+    construct: Construct, set_aside: Mapping[str, str], *, correct: bool
+) -> tuple[CellReading, ...]:
     """Read the curves in the order of the cells' names, each flag marked with its construct and cell.
 
     Cells the user set aside are read alone, so that they bear on no other cell.
     """
     curves = sorted(construct.curves, key=lambda curve: curve.cell)
     kept = [curve for curve in curves if curve.cell not in set_aside]
-    readings = [_marked(reading) for reading in read_construct(kept)] if kept else []
+    readings = (
+        [_marked(reading) for reading in read_construct(kept, correct_sloping_plateaus=correct)]
+        if kept
+        else []
+    )
     for curve in curves:
         if curve.cell in set_aside:
-            (alone,) = read_construct([curve])
+            (alone,) = read_construct([curve], correct_sloping_plateaus=correct)
             reason = f"set aside by the user: {set_aside[curve.cell]}"
             readings.append(replace(_marked(alone), used=False, reason=reason))
     return tuple(sorted(readings, key=lambda reading: reading.cell))
@@ -108,16 +114,17 @@ def _without(construct: Construct, set_aside: Mapping[str, str]) -> Construct:
 
 @dataclass(frozen=True, kw_only=True, slots=True)
 class _Choice:
-    """What decides which charge of a construct is used."""
+    """What the settings say of every construct: which charge is used, how curves are read."""
 
     method: str | None
     wild_type_e0: float | None  # None while the wild type itself is measured
     confidence: float
     temperature_c: float
+    correct_sloping_plateaus: bool
 
 
 def _measure(construct: Construct, set_aside: Mapping[str, str], choice: _Choice) -> Measurement:
-    readings = _readings(construct, set_aside)
+    readings = _readings(construct, set_aside, correct=choice.correct_sloping_plateaus)
     median = _median(construct, readings)
     values = charge_values(_without(construct, set_aside), choice.temperature_c)
     used = choose(values, choice.method)
@@ -165,6 +172,7 @@ def measure(
         wild_type_e0=wild_type_e0,
         confidence=settings.confidence,
         temperature_c=settings.temperature_c,
+        correct_sloping_plateaus=settings.correct_sloping_plateaus,
     )
     done = []
     for count, construct in enumerate(campaign.constructs, start=1):

@@ -26,6 +26,7 @@ voltage_offset_mV = 3
 reference_voltage_mV = -60
 charge = { value_e0 = 12, sem_e0 = 0, citation = "an invented source, table 2" }
 charge_method = "noise"
+correct_sloping_plateaus = true
 """
 
 
@@ -47,6 +48,7 @@ def test_every_key(tmp_path: Path) -> None:
         reference_voltage_mv=-60.0,
         charge=StatedCharge(value_e0=12.0, sem_e0=0.0, citation="an invented source, table 2"),
         charge_method="noise",
+        correct_sloping_plateaus=True,
         defaulted=(),
     )
 
@@ -56,6 +58,7 @@ def test_what_is_left_out_is_named(tmp_path: Path) -> None:
     assert settings.defaulted == (
         "title", "temperature_C", "subunits", "energy_unit", "confidence", "replicates", "threshold",
         "shortcut_tolerance", "charge_margin", "voltage_offset_mV", "reference_voltage_mV", "charge_method",
+        "correct_sloping_plateaus",
     )  # fmt: skip
     assert settings.temperature_c == Settings(wild_type="WT").temperature_c
 

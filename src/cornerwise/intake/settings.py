@@ -64,6 +64,12 @@ def visible_text(value: object) -> str:
     return text
 
 
+def _yes_or_no(value: object) -> bool:
+    if not isinstance(value, bool):
+        raise ValueError
+    return value
+
+
 def _number(value: object) -> float:
     if isinstance(value, bool) or not isinstance(value, int | float) or not math.isfinite(value):
         raise ValueError
@@ -154,6 +160,10 @@ RULES = (
         key="charge_method", attribute="charge_method", read=visible_text,
         expected="the name of a method, in quotes",
         remedy="write it as it stands in the column method of charges",
+    ),
+    Rule(
+        key="correct_sloping_plateaus", attribute="correct_sloping_plateaus", read=_yes_or_no,
+        expected="true or false",
     ),
 )  # fmt: skip
 

@@ -34,7 +34,6 @@ from .sloping import Slopes, find_slopes, no_slopes
 _UNEVEN_NOISE = 3.0  # ratio of the cells' variances from which they are weighted
 _NOISE_PRIOR_POINTS = 10.0  # points' worth of the typical variance that steadies each cell's
 _VARIANCE_FLOOR = 1e-26
-_NO_PLATEAU = 0.05  # fraction of the charge outside the range
 _TO_SIGMA = 1.4826  # median absolute deviation of normal noise
 _GRID_POINTS = 201
 
@@ -105,9 +104,7 @@ def read_construct(
 def _read(scaled: ScaledCells, correct: bool) -> list[CellReading]:
     pooled = _pool(scaled.cells)
     missing = missing_charge(pooled)
-    # Where a plateau was not reached nothing tells a line from the rest of the rise.
-    reached = max(m.typical for m in missing) < _NO_PLATEAU
-    slopes = find_slopes(pooled) if reached else no_slopes(scaled.cells)
+    slopes = find_slopes(pooled)
     if correct and slopes.supported:
         scaled = replace(scaled, cells=slopes.off(scaled.cells))
         pooled = _pool(scaled.cells)

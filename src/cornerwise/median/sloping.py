@@ -19,6 +19,7 @@ EVIDENCE_LIMIT = 3.0  # difference of log evidence from which the line is believ
 _PLATEAU = 0.002  # fraction of the charge of the single sigmoid
 _SCREEN = 3.0  # standard uncertainties of the mean slope that call for the second fit
 _FEWEST = 4  # outermost points that count as plateau wherever the sigmoid is
+_NO_PLATEAU = 0.05  # fraction of the single sigmoid's charge outside the range
 _ROUNDS = 2  # a line takes the place of slow components, so that the richest shapes are not needed
 
 
@@ -56,7 +57,7 @@ def find_slopes(pooled: PooledShape) -> Slopes:
         Level where the plateaus give no cause to look closer.
     """
     cells = pooled.cells
-    if not _suspicious(pooled):
+    if not _plateaus_reached(pooled) or not _suspicious(pooled):
         return no_slopes(cells)
     lined = pool_shape(replace(cells, baseline="line"), rounds=_ROUNDS)
     per_mv = sum(
@@ -69,6 +70,18 @@ def find_slopes(pooled: PooledShape) -> Slopes:
         shift_mv=float(lined.median_mv.mean() - pooled.median_mv.mean()),
         supported=lined.log_evidence - pooled.log_evidence > EVIDENCE_LIMIT,
     )
+
+
+def _plateaus_reached(pooled: PooledShape) -> bool:
+    """Whether the curves end on plateaus; elsewhere nothing tells a line from the rest of the rise.
+
+    Judged by the single sigmoid: a richer shape bends to a line and takes it for a rise that goes on.
+    """
+    cells, single = pooled.cells, pooled.fits[0]
+    last = (cells.weight > 0).sum(axis=1) - 1
+    ends = np.stack([cells.v_mv[:, 0], cells.v_mv[np.arange(len(last)), last]], axis=1)
+    q = single.family.q(ends - single.shift_mv[:, None], single.theta)
+    return float(np.mean(q[:, 0] + 1.0 - q[:, 1])) < _NO_PLATEAU
 
 
 def _suspicious(pooled: PooledShape) -> bool:

@@ -66,6 +66,8 @@ def setting_values(settings: Settings) -> dict[str, str]:
         "shortcut_tolerance": f"{settings.energy_tolerance:.4g}",
         "charge_margin": f"{settings.charge_margin:g}",
         "voltage_offset_mV": f"{settings.voltage_offset_mv:g}",
+        "reference_voltage_mV": f"{settings.reference_voltage_mv:g}",
+        "correct_sloping_plateaus": "true" if settings.correct_sloping_plateaus else "false",
         "charge": _charge_words(settings),
     }
 
