@@ -22,6 +22,7 @@ _PAIRS_AT_ONCE = 2_000_000  # comparisons held in memory
 _STEP_DOWN_UP_TO = 2000  # estimates; each step needs its own p values
 _VALUES_AT_ONCE = 4_000_000  # replicates held in memory
 _FEWEST_TO_SHRINK = 4
+_SIGNS = (-1.0, 1.0)  # of the difference and of the sum
 
 
 @dataclass(frozen=True, kw_only=True, slots=True, eq=False)
@@ -124,24 +125,48 @@ class _Comparison:
 
     def shown(self, rows: slice, covariance: FloatArray) -> BoolArray:
         """Whether each of `rows` is shown to differ in absolute size from each of all."""
-        tests = [self._test(rows, sign, covariance) for sign in (-1.0, 1.0)]
-        sure: BoolArray = np.logical_and.reduce([t > np.interp(nu, *self._at_once) for t, nu in tests])
-        if self._others <= _STEP_DOWN_UP_TO:
+        step_down = self._others <= _STEP_DOWN_UP_TO
+        spreads = [self._spread(rows, sign * covariance) for sign in _SIGNS]
+        # No t quantile is smaller than the normal one: most pairs need no more than this.
+        least = (self._alone if step_down else self._at_once)[1][0] ** 2
+        away: list[BoolArray] = [
+            self._combined(rows, sign) ** 2 > least * spread
+            for sign, spread in zip(_SIGNS, spreads, strict=True)
+        ]
+        sure = away[0] & away[1]
+        own, other = np.nonzero(sure)
+        places = (own + rows.start, other)
+        tests = [
+            self._test(*places, sign, spread[sure], covariance[sure])
+            for sign, spread in zip(_SIGNS, spreads, strict=True)
+        ]
+        at_once = np.logical_and.reduce([t > np.interp(nu, *self._at_once) for t, nu in tests])
+        sure[sure] = at_once
+        if step_down:
             alone = np.logical_and.reduce([t > np.interp(nu, *self._alone) for t, nu in tests])
-            for row in np.flatnonzero(np.any(alone & ~sure, axis=1)):
-                chosen = np.flatnonzero(alone[row] & ~sure[row])
-                p = np.max([_two_sided(t[row, chosen], nu[row, chosen]) for t, nu in tests], axis=0)
-                self._step_down(sure[row], chosen, p)
+            between = np.flatnonzero(alone & ~at_once)
+            p = np.max([_two_sided(t[between], nu[between]) for t, nu in tests], axis=0)
+            for row in np.unique(own[between]):
+                here = own[between] == row
+                self._step_down(sure[row], other[between][here], p[here])
         return sure
 
-    def _test(self, rows: slice, sign: float, covariance: FloatArray) -> tuple[FloatArray, FloatArray]:
-        """Absolute t of difference or sum, and 1 / degrees of freedom."""
-        a, b = (rows, np.newaxis), (np.newaxis, slice(None))
-        spread = np.maximum(self._variances[a] + self._variances[b] + 2 * sign * covariance, 0.0)
-        combined = np.abs(self._values[a] + sign * self._values[b])
+    def _spread(self, rows: slice, signed_covariance: FloatArray) -> FloatArray:
+        """Variance of difference or sum."""
+        spread = self._variances[rows, np.newaxis] + self._variances + 2 * signed_covariance
+        return np.maximum(spread, 0.0, out=spread)
+
+    def _combined(self, rows: slice, sign: float) -> FloatArray:
+        combined: FloatArray = self._values[rows, np.newaxis] + sign * self._values
+        return combined
+
+    def _test(
+        self, a: IntArray, b: IntArray, sign: float, spread: FloatArray, covariance: FloatArray
+    ) -> tuple[FloatArray, FloatArray]:
+        """Absolute t of difference or sum of each of `a` with each of `b`, and 1 / degrees of freedom."""
         doubt = self._doubt[a] + self._doubt[b]
         with np.errstate(divide="ignore", invalid="ignore"):
-            t = np.where(combined > 0, combined / np.sqrt(spread), 0.0)
+            t = np.abs(self._values[a] + sign * self._values[b]) / np.sqrt(spread)
             inverse = np.where(doubt > 0, doubt / spread**2, 0.0)
         smaller = np.minimum(self._dofs[a], self._dofs[b])
         return t, np.where(sign * covariance > 0, np.maximum(inverse, 1 / smaller), inverse)

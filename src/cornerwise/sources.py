@@ -192,6 +192,7 @@ class CellSource:
     values: FloatArray  # (n_components, n_cells), NaN where a cell does not show a number
     batches: tuple[str | None, ...] = ()  # (n_cells,), None where not stated; empty when none is stated
     shown: BoolArray = field(init=False)  # (n_components, n_cells)
+    fully_shared: bool = field(init=False)  # whether every cell shows every number
     deviations: FloatArray = field(init=False)  # from the component's mean; 0 where not shown
     counts: FloatArray = field(init=False)  # (n_components,) cells that show it
     covariance: FloatArray = field(init=False)  # (n_components, n_components), of one cell's numbers
@@ -202,14 +203,10 @@ class CellSource:
         filled = np.where(shown, self.values, 0.0)
         deviations = np.where(shown, filled - (filled.sum(axis=1) / counts)[:, np.newaxis], 0.0)
         object.__setattr__(self, "shown", shown)
+        object.__setattr__(self, "fully_shared", bool((shown == shown[0]).all()))
         object.__setattr__(self, "counts", counts)
         object.__setattr__(self, "deviations", deviations)
         object.__setattr__(self, "covariance", _pairwise_covariance(filled, shown))
-
-    @property
-    def fully_shared(self) -> bool:
-        """Whether every cell shows every number."""
-        return bool((self.shown == self.shown[0]).all())
 
     def parts(self, gradient: Sequence[float]) -> tuple[Part, ...]:
         """One part: the cells of the construct."""
@@ -229,15 +226,18 @@ class CellSource:
         shared cells) and its degrees of freedom are ``2 E**2 / Var``, with the variance of the estimate
         for normal cells from the traces of the centring matrices.
         """
-        weights = np.asarray(gradient, dtype=float)
-        active = np.flatnonzero(weights != 0)
-        if not len(active):
+        active = [row for row, weight in enumerate(gradient) if weight != 0]
+        if not active:
             return Spread(0.0, math.inf)
-        if self.fully_shared or len(active) == 1:
-            n = float(self.counts[active[0]])
-            per_cell = np.sum(weights[:, np.newaxis] * self.deviations, axis=0)
-            return Spread(float(np.sum(per_cell**2)) / (n - 1) / n if n > 1 else math.nan, n - 1)
-        return self._partly_shared(weights)
+        if len(active) == 1:
+            (row,) = active
+            per_cell = gradient[row] * self.deviations[row]
+        elif self.fully_shared:
+            per_cell = np.sum(np.asarray(gradient, dtype=float)[:, np.newaxis] * self.deviations, axis=0)
+        else:
+            return self._partly_shared(np.asarray(gradient, dtype=float))
+        n = float(self.counts[active[0]])
+        return Spread(float(np.sum(per_cell**2)) / (n - 1) / n if n > 1 else math.nan, n - 1)
 
     def _partly_shared(self, weights: FloatArray) -> Spread:
         i, j = 0, 1
