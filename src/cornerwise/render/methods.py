@@ -28,6 +28,10 @@ _REFERENCES = {
     "components. Biometrics Bull 2, 110-114.",
     "bootstrap": "Hesterberg TC (2015). What teachers should know about the bootstrap. Am Stat 69, 371-386.",
     "holm": "Holm S (1979). A simple sequentially rejective multiple test procedure. Scand J Stat 6, 65-70.",
+    "discovery": "Benjamini Y, Hochberg Y (1995). Controlling the false discovery rate: a practical and "
+    "powerful approach to multiple testing. J R Stat Soc B 57, 289-300.",
+    "monte carlo": "JCGM 101:2008. Supplement 1 to the guide to the expression of uncertainty in "
+    "measurement: propagation of distributions using a Monte Carlo method.",
     "equivalence": "Schuirmann DJ (1987). A comparison of the two one-sided tests procedure and the power "
     "approach for assessing the equivalence of average bioavailability. J Pharmacokinet Biopharm 15, "
     "657-680.",
@@ -119,7 +123,7 @@ def _charge(result: Result) -> str:
     charge = result.settings.charge
     if isinstance(charge, StatedCharge):
         stated = with_uncertainty(charge.value_e0, charge.sem_e0)
-        source = f" ({charge.citation})" if charge.citation else ""
+        source = f"; {charge.citation}" if charge.citation else ""
         return (
             f"One total gating charge of {stated} e0 per channel (value and standard uncertainty{source}) "
             "was used for every construct and counted as a single source of error."
@@ -170,15 +174,51 @@ def _uncertainty(result: Result, cited: _Cited) -> str:
         if settings.voltage_offset_mv
         else ""
     )
-    return (
+    text = (
         f"Uncertainties follow from the law of propagation of uncertainty {cited('gum')} over independent "
         "sources (the cells of each construct, the charges"
         f"{offset}), each of which counts once however many corners share it. Intervals are "
         f"{percent(settings.confidence)} intervals by Student's t with Welch-Satterthwaite degrees of "
         f"freedom {cited('welch', 'satterthwaite')}. A bootstrap over cells within constructs "
         f"({settings.replicates} replicates, seed {settings.seed}; percentiles expanded to the same degrees "
-        f"of freedom {cited('bootstrap')}) served as a check. Two-sided p values were adjusted for "
-        f"{counted(len(result.interactions), 'cycle')} by Holm's method {cited('holm')}."
+        f"of freedom {cited('bootstrap')}) served as a check. "
+    )
+    if settings.interval == "monte-carlo":
+        text += (
+            "Verdicts go by intervals from a Monte Carlo propagation of Student's t distributions "
+            f"{cited('monte carlo')}. "
+        )
+    return f"{text}{_batches(result)}{_many(result, cited)}"
+
+
+def _batches(result: Result) -> str:
+    """How many cycles count batches rather than cells."""
+    ruled = {
+        "within batches": "constructs that share their batches were compared within batches",
+        "batch means": "constructs that do not share their batches entered by batch means",
+    }
+    parts = []
+    for rule, words in ruled.items():
+        number = sum(any(units.rule == rule for units in row.units) for row in result.interactions)
+        if number:
+            parts.append(f"in {counted(number, 'cycle')}, {words}")
+    sentence = "; ".join(parts)
+    return f"{sentence[0].upper()}{sentence[1:]}. " if sentence else ""
+
+
+def _many(result: Result, cited: _Cited) -> str:
+    settings, number = result.settings, len(result.interactions)
+    if number < 2:
+        return "The p value is two-sided."
+    method = {
+        "holm": ("Holm's method", "holm"),
+        "benjamini-hochberg": ("the method of Benjamini and Hochberg", "discovery"),
+    }
+    name, key = method[settings.adjustment]
+    order = "absolute size" if settings.rank_by == "estimate" else "the lower limit of the absolute size"
+    return (
+        f"Two-sided p values were adjusted for {counted(number, 'cycle')} by {name} {cited(key)}. Cycles are "
+        f"ranked by {order}; the interval of a rank counts the cycles shown to be stronger and weaker."
     )
 
 
@@ -232,7 +272,7 @@ def figure_legends(result: Result) -> dict[str, str]:
     return {
         "interactions": (
             f"Interaction energies I ({unit}) of {counted(len(result.interactions), 'cycle')}, strongest "
-            f"first, with {level} intervals (Student's t; {n}). {FORMULA}. {signs}. Grey band: threshold of "
+            f"first, with {level} intervals ({n}). {FORMULA}. {signs}. Grey band: threshold of "
             f"{band}. Disc, coupled; lozenge, detected; ring, uncoupled; cross, unresolved. An arrowhead "
             "marks an interval that goes on."
         ),

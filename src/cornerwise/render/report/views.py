@@ -8,7 +8,7 @@ from dataclasses import dataclass
 from markupsafe import Markup
 
 from ...flags import Flag
-from ...result import CellRow, ConstructRow, InteractionRow, Result
+from ...result import BackgroundRow, CellRow, ConstructRow, InteractionRow, Result
 from ..explanation import explain
 from ..figures.files import CycleFigures
 from ..figures.style import SINGLE_COLUMN_MM
@@ -67,6 +67,7 @@ class CycleView:
     figures: tuple[tuple[str, Markup], ...]  # title and drawing
     doubts: tuple[Doubt, ...]
     facts: tuple[tuple[str, str], ...]
+    lower_orders: tuple[tuple[str, str, str, str], ...]  # pair, its background, energy, interval
 
 
 @dataclass(frozen=True, kw_only=True, slots=True)
@@ -170,6 +171,7 @@ class CycleViews:
         self._constructs = {row.construct: construct_view(row) for row in result.constructs}
         self._figures = CycleFigures(result) if with_figures else None
         self._strips = Strips(result)
+        self._backgrounds = grouped((row.cycle, row) for row in result.backgrounds)
         self._of_construct = grouped((flag.construct, flag) for flag in result.flags if flag.construct)
         self._of_cycle = grouped((flag.subject, flag) for flag in result.flags if not flag.construct)
 
@@ -192,6 +194,7 @@ class CycleViews:
             figures=self._drawn(row),
             doubts=tuple(self._doubts(row)),
             facts=tuple(_facts(row)),
+            lower_orders=tuple(map(_lower_order, self._backgrounds.get(row.cycle, []))),
         )
 
     def _drawn(self, row: InteractionRow) -> tuple[tuple[str, Markup], ...]:
@@ -230,11 +233,19 @@ def _facts(row: InteractionRow) -> list[tuple[str, str]]:
     unit, u = row.energy_unit, row.std_uncertainty
     facts = [
         ("I per channel", f"{with_uncertainty(row.interaction, u)} {unit}"),
-        ("propagated interval", span((row.low, row.high), u)),
+        ("interval", span((row.low, row.high), u)),
         ("bootstrap interval", span((row.boot_low, row.boot_high), u)),
+        ("Monte Carlo interval", span((row.monte_carlo_low, row.monte_carlo_high), u)),
+        ("interval for all cycles at once", span((row.simultaneous_low, row.simultaneous_high), u)),
         ("degrees of freedom", "" if row.dof is None else f"{row.dof:.1f}"),
         ("p, p adjusted", ", ".join(filter(None, (p_words(row.p_value), p_words(row.p_adjusted))))),
         ("rank", rank_words(row)),
+        ("less what chance may have added", _with_unit(number(row.shrunken, decimals_for(u)), unit)),
+        ("native pair", row.opposite_charges or ""),
+        (
+            "distance of side chains",
+            "" if row.distance_angstrom is None else f"{row.distance_angstrom:.3g} Å",
+        ),
         ("from median voltages alone", _with_unit(number(row.shortcut, decimals_for(u)), unit)),
         (
             "error of that shortcut",
@@ -246,6 +257,16 @@ def _facts(row: InteractionRow) -> list[tuple[str, str]]:
         ),
     ]
     return [(name, typeset(text)) for name, text in facts if text]
+
+
+def _lower_order(row: BackgroundRow) -> tuple[str, str, str, str]:
+    """Interaction of lower order in one background."""
+    return (
+        "/".join(row.mutations),
+        "/".join(row.background) or "wild type",
+        typeset(with_uncertainty(row.interaction, row.std_uncertainty)),
+        typeset(span((row.low, row.high), row.std_uncertainty)),
+    )
 
 
 def _with_unit(text: str, unit: str) -> str:

@@ -1,0 +1,50 @@
+"""A campaign for the tests of the report: a triple, charges of every kind, names that look like markup."""
+
+from dataclasses import replace
+
+from builders import campaign, construct
+
+from cornerwise.campaign import Campaign
+from cornerwise.mutations import in_residue_order, parse_label
+
+MEDIANS = {
+    "WT": -40.0, "E5A": -33.0, "R9Q": -52.0, "K12A": -45.0, "E5A/R9Q": -20.0, "E5A/K12A": -38.0,
+    "R9Q/K12A": -57.0, "E5A/R9Q/K12A": -25.0,
+}  # fmt: skip
+CHARGES = [13.0, 12.5, 13.3, 12.9]
+HOSTILE = '<script>document.title="owned"</script>'
+NAMED = '"><img src=x onerror=alert(1)> & [/b]'
+
+
+def hostile_campaign(**settings: object) -> Campaign:
+    """Three pairs and a triple; one construct and one cycle are named to break a page."""
+    constructs = []
+    for label, m in MEDIANS.items():
+        charges = {"R9Q": [0.7 * q for q in CHARGES], "E5A/K12A": None}.get(label, CHARGES)
+        one = construct(label, [m - 1, m, m + 0.7, m + 1.4], charges)
+        constructs.append(one)
+    given = campaign(constructs, title=HOSTILE, **settings)
+    renamed = tuple(
+        replace(
+            one,
+            label=HOSTILE,
+            curves=tuple(replace(curve, construct=HOSTILE) for curve in one.curves),
+            charge_replicates=tuple(replace(q, construct=HOSTILE) for q in one.charge_replicates),
+            mutations=in_residue_order(parse_label("K12A") or ()),
+        )
+        if one.label == "K12A"
+        else one
+        for one in given.constructs
+    )
+    cycles = tuple(
+        replace(
+            cycle,
+            name=NAMED if cycle.name == "R9Q/K12A" else cycle.name,
+            corners=tuple(
+                replace(corner, label=HOSTILE) if corner.label == "K12A" else corner
+                for corner in cycle.corners
+            ),
+        )
+        for cycle in given.cycles
+    )
+    return replace(given, constructs=renamed, cycles=cycles)
