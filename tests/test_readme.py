@@ -1,0 +1,44 @@
+"""The README shows what the program prints, and its commands can be found by CI."""
+
+import os
+import re
+import subprocess
+import sys
+from pathlib import Path
+
+TOP = Path(__file__).parents[1]
+TEXT = (TOP / "README.md").read_text(encoding="utf-8")
+
+
+def test_the_table_is_the_one_that_is_printed() -> None:
+    (shown,) = re.findall(r"The first prints.*?```text\n(.*?)```", TEXT, flags=re.DOTALL)
+    environment = {**os.environ, "PYTHONIOENCODING": "utf-8"}
+    done = subprocess.run(
+        [sys.executable, "-m", "cornerwise", "couple", str(TOP / "cycles" / "orvane")],
+        capture_output=True, text=True, encoding="utf-8", env=environment, check=True,
+    )  # fmt: skip
+    printed, _ = done.stdout.split("\nFlags\n")
+    assert shown == printed
+
+
+def test_two_commands_are_marked() -> None:
+    commands = re.findall(r"<!-- command -->\n```sh\n(.*?)```", TEXT, flags=re.DOTALL)
+    assert len(commands) == 2
+    assert "cornerwise couple cycles/orvane" in commands[0]
+    assert "pytest" in commands[1]
+
+
+def test_job_and_caution_come_first() -> None:
+    first = TEXT.split("##")[0]
+    for words in (
+        "interaction (coupling) energy",
+        "not for clinical variant interpretation",
+        "no proof of a contact",
+    ):
+        assert words in " ".join(first.split())
+
+
+def test_every_file_that_is_named_exists() -> None:
+    named = set(re.findall(r"`((?:docs|cycles|examples|tests)/[\w./-]+)`", TEXT))
+    assert named
+    assert [name for name in sorted(named) if not (TOP / name).exists()] == []
