@@ -176,13 +176,12 @@ def adjusted_p_values(p_values: Sequence[float], method: Adjustment = "holm") ->
     289-300.
     """
     p = np.asarray(p_values, dtype=float)
-    adjusted = np.full(p.shape, np.nan)
-    available = np.flatnonzero(np.isfinite(p))
-    order = available[np.argsort(p[available], kind="stable")]
-    m = len(order)
-    if method == "holm":
-        stepwise = np.maximum.accumulate((m - np.arange(m)) * p[order])
-    else:
-        stepwise = np.minimum.accumulate((m / np.arange(m, 0, -1)) * p[order][::-1])[::-1]
-    adjusted[order] = np.minimum(stepwise, 1.0)
+    adjusted = np.where(np.isfinite(p), p, np.nan)
+    available = np.isfinite(p)
+    if available.sum() > 1:
+        # Takes longer to import than numpy and scipy together, so it is fetched only where it works.
+        from statsmodels.stats.multitest import multipletests
+
+        name = "holm" if method == "holm" else "fdr_bh"
+        adjusted[available] = multipletests(p[available], method=name)[1]
     return [float(value) for value in adjusted]

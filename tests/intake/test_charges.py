@@ -185,7 +185,8 @@ def test_methods_are_called_as_the_arithmetic_calls_them(tmp_path: Path) -> None
     construct = read(folder(tmp_path / "a", MEASURED, charges=MIXED)).construct("WT")
     named = {method_name(one.method, None) for one in construct.charge_replicates}
     named |= {method_name(one.method, one.citation) for one in construct.charge_summaries}
-    assert named == {value.method for value in charge_values(construct, 22.0)} == {"noise", "blocker", "literature"}
+    values = charge_values(construct, 22.0)
+    assert named == {value.method for value in values} == {"noise", "blocker", "literature"}
     (value,) = charge_values(read(folder(tmp_path / "b", MEASURED, charges=SUMMARIES)).construct("WT"), 22.0)
     assert value.method == method_name(None, None)
 
