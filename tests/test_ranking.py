@@ -96,8 +96,7 @@ def test_against_every_pair_written_out(seed: int) -> None:
     rng = np.random.default_rng(seed)
     n = 12
     footprints = [
-        {"wt": rng.normal(0, 0.4, 5), ("own", i): rng.normal(0, rng.uniform(0.1, 0.6), 5)}
-        for i in range(n)
+        {"wt": rng.normal(0, 0.4, 5), ("own", i): rng.normal(0, rng.uniform(0.1, 0.6), 5)} for i in range(n)
     ]
     u = np.array([math.sqrt(sum(float(np.sum(e**2)) for e in one.values())) for one in footprints])
     found = Estimates(
