@@ -146,8 +146,9 @@ class _Comparison:
             alone = np.logical_and.reduce([t > np.interp(nu, *self._alone) for t, nu in tests])
             between = np.flatnonzero(alone & ~at_once)
             p = np.max([_two_sided(t[between], nu[between]) for t, nu in tests], axis=0)
-            for row in np.unique(own[between]):
-                here = own[between] == row
+            bounds = np.searchsorted(own[between], np.arange(len(sure) + 1))
+            for row in np.flatnonzero(np.diff(bounds)):
+                here = slice(bounds[row], bounds[row + 1])
                 self._step_down(sure[row], other[between][here], p[here])
         return sure
 
