@@ -1,11 +1,14 @@
+import dataclasses
 import math
 
+import numpy as np
 import pytest
-from builders import campaign, construct
+from builders import VOLTAGES, campaign, construct
 
 from cornerwise.campaign import Construct
 from cornerwise.charge_judgement import ASSUMED, ChargeJudgement, cells_for_verdict, family_verdicts
 from cornerwise.coupling import couple
+from cornerwise.gating import LinearSequence
 from cornerwise.intervals import Interval
 from cornerwise.result import InteractionRow, Result
 
@@ -93,6 +96,45 @@ def test_breakdown_names_the_change_that_erases_the_interaction() -> None:
     energies = {r.construct: r.energy for r in couple(given).constructs}
     nearest = row.low if row.low > 0 else row.high  # type: ignore[operator]
     assert nearest + one.fraction * energies["E5A/R9Q"] == pytest.approx(0.0, abs=1e-12)  # type: ignore[operator]
+
+
+def _three_states(charge: float, median_mv: float) -> LinearSequence:
+    return LinearSequence(
+        charges_e0=(0.4 * charge, 0.6 * charge),
+        midpoints_mv=(median_mv - 18.0, median_mv + 12.0),
+        temperature_c=22.0,
+    )
+
+
+def test_three_state_mutant_that_loses_30_percent_of_its_charge() -> None:
+    # dG in kcal/mol and Q in e0; I is -12 + 10 + 9 - 5.5 = 1.5, medians alone give another number.
+    truth = {"WT": (-12.0, 13.0), "E5A": (-10.0, 13.0), "R9Q": (-9.0, 9.1), "E5A/R9Q": (-5.5, 9.1)}
+    per = 0.02306054783061903
+    medians = {label: energy / charge / per for label, (energy, charge) in truth.items()}
+    shortcut = per * 13.0 * (medians["WT"] - medians["E5A"] - medians["R9Q"] + medians["E5A/R9Q"])
+    rng = np.random.default_rng(8)
+    covered = biased = 0
+    for _ in range(12):
+        constructs = []
+        for label, (_, charge) in truth.items():
+            charges = list(charge * (1 + 0.04 * rng.standard_normal(8)))
+            base = construct(label, [0.0] * 8, charges, charge_cells="n")
+            curves = [
+                dataclasses.replace(
+                    curve,
+                    charge=_three_states(charge, medians[label] + 1.5 * rng.standard_normal()).q(VOLTAGES)
+                    + 0.01 * rng.standard_normal(len(VOLTAGES)),
+                )
+                for curve in base.curves
+            ]
+            constructs.append(dataclasses.replace(base, curves=tuple(curves)))
+        row = _row(couple(campaign(constructs)))
+        assert row.shortcut_verdict == "invalid"
+        covered += row.low <= 1.5 <= row.high  # type: ignore[operator]
+        biased += row.shortcut_bias_low <= 1.5 - shortcut <= row.shortcut_bias_high  # type: ignore[operator]
+    # 95 % intervals: of twelve, fewer than ten would come once in fifty times
+    assert covered >= 10
+    assert biased >= 10
 
 
 def test_offset_contribution_is_f_j_times_the_stated_offset() -> None:

@@ -47,7 +47,7 @@ def _notes(measurements: Sequence[Measurement], settings: Settings) -> tuple[str
         notes.append(
             f"every energy is per channel; the protein has {settings.subunits} subunits and each carries "
             "the mutations, so an energy per subunit is that of the channel divided by "
-            f"{settings.subunits}, and it has not been divided here"
+            f"{settings.subunits}; it has been divided nowhere but in per_subunit.csv"
         )
     return tuple(notes)
 

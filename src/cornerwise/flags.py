@@ -13,6 +13,7 @@ FlagCode = Literal[
     "not-monotonic",
     "coarse-steps",
     "noisy",
+    "area-disagrees",
     "midpoint-misleads",
     "few-cells",
     "single-batch",

@@ -22,6 +22,7 @@ from .rows import (
     MidpointRow,
     ProfilePoint,
     RankRow,
+    SubunitRow,
 )
 from .tables import Row, Table, Value
 
@@ -45,11 +46,16 @@ __all__ = [
     "RankRow",
     "Result",
     "Row",
+    "SubunitRow",
     "Table",
     "Value",
 ]
 
 SCHEMA = "cornerwise-result/1"
+
+
+def _shared(energy: float | None, subunits: int) -> float | None:
+    return None if energy is None else energy / subunits
 
 
 @dataclass(frozen=True, kw_only=True, slots=True)
@@ -78,6 +84,25 @@ class Result:
             if row.midpoint_mv is not None
         ]
         return Table(MidpointRow, rows)
+
+    @property
+    def per_subunit(self) -> Table[SubunitRow]:
+        """Interaction energies divided by the number of subunits; empty for a protein of one."""
+        count = self.settings.subunits
+        rows = [
+            SubunitRow(
+                cycle=row.cycle,
+                subunits=count,
+                interaction_per_channel=row.interaction,
+                interaction_per_subunit=_shared(row.interaction, count),
+                std_uncertainty_per_subunit=_shared(row.std_uncertainty, count),
+                low_per_subunit=_shared(row.low, count),
+                high_per_subunit=_shared(row.high, count),
+                energy_unit=row.energy_unit,
+            )
+            for row in self.interactions
+        ]
+        return Table(SubunitRow, rows if count > 1 else [])
 
     @property
     def ranking(self) -> Table[RankRow]:

@@ -234,6 +234,29 @@ class ConstructRow:
 
 
 @dataclass(frozen=True, kw_only=True, slots=True)
+class SubunitRow:
+    """One cycle's energy shared by the subunits of a homomer; the only place where it is divided."""
+
+    columns: ClassVar[tuple[str, ...]] = (
+        "cycle", "subunits", "interaction_per_channel", "interaction_per_subunit",
+        "std_uncertainty_per_subunit", "low_per_subunit", "high_per_subunit", "energy_unit",
+    )  # fmt: skip
+
+    cycle: str
+    subunits: int
+    interaction_per_channel: float | None
+    interaction_per_subunit: float | None
+    std_uncertainty_per_subunit: float | None
+    low_per_subunit: float | None
+    high_per_subunit: float | None
+    energy_unit: str
+
+    def cells(self) -> tuple[Value, ...]:
+        """Values in the order of `columns`."""
+        return flat_values(self)
+
+
+@dataclass(frozen=True, kw_only=True, slots=True)
 class MidpointRow:
     """Midpoint-based numbers of one construct beside its median-based energy."""
 

@@ -45,7 +45,7 @@ EDGES = [
     ("coarse-steps", "rise_mv", limits.STEPS_LIMIT * SOUND.largest_step_mv, -1),
     ("coarse-steps", "points", limits.POINTS_LIMIT, -1),
     ("noisy", "noise", limits.NOISE_LIMIT, +1),
-    ("noisy", "disagreement_mv", limits.DISAGREEMENT_IN_NOISE * SOUND.plain_uncertainty_mv, +1),
+    ("area-disagrees", "disagreement_mv", limits.DISAGREEMENT_IN_NOISE * SOUND.plain_uncertainty_mv, +1),
 ]
 
 

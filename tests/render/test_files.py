@@ -7,6 +7,7 @@ import pandas as pd
 import pytest
 from builders import campaign, construct
 
+from cornerwise.campaign import StatedCharge
 from cornerwise.coupling import couple
 from cornerwise.errors import UsageError
 from cornerwise.render.files import check_destination, result_files, write_folder
@@ -62,6 +63,20 @@ def test_nothing_is_rounded_and_nothing_that_does_not_apply_is_zero(result: Resu
     assert [line["cells"] for line in constructs] == ["3"] * 4
     assert constructs[0]["charge_ratio"] == constructs[0]["charge_verdict"] == ""
     assert constructs[2]["charge_source"] == "wild type"
+
+
+def test_only_a_homomer_has_energies_per_subunit(result: Result) -> None:
+    assert "per_subunit.csv" not in result_files(result)
+    constructs = [construct(label, [-40.0, -41.0, -39.0]) for label in ("WT", "E5A", "R9Q", "E5A/R9Q")]
+    stated = StatedCharge(value_e0=13.0, sem_e0=0.5)
+    tetramer = couple(campaign(constructs, charge=stated, subunits=4))
+    (row,) = csv.DictReader(result_files(tetramer)["per_subunit.csv"].splitlines())
+    one = tetramer.interactions[0]
+    assert float(row["interaction_per_channel"]) == one.interaction
+    assert float(row["std_uncertainty_per_subunit"]) == one.std_uncertainty / 4
+    assert float(row["high_per_subunit"]) == one.high / 4
+    assert row["subunits"] == "4"
+    assert any("divided nowhere but in per_subunit.csv" in note for note in tetramer.notes)
 
 
 def test_text_is_ascii_apart_from_labels(result: Result) -> None:

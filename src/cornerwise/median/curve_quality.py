@@ -59,6 +59,7 @@ def cell_flags(evidence: Evidence) -> tuple[Flag, ...]:
         _reversal(evidence),
         _coarse(evidence),
         _noisy(evidence),
+        _area_disagrees(evidence),
     )
     return tuple(flag for flag in found if flag is not None)
 
@@ -186,21 +187,25 @@ def _coarse(e: Evidence) -> Flag | None:
 
 
 def _noisy(e: Evidence) -> Flag | None:
-    if e.noise > NOISE_LIMIT:
-        return Flag(
-            code="noisy",
-            subject=e.subject,
-            message=f"the points scatter by {e.noise:.1%} of the charge around the smooth curve, more than "
-            f"{NOISE_LIMIT:.0%}; average more sweeps or leave the cell out with a reason",
-            value=e.noise,
-            limit=NOISE_LIMIT,
-        )
+    if e.noise <= NOISE_LIMIT:
+        return None
+    return Flag(
+        code="noisy",
+        subject=e.subject,
+        message=f"the points scatter by {e.noise:.1%} of the charge around the smooth curve, more than "
+        f"{NOISE_LIMIT:.0%}; average more sweeps or leave the cell out with a reason",
+        value=e.noise,
+        limit=NOISE_LIMIT,
+    )
+
+
+def _area_disagrees(e: Evidence) -> Flag | None:
     limit = max(DISAGREEMENT_LIMIT_MV, DISAGREEMENT_IN_NOISE * e.plain_uncertainty_mv)
     saturated = max(e.missing_low, e.missing_high) <= MISSING_LIMIT
     if not saturated or abs(e.disagreement_mv) <= limit:
         return None
     return Flag(
-        code="noisy",
+        code="area-disagrees",
         subject=e.subject,
         message=f"the plain area between the plateaus gives a median {e.disagreement_mv:+.1f} mV from the "
         f"estimate, more than {limit:.1f} mV; the end points are noisy or drift: look at the plateaus",

@@ -32,10 +32,19 @@ def _csv(table: Table[Row]) -> str:
     return table.to_frame().astype(object).to_csv(index=False, lineterminator="\n")
 
 
-def result_files(result: Result) -> dict[str, str]:
-    """Name and text of every file of a result but the figures; those are `figures.files.figure_files`."""
+def result_files(result: Result, *, cycle_figures: bool | None = None) -> dict[str, str]:
+    """Name and text of every file of a result but the figures; those are `figures.files.figure_files`.
+
+    Parameters
+    ----------
+    result : Result
+        What `cornerwise.couple` returned.
+    cycle_figures : bool, optional
+        Whether the report draws every cycle; None for as long as there are not too many.
+    """
     from .report.page import report_html  # with its templates, only when files are written
 
+    shared = {"per_subunit.csv": _csv(result.per_subunit)} if len(result.per_subunit) else {}
     return {
         "result.json": result.to_json(),
         "interactions.csv": _csv(result.interactions),
@@ -43,7 +52,8 @@ def result_files(result: Result) -> dict[str, str]:
         "cells.csv": _csv(result.cells),
         "midpoints.csv": _csv(result.midpoints),
         "budget.csv": _csv(result.budget),
-        "report.html": report_html(result),
+        **shared,
+        "report.html": report_html(result, cycle_figures=cycle_figures),
     }
 
 

@@ -26,6 +26,7 @@ _WHAT_FLAGS_SAY = {
     "not-monotonic": "a curve falls where it should rise",
     "coarse-steps": "voltage steps are coarse for the steepness",
     "noisy": "curves are noisy",
+    "area-disagrees": "the plain area under the curve gives another median",
     "midpoint-misleads": "midpoints would give another energy than medians",
     "few-cells": "a construct rests on few cells",
     "single-batch": "all cells come from one batch",
