@@ -69,6 +69,9 @@ def setting_values(settings: Settings) -> dict[str, str]:
         "reference_voltage_mV": f"{settings.reference_voltage_mv:g}",
         "correct_sloping_plateaus": "true" if settings.correct_sloping_plateaus else "false",
         "charge": _charge_words(settings),
+        "charge_method": "the wild type's"
+        if settings.charge_method is None
+        else f'"{settings.charge_method}"',
     }
 
 

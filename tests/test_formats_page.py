@@ -1,0 +1,49 @@
+"""docs/formats.md and the starter name every key and column that is read, and no other."""
+
+import re
+from importlib import resources
+from pathlib import Path
+
+import pytest
+
+from cornerwise.campaign import Settings
+from cornerwise.intake import charges, curves, medians, openings
+from cornerwise.intake.settings import KEYS, TABLES
+from cornerwise.render.legend import setting_values
+
+PAGE = (Path(__file__).parents[1] / "docs" / "formats.md").read_text(encoding="utf-8")
+
+
+def test_every_key_has_its_row() -> None:
+    documented = re.findall(r"^\| `(\w+)` \|", PAGE.split("Three tables may follow")[0], flags=re.MULTILINE)
+    assert sorted(documented) == sorted(KEYS)
+
+
+def test_every_key_is_in_the_starter() -> None:
+    text = resources.files("cornerwise").joinpath("starter_campaign", "campaign.toml").read_text("utf-8")
+    assert [key for key in KEYS if not re.search(rf"^(# )?{key} = ", text, flags=re.MULTILINE)] == []
+    assert [table for table in TABLES if f"[{table}]" not in text] == []
+
+
+def test_every_key_is_printed_with_the_result() -> None:
+    printed = setting_values(Settings(wild_type="WT", charge_method="noise"))
+    assert sorted(printed) == sorted(KEYS)
+
+
+@pytest.mark.parametrize(
+    ("table", "fields"),
+    [
+        ("curves", curves.FIELDS),
+        ("medians", medians.FIELDS),
+        ("charges, a row a cell", charges.REPLICATE_FIELDS),
+        ("charges, a row a construct", charges.SUMMARY_FIELDS),
+        ("openings", openings.FIELDS),
+    ],
+)
+def test_every_column_is_named(table: str, fields: tuple) -> None:
+    name, *rest = table.split(",")
+    start = f"| `{name}`" + (f",{rest[0]} |" if rest else " |")
+    (row,) = [line for line in PAGE.splitlines() if line.startswith(start)]
+    documented = set(re.findall(r"`(\w+)`", row.split("|")[2]))
+    known = {header for field in fields for header in field.headers}
+    assert documented == known | (documented & {"n", "citation"})
