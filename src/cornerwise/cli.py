@@ -99,7 +99,7 @@ def _rendered(result: Result, *, figures: bool) -> dict[str, str | bytes]:
     """Everything that ``--out`` writes of a result."""
     from .render.files import result_files
 
-    files: dict[str, str | bytes] = {**result_files(result)}
+    files: dict[str, str | bytes] = {**result_files(result, cycle_figures=figures or None)}
     if figures:
         from .render.figures.files import figure_files
 

@@ -228,8 +228,9 @@ def _judgement(result: Result, cited: _Cited) -> str:
     inner = percent(round(2 * settings.confidence - 1, 6))
     return (
         f"A pair is called coupled when its whole interval lies beyond {settings.energy_threshold:.3g} "
-        f"{unit} on one side of 0, detected when the interval excludes 0 only, uncoupled when it lies inside "
-        "that threshold, and unresolved otherwise. A mutant's total charge is called equal to the wild "
+        f"{unit} on one side of 0, detected when the interval excludes 0 only (both only with an adjusted p "
+        f"of at most {1 - settings.confidence:.3g}), uncoupled when it lies inside that threshold, and "
+        "unresolved otherwise. A mutant's total charge is called equal to the wild "
         f"type's when the {inner} interval of their ratio lies inside 1 ± {settings.charge_margin:g} (two "
         f"one-sided tests {cited('equivalence')}), and changed when its {level} interval excludes 1. "
         "Median voltages alone are called a valid shortcut when all charges are equal and the interval of "
@@ -278,7 +279,8 @@ def figure_legends(result: Result) -> dict[str, str]:
         ),
         "matrix": (
             f"Interaction energies I ({unit}) residue by residue; {n}. Disc, I > 0; square, I < 0; filled "
-            f"where the {level} interval excludes 0. The area is proportional to the size of I. {FORMULA}. "
+            f"where the {level} interval excludes 0 and the adjusted p is at most "
+            f"{1 - settings.confidence:.3g}. The area is proportional to the size of I. {FORMULA}. "
             f"{signs}. Empty: not studied. Cycles of order 3 and above are not shown."
         ),
         "charges": (

@@ -15,6 +15,7 @@ from cornerwise.render.figures.files import (
     overview_sheets,
     rendered,
 )
+from cornerwise.render.figures.lettering import width_of
 from cornerwise.render.figures.marks import Sheet, Symbols, Words
 from cornerwise.render.figures.style import INKS
 from cornerwise.render.rounding import decimals_for, number, with_uncertainty
@@ -121,6 +122,16 @@ def test_summaries_alone_have_no_curves_and_no_charges() -> None:
     assert overview_sheets(result, 85.0)["charges"] == []
 
 
+def _ends(words: Words) -> list[tuple[float, float]]:
+    """Both ends of a line of text (mm)."""
+    x, y = words.at
+    wide = width_of(words.text, words.size)
+    before = {"start": 0.0, "middle": wide / 2, "end": wide}[words.anchor]
+    if words.turned:
+        return [(x, y + before), (x, y + before - wide)]
+    return [(x - before, y), (x - before + wide, y)]
+
+
 def test_nothing_is_written_off_the_sheet(result: Result) -> None:
     figures = CycleFigures(result)
     for width in (85.0, 180.0):
@@ -128,7 +139,7 @@ def test_nothing_is_written_off_the_sheet(result: Result) -> None:
         sheets += [s for row in result.interactions for s in figures.of(row, width).values()]
         for sheet in sheets:
             for mark in sheet.marks:
-                places = [mark.at] if isinstance(mark, Words) else mark.points
+                places = _ends(mark) if isinstance(mark, Words) else mark.points
                 assert all(
                     -0.01 <= x <= sheet.width + 0.01 and -0.01 <= y <= sheet.height for x, y in places
                 ), sheet.title

@@ -74,8 +74,8 @@ def draw_construct(sheet: Sheet, panel: Panel, shown: ConstructCurves) -> None:
 
     if shown.curve is not None and shown.median_mv is not None:
         under, over = equal_areas(shown.curve, shown.median_mv)
-        sheet.area([(x(v), y(q)) for v, q in under], ink="below", tint=0.35)
-        sheet.area([(x(v), y(q)) for v, q in over], ink="above", tint=0.5)
+        sheet.area([(x(v), y(q)) for v, q in under], ink="below", tint=0.45)
+        sheet.area([(x(v), y(q)) for v, q in over], ink="above", tint=0.4)
     for charge in (0.0, 1.0):
         sheet.line([(x.start, y(charge)), (x.end, y(charge))], width=HAIRLINE, ink="rule")
     for used, symbol in ((True, "ring"), (False, "cross")):
@@ -140,7 +140,7 @@ def panels_sheet(constructs: Sequence[ConstructCurves], *, width: float, across:
         rule_below(sheet, panel.x, panel.y.start, most=5)
         rule_beside(sheet, panel.y, left, most=2, labelled=column == 0)
     middle = (rows * _PANEL_MM + _TOP - _BOTTOM) / 2
-    sheet.turned_words((2.6, middle), "charge moved, scaled between plateaus")
+    sheet.turned_words((2.6, middle), "scaled charge")
     sheet.words((width / 2, sheet.height - 0.9), "voltage (mV)", anchor="middle")
     sheet.foot(
         ["The dashed line is the median voltage Vm: the two shaded areas on either side of it are equal."]

@@ -18,7 +18,7 @@ _TOP = 1.0
 _KEY: tuple[tuple[Symbol, Ink, str], ...] = (
     ("disc", "below", "I > 0"),
     ("square", "above", "I < 0"),
-    ("ring", "below", "open: the interval holds 0"),
+    ("ring", "below", "open: not shown to differ from 0"),
 )
 
 
@@ -74,7 +74,7 @@ def _grid(sheet: Sheet, axis: Sequence[str], cell: float, margin: float) -> None
 
 
 def _symbol(row: InteractionRow) -> tuple[Symbol, Ink]:
-    """A disc for I > 0, a square for I < 0, open while 0 is in the interval."""
+    """A disc for I > 0, a square for I < 0, open while its sign is not established."""
     if (row.interaction or 0.0) >= 0:
         return ("disc" if row.favours else "ring"), "below"
     return ("square" if row.favours else "frame"), "above"

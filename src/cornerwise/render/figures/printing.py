@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import io
+import warnings
 from typing import TYPE_CHECKING, Any, Literal
 
 from .marks import Area, Line, Mark, Sheet, Symbols, Words
@@ -32,7 +33,8 @@ def printed(sheet: Sheet, form: Literal["pdf", "png"]) -> bytes:
     from matplotlib.figure import Figure
 
     settings: Any = _SETTINGS  # its keys are checked when they are set
-    with mpl.rc_context(settings):
+    with mpl.rc_context(settings), warnings.catch_warnings():
+        warnings.filterwarnings("ignore", "Glyph .* missing from font")  # drawn as an empty box
         figure = Figure(figsize=(sheet.width / MM_PER_INCH, sheet.height / MM_PER_INCH), dpi=PNG_DPI)
         FigureCanvasAgg(figure)
         axes = figure.add_axes((0.0, 0.0, 1.0, 1.0))

@@ -139,7 +139,17 @@ def _draw_edges(sheet: Sheet, row: InteractionRow, corners: Mapping[str, _Corner
         _arrow(sheet, start, end)
     if labelled:
         for edge, start, end in lines:
-            _edge_words(sheet, edge, start, end)
+            _edge_words(sheet, edge, start, end, _label_share(row, edge))
+
+
+def _label_share(row: InteractionRow, edge: Edge) -> float:
+    """How far along an edge its words stand: on a cube, away from where front and back edges cross."""
+    if row.order == 2:
+        return 0.5
+    if edge.mutation == row.mutations[2]:  # from the front face to the back
+        return 0.45
+    places = {label: carried for (label, _), carried in zip(row.corners, _corner_sets(3), strict=True)}
+    return 0.28 if 2 in places[edge.start] else 0.73
 
 
 def _arrow(sheet: Sheet, start: Point, end: Point) -> None:
@@ -156,17 +166,16 @@ def _arrow(sheet: Sheet, start: Point, end: Point) -> None:
     )
 
 
-def _edge_words(sheet: Sheet, edge: Edge, start: Point, end: Point) -> None:
+def _edge_words(sheet: Sheet, edge: Edge, start: Point, end: Point, share: float) -> None:
     """The mutation and what it adds: above a level edge, on a patch of paper over any other."""
     (x0, y0), (x1, y1) = start, end
     value = _energy_words(edge.difference, edge.std_uncertainty)
     value = value if value.startswith(("−", "not")) else f"+{value}"
     if y0 == y1:
-        x, room = (x0 + x1) / 2, abs(x1 - x0) + 1.0
+        x, room = x0 + share * (x1 - x0), 2 * min(share, 1 - share) * abs(x1 - x0) + 1.0
         sheet.name((x, y0 - 1.0), value, room, size=SMALL_TYPE, anchor="middle")
         sheet.name((x, y0 + 2.8), edge.mutation, room, size=SMALL_TYPE, anchor="middle")
         return
-    share = 0.5 if x0 == x1 else 0.45
     x, y = x0 + share * (x1 - x0), y0 + share * (y1 - y0)
     half = max(width_of(edge.mutation, SMALL_TYPE), width_of(value, SMALL_TYPE)) / 2 + 0.8
     sheet.box(x - half, y - 3.0, x + half, y + 3.0, ink="paper")
@@ -185,7 +194,7 @@ def _interaction(sheet: Sheet, row: InteractionRow, middle: Point) -> None:
     value = f"I = {_energy_words(row.interaction, row.std_uncertainty)}"
     shown, size = sized(value, 8.0, room)
     sheet.words((x, y - 4.2), shown, size=size, anchor="middle")
-    limits = signed(span((row.low, row.high), row.std_uncertainty))
+    limits = signed(span((row.low, row.high), row.std_uncertainty)) or "no interval"
     sheet.name((x, y - 0.8), f"{row.energy_unit} per channel", room, size=SMALL_TYPE, anchor="middle")
     sheet.name((x, y + 2.3), limits, room, size=SMALL_TYPE, anchor="middle")
     sheet.name((x, y + 5.4), _verdict(row).partition(",")[0], room, size=SMALL_TYPE, anchor="middle")

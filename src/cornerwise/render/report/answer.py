@@ -6,7 +6,7 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 
 from ...flags import FLAG_CODES
-from ...result import Result
+from ...result import InteractionRow, Result
 from ..legend import percent
 from ..methods import counted
 from .views import CycleView, typeset
@@ -117,24 +117,23 @@ def _sureness(result: Result, cycles: Sequence[CycleView]) -> list[str]:
     if strongest is not None and len(cycles) > 1:
         row = strongest.row
         place = (
-            "and stays first in the interval of its rank"
+            "and no other is shown to be as strong"
             if row.rank_high == 1
             else f"but the data allow it any rank from {row.rank_low} to {row.rank_high}"
         )
-        sentences.append(f"{row.cycle} has the largest energy, {place}.")
-    weak = [
-        one.row.cycle
-        for one in cycles
-        if one.row.interaction_verdict == "detected"
-        and one.row.p_adjusted is not None
-        and one.row.p_adjusted > 1 - result.settings.confidence
-    ]
-    if weak:
+        sentences.append(f"{row.cycle} is ranked first {place}.")
+    alone = [one.row.cycle for one in cycles if _excludes_0(one.row) and one.row.favours is None]
+    if alone:
+        named = ", ".join(alone[:_MOST]) + (f" and {len(alone) - _MOST} more" if len(alone) > _MOST else "")
         sentences.append(
-            f"Among so many cycles, {', '.join(weak[:_MOST])} could be chance: adjusted p above "
-            f"{1 - result.settings.confidence:.2g}."
+            f"Taken alone, the data of {named} exclude 0, but among so many cycles that may be chance: "
+            f"adjusted p above {1 - result.settings.confidence:.2g}."
         )
     return [typeset(sentence) for sentence in sentences]
+
+
+def _excludes_0(row: InteractionRow) -> bool:
+    return row.low is not None and row.high is not None and (row.low > 0 or row.high < 0)
 
 
 def _doubts(cycles: Sequence[CycleView]) -> list[Group]:
