@@ -117,11 +117,11 @@ def _sureness(result: Result, cycles: Sequence[CycleView]) -> list[str]:
     if strongest is not None and len(cycles) > 1:
         row = strongest.row
         place = (
-            "and no other is shown to be as strong"
+            ", and every other is shown to be weaker"
             if row.rank_high == 1
-            else f"but the data allow it any rank from {row.rank_low} to {row.rank_high}"
+            else f", but the data allow it any rank from {row.rank_low} to {row.rank_high}"
         )
-        sentences.append(f"{row.cycle} is ranked first {place}.")
+        sentences.append(f"{row.cycle} is ranked first{place}.")
     alone = [one.row.cycle for one in cycles if _excludes_0(one.row) and one.row.favours is None]
     if alone:
         named = ", ".join(alone[:_MOST]) + (f" and {len(alone) - _MOST} more" if len(alone) > _MOST else "")

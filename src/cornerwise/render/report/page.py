@@ -19,6 +19,7 @@ from .answer import answer
 from .views import CycleViews, cell_views, construct_view, typeset
 
 MOST_DRAWN_CYCLES = 60  # beyond it a cycle's figures are left out unless they are asked for
+_MOST_IN_ANSWER = 24  # cycles whose figure still fits beside the answer
 _OVERVIEW_TITLES = {
     "interactions": "All interactions, strongest first",
     "matrix": "Residue by residue",
@@ -51,7 +52,8 @@ def report_html(result: Result, *, cycle_figures: bool | None = None) -> str:
     style, script = _asset("style.css"), _asset("behaviour.js")
     paragraphs, references = methods_paragraphs(result)
     overview = _overview(result)
-    first = next((sheets[0] for kind, _, sheets in overview if kind == "interactions"), None)
+    few = len(result.interactions) <= _MOST_IN_ANSWER
+    first = next((sheets[0] for kind, _, sheets in overview if few and kind == "interactions"), None)
     return (
         _environment()
         .get_template("report.html")
@@ -63,7 +65,7 @@ def report_html(result: Result, *, cycle_figures: bool | None = None) -> str:
             cycles=cycles,
             drawn=drawn,
             first_figure=first,
-            overview=[one for one in overview if one[0] != "interactions" or len(one[2]) > 1],
+            overview=[one for one in overview if first is None or one[0] != "interactions"],
             constructs=[construct_view(row) for row in result.constructs],
             cells=cell_views(result),
             methods=[typeset(text) for text in paragraphs],
