@@ -8,7 +8,7 @@ from dataclasses import dataclass
 import numpy as np
 from scipy.special import stdtrit
 
-from ..flags import Flag
+from ..flags import Flag, FlagCode
 from .shapes import FloatArray
 
 MISSING_LIMIT = 0.02  # fraction of the charge outside the range at one end
@@ -53,15 +53,13 @@ class Evidence:
 def cell_flags(evidence: Evidence) -> tuple[Flag, ...]:
     """Every doubt the evidence raises, in a fixed order."""
     found = (
-        _unsaturated_low(evidence),
-        _unsaturated_high(evidence),
         _sloping(evidence),
         _reversal(evidence),
         _coarse(evidence),
         _noisy(evidence),
         _area_disagrees(evidence),
     )
-    return tuple(flag for flag in found if flag is not None)
+    return (*_unsaturated(evidence), *(flag for flag in found if flag is not None))
 
 
 def outlying_flags(subjects: Sequence[str], medians_mv: FloatArray) -> dict[str, Flag]:
@@ -102,34 +100,25 @@ def outlying_flags(subjects: Sequence[str], medians_mv: FloatArray) -> dict[str,
     return flags
 
 
-def _unsaturated_low(e: Evidence) -> Flag | None:
-    if e.missing_low <= MISSING_LIMIT and e.doubt_low_mv <= DOUBT_LIMIT_MV:
-        return None
-    return Flag(
-        code="unsaturated-low",
-        subject=e.subject,
-        message=f"an estimated {e.missing_low:.1%} of the charge moves below {e.lowest_mv:g} mV, where the "
-        f"curve begins; what has to be extrapolated makes the construct's median uncertain by "
-        f"{e.doubt_low_mv:.1f} mV ({MISSING_LIMIT:.0%} and {DOUBT_LIMIT_MV:g} mV are tolerated): start at a "
-        "more negative voltage",
-        value=e.missing_low,
-        limit=MISSING_LIMIT,
+def _unsaturated(e: Evidence) -> list[Flag]:
+    ends = (
+        (e.missing_low, e.doubt_low_mv, f"below {e.lowest_mv:g} mV, where the curve begins", "negative"),
+        (e.missing_high, e.doubt_high_mv, f"above {e.highest_mv:g} mV, where the curve ends", "positive"),
     )
-
-
-def _unsaturated_high(e: Evidence) -> Flag | None:
-    if e.missing_high <= MISSING_LIMIT and e.doubt_high_mv <= DOUBT_LIMIT_MV:
-        return None
-    return Flag(
-        code="unsaturated-high",
-        subject=e.subject,
-        message=f"an estimated {e.missing_high:.1%} of the charge moves above {e.highest_mv:g} mV, where the "
-        f"curve ends; what has to be extrapolated makes the construct's median uncertain by "
-        f"{e.doubt_high_mv:.1f} mV ({MISSING_LIMIT:.0%} and {DOUBT_LIMIT_MV:g} mV are tolerated): go on to a "
-        "more positive voltage",
-        value=e.missing_high,
-        limit=MISSING_LIMIT,
-    )
+    codes: tuple[FlagCode, FlagCode] = ("unsaturated-low", "unsaturated-high")
+    return [
+        Flag(
+            code=code,
+            subject=e.subject,
+            message=f"an estimated {missing:.1%} of the charge moves {where}; what has to be extrapolated "
+            f"makes the construct's median uncertain by {doubt:.1f} mV ({MISSING_LIMIT:.0%} and "
+            f"{DOUBT_LIMIT_MV:g} mV are tolerated): go on to a more {sign} voltage",
+            value=missing,
+            limit=MISSING_LIMIT,
+        )
+        for code, (missing, doubt, where, sign) in zip(codes, ends, strict=True)
+        if missing > MISSING_LIMIT or doubt > DOUBT_LIMIT_MV
+    ]
 
 
 def _sloping(e: Evidence) -> Flag | None:
