@@ -161,3 +161,15 @@ def test_work_that_takes_long_is_reported_on_stderr(monkeypatch: pytest.MonkeyPa
     done = _run("couple", PUBLISHED)
     assert "cornerwise: interactions, 1 of 1" in done.stderr
     assert "1 of 1" not in done.stdout
+
+
+def test_figures_need_a_folder_and_are_counted(tmp_path: Path) -> None:
+    _run("new", tmp_path / "trial")
+    refused = _run("couple", tmp_path / "trial", "--figures")
+    assert refused.exit_code == 2
+    assert "give --out DIR" in refused.stderr
+    done = _run("couple", tmp_path / "trial", "--out", tmp_path / "out", "--figures")
+    assert done.exit_code == 0
+    files = [path for path in (tmp_path / "out" / "figures").rglob("*") if path.is_file()]
+    assert f"{len(files)} files in figures into" in done.stderr
+    assert {path.suffix for path in files} == {".svg", ".pdf", ".png"}

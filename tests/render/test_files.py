@@ -128,3 +128,26 @@ def test_destination_is_checked_before_anything_is_computed(tmp_path: Path) -> N
         check_destination(tmp_path / "file", force=True)
     with pytest.raises(UsageError, match="is not a folder; make it first"):
         check_destination(tmp_path / "no" / "out", force=False)
+
+
+def test_a_path_below_the_folder_is_made(tmp_path: Path) -> None:
+    write_folder({"a.txt": "first", "figures/one/shape.svg": b"<svg/>"}, tmp_path / "out")
+    assert (tmp_path / "out" / "figures" / "one" / "shape.svg").read_bytes() == b"<svg/>"
+
+
+@pytest.mark.parametrize(
+    "name", ["../a.txt", "/etc/a.txt", "figures/../../a.txt", "a//b.txt", "c:a.txt", "a\\b.txt", ""]
+)
+def test_no_name_leads_out_of_the_folder(tmp_path: Path, name: str) -> None:
+    with pytest.raises(ValueError, match="no path below a folder"):
+        write_folder({name: "x"}, tmp_path / "out")
+    assert list(tmp_path.iterdir()) == []
+
+
+def test_the_report_is_among_the_files(result: Result) -> None:
+    page = result_files(result)["report.html"]
+    assert page.startswith("<!doctype html>")
+    assert "Charge-voltage curves of the corners" in page
+    assert (
+        "Charge-voltage curves of the corners" not in result_files(result, cycle_figures=False)["report.html"]
+    )
