@@ -6,7 +6,10 @@ import os
 import re
 from collections.abc import Callable, Iterable, Mapping, Sequence
 from concurrent.futures import ProcessPoolExecutor
+from functools import partial
 from multiprocessing import get_context
+from pathlib import Path
+from tempfile import TemporaryDirectory
 
 from ...result import CellRow, InteractionRow, Result, Table
 from ...surveying import Survey
@@ -15,6 +18,7 @@ from .budget import budget_sheets, cycle_budget
 from .charges import charge_sheets
 from .curves import ConstructCurves, curve_sheets, cycle_curves
 from .interactions import interaction_sheets
+from .lettering import common_font
 from .marks import Sheet
 from .matrix import matrix_sheet
 from .printing import printed
@@ -27,9 +31,9 @@ Progress = Callable[[str, int, int], None]
 _ALONE = 6  # sheets that are drawn sooner than a second process starts
 
 
-def rendered(sheet: Sheet, form: Format) -> bytes:
-    """Bytes of a sheet in a format, the same for the same sheet."""
-    return svg_file(sheet) if form == "svg" else printed(sheet, form)
+def rendered(sheet: Sheet, form: Format, font: Path | None = None) -> bytes:
+    """Bytes of a sheet in a format, the same for the same sheet; `font` as for `printing.printed`."""
+    return svg_file(sheet) if form == "svg" else printed(sheet, form, font)
 
 
 def cells_by_construct(cells: Table[CellRow]) -> dict[str, tuple[CellRow, ...]]:
@@ -164,11 +168,15 @@ def figure_files(
 def _files(sheets: Mapping[str, Sheet], progress: Progress | None, workers: int | None) -> dict[str, bytes]:
     """Files of named sheets, drawn by several processes when there are many."""
     many = workers if workers is not None else os.cpu_count() or 1
-    if many == 1 or len(sheets) <= _ALONE:
-        return _gather(sheets, map(_in_every_format, sheets.values()), progress)
-    # Fresh processes rather than copies of this one, whose numerical libraries may hold threads.
-    with ProcessPoolExecutor(max_workers=many, mp_context=get_context("spawn")) as pool:
-        return _gather(sheets, pool.map(_in_every_format, sheets.values(), chunksize=4), progress)
+    with TemporaryDirectory(ignore_cleanup_errors=True) as folder:
+        font = Path(folder) / "letters.ttf"
+        font.write_bytes(common_font())
+        draw = partial(_in_every_format, font=font)
+        if many == 1 or len(sheets) <= _ALONE:
+            return _gather(sheets, map(draw, sheets.values()), progress)
+        # Fresh processes rather than copies of this one, whose numerical libraries may hold threads.
+        with ProcessPoolExecutor(max_workers=many, mp_context=get_context("spawn")) as pool:
+            return _gather(sheets, pool.map(draw, sheets.values(), chunksize=4), progress)
 
 
 def _gather(
@@ -182,8 +190,8 @@ def _gather(
     return files
 
 
-def _in_every_format(sheet: Sheet) -> list[bytes]:
-    return [rendered(sheet, form) for form in FORMATS]
+def _in_every_format(sheet: Sheet, font: Path) -> list[bytes]:
+    return [rendered(sheet, form, font) for form in FORMATS]
 
 
 __all__ = [

@@ -73,6 +73,16 @@ def embedded_font(text: str) -> str:
     )
 
 
+def only_common(text: str) -> bool:
+    """Whether `common_font` holds every letter of a text."""
+    return set(text) <= set(_COMMON)
+
+
+def common_font() -> bytes:
+    """A font file with the letters that figures use unless labels bring others."""
+    return base64.b64decode(_subset(_COMMON))
+
+
 @lru_cache(maxsize=64)
 def _subset(letters: str) -> str:
     """The font with these letters only, base64; the same bytes each time."""
