@@ -33,9 +33,23 @@ def test_new_check_and_couple_work_on_each_other(tmp_path: Path) -> None:
     assert "wrote result.json" in coupled.stderr
     written = sorted(p.name for p in (tmp_path / "results").iterdir())
     assert written == [
-        "budget.csv", "cells.csv", "constructs.csv", "interactions.csv", "midpoints.csv", "report.html",
-        "result.json",
+        "budget.csv", "cells.csv", "constructs.csv", "interactions.csv", "midpoints.csv", "ranking.csv",
+        "report.html", "result.json",
     ]  # fmt: skip
+
+
+def test_rank_in_words_and_as_json(tmp_path: Path) -> None:
+    _run("new", tmp_path / "trial")
+    told = _run("rank", tmp_path / "trial", "--by-lower-limit", "--first", "1")
+    assert told.exit_code == 0
+    assert told.stdout.splitlines()[1].split()[:2] == ["1", "D171N/K232Q"]
+    assert "ranked by the lower limit of the absolute size" in told.stdout
+    assert 'rank_by = "lower bound"' in told.stdout
+    document = json.loads(_run("rank", tmp_path / "trial", "--json").stdout)
+    assert document["schema"] == "cornerwise-ranking/1"
+    (row,) = document["ranking"]
+    assert (row["rank"], row["opposite_charges"]) == (1, "opposite charges")
+    assert _run("rank", tmp_path / "trial", "--first", "0").exit_code == 2
 
 
 def test_new_keeps_what_is_there(tmp_path: Path) -> None:

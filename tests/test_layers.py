@@ -24,6 +24,7 @@ FLOORS = [
     {"tables"},
     {"rows"},
     {"result"},
+    {"result_reading"},
     {"charge_trace"},
     {"construct_rows", "interaction_rows", "backgrounds"},
     {"coupling", "surveying"},

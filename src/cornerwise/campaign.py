@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from typing import Literal
 
 import numpy as np
@@ -209,3 +209,26 @@ class Campaign:
             if construct.label == label:
                 return construct
         raise KeyError(label)
+
+
+def ranked_by(campaign: Campaign, *, lower_limit: bool = False, first: int | None = None) -> Campaign:
+    """The campaign with another order of its ranking or another number of first places.
+
+    Parameters
+    ----------
+    campaign : Campaign
+        As it was read.
+    lower_limit : bool, optional
+        Order by the lower limit of the absolute size.
+    first : int, optional
+        How many count as the first.
+    """
+    settings = campaign.settings
+    order: RankOrder = "lower bound" if lower_limit else settings.rank_by
+    defaulted = tuple(
+        key
+        for key in settings.defaulted
+        if not (key == "rank_by" and lower_limit) and not (key == "first" and first is not None)
+    )
+    changed = replace(settings, rank_by=order, first=first or settings.first, defaulted=defaulted)
+    return replace(campaign, settings=changed)

@@ -226,6 +226,39 @@ def couple(
 
 
 @app.command()
+def rank(
+    path: _Campaign,
+    by_lower_limit: Annotated[
+        bool,
+        typer.Option("--by-lower-limit", help="Order by the lower limit of the size, not by the estimate."),
+    ] = False,
+    first: Annotated[
+        int | None,
+        typer.Option(min=1, metavar="K", help="Give the probability of being among the first K."),
+    ] = None,
+    as_json: _Json = False,
+) -> None:
+    """Rank the cycles by strength, with the ranks the data allow.
+
+    \b
+    For example:
+      cornerwise rank trial
+      cornerwise rank trial --by-lower-limit --first 5
+    """  # noqa: D301
+    from . import couple as run
+    from . import read
+    from .campaign import ranked_by
+    from .render.machine import ranking_json
+    from .render.ranking import print_ranking
+
+    result = run(ranked_by(read(path), lower_limit=by_lower_limit, first=first), _progress())
+    if as_json:
+        print(ranking_json(result), end="")
+    else:
+        print_ranking(result, sys.stdout)
+
+
+@app.command()
 def explain(
     path: _Campaign,
     cycle: Annotated[str, typer.Argument(metavar="CYCLE", help="Name of a cycle in the coupling table.")],

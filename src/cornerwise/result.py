@@ -3,7 +3,9 @@
 from __future__ import annotations
 
 import dataclasses
+import hashlib
 import json
+from collections.abc import Mapping
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
@@ -137,7 +139,14 @@ class Result:
             "inputs": [_plain(file) for file in self.inputs],
             "versions": self.versions,
         }
+        document["checksum"] = checksum(document)
         return json.dumps(document, indent=1, ensure_ascii=False, allow_nan=False) + "\n"
+
+
+def checksum(document: Mapping[str, object]) -> str:
+    """SHA-256 of a result's contents, so that an edited ``result.json`` is told from what was computed."""
+    text = json.dumps(document, sort_keys=True, separators=(",", ":"), allow_nan=False)
+    return hashlib.sha256(text.encode()).hexdigest()
 
 
 def _plain(record: object) -> dict[str, object]:

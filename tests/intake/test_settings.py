@@ -27,6 +27,11 @@ reference_voltage_mV = -60
 charge = { value_e0 = 12, sem_e0 = 0, citation = "an invented source, table 2" }
 charge_method = "noise"
 correct_sloping_plateaus = true
+interval = "monte-carlo"
+adjustment = "benjamini-hochberg"
+simultaneous = true
+rank_by = "lower bound"
+first = 5
 """
 
 
@@ -49,6 +54,11 @@ def test_every_key(tmp_path: Path) -> None:
         charge=StatedCharge(value_e0=12.0, sem_e0=0.0, citation="an invented source, table 2"),
         charge_method="noise",
         correct_sloping_plateaus=True,
+        interval="monte-carlo",
+        adjustment="benjamini-hochberg",
+        simultaneous=True,
+        rank_by="lower bound",
+        first=5,
         defaulted=(),
     )
 
@@ -58,7 +68,7 @@ def test_what_is_left_out_is_named(tmp_path: Path) -> None:
     assert settings.defaulted == (
         "title", "temperature_C", "subunits", "energy_unit", "confidence", "replicates", "threshold",
         "shortcut_tolerance", "charge_margin", "voltage_offset_mV", "reference_voltage_mV", "charge_method",
-        "correct_sloping_plateaus",
+        "correct_sloping_plateaus", "interval", "adjustment", "simultaneous", "rank_by", "first",
     )  # fmt: skip
     assert settings.temperature_c == Settings(wild_type="WT").temperature_c
 
@@ -80,6 +90,11 @@ def test_what_is_left_out_is_named(tmp_path: Path) -> None:
         ("voltage_offset_mV", ["-0.1", "true", "501", '"2 mV"']),
         ("reference_voltage_mV", ["500.1", "-500.1", "true", '"-60"', "nan"]),
         ("charge_method", ["1", '""', '" "', '["noise"]', '"a\\tb"']),
+        ("interval", ['"z"', '"Monte-Carlo"', "1", '["propagated"]']),
+        ("adjustment", ['"none"', "true"]),
+        ("simultaneous", ['"true"', "1"]),
+        ("rank_by", ['"bound"', "1"]),
+        ("first", ["0", "1.0", "true"]),
         ("charge", ['"shared"', "13.0", "true", "[13.0, 0.5]"]),
     ],
 )

@@ -66,8 +66,9 @@ def with_stored_values(path: Path, values: dict[str, str]) -> None:
     for formula, value in values.items():
         for name in parts:
             if name.startswith("xl/worksheets/"):
-                old = f"<f>{formula}</f><v />".encode()
-                parts[name] = parts[name].replace(old, f"<f>{formula}</f><v>{value}</v>".encode())
+                new = f"<f>{formula}</f><v>{value}</v>".encode()
+                for empty in ("<v />", "<v/>", "<v></v>"):  # as the XML library at hand writes it
+                    parts[name] = parts[name].replace(f"<f>{formula}</f>{empty}".encode(), new)
     buffer = io.BytesIO()
     with zipfile.ZipFile(buffer, "w") as archive:
         for name, data in parts.items():

@@ -65,6 +65,13 @@ def test_nothing_is_rounded_and_nothing_that_does_not_apply_is_zero(result: Resu
     assert constructs[2]["charge_source"] == "wild type"
 
 
+def test_only_higher_orders_have_backgrounds(result: Result) -> None:
+    assert "backgrounds.csv" not in result_files(result)
+    first, *rest = result_files(result)["ranking.csv"].splitlines()
+    assert first.startswith("rank,cycle,interaction,energy_unit,low,high,strength_low,rank_low,rank_high")
+    assert [line.split(",")[0] for line in rest] == ["1"]
+
+
 def test_only_a_homomer_has_energies_per_subunit(result: Result) -> None:
     assert "per_subunit.csv" not in result_files(result)
     constructs = [construct(label, [-40.0, -41.0, -39.0]) for label in ("WT", "E5A", "R9Q", "E5A/R9Q")]

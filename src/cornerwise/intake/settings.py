@@ -12,11 +12,12 @@ from __future__ import annotations
 import math
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass, field
-from typing import Any
+from typing import Any, get_args
 
 from .. import plausible
-from ..campaign import ChargePolicy, Settings, StatedCharge
+from ..campaign import ChargePolicy, IntervalKind, RankOrder, Settings, StatedCharge
 from ..errors import Origin
+from ..intervals import Adjustment
 from ..units import ENERGY_UNITS
 from .findings import Findings, listing, nearest, shown
 
@@ -101,6 +102,15 @@ def _energy_unit(value: object) -> str:
     return str(value)
 
 
+def _word(*allowed: str) -> Callable[[object], str]:
+    def read(value: object) -> str:
+        if value not in allowed:
+            raise ValueError
+        return str(value)
+
+    return read
+
+
 # Stands for a policy that was refused, so that no charges are called for in its name.
 _UNKNOWN_CHARGE = StatedCharge(value_e0=1.0, sem_e0=0.0)
 
@@ -165,6 +175,20 @@ RULES = (
         key="correct_sloping_plateaus", attribute="correct_sloping_plateaus", read=_yes_or_no,
         expected="true or false",
     ),
+    Rule(
+        key="interval", attribute="interval", read=_word(*get_args(IntervalKind)),
+        expected=listing(f'"{word}"' for word in get_args(IntervalKind)),
+    ),
+    Rule(
+        key="adjustment", attribute="adjustment", read=_word(*get_args(Adjustment)),
+        expected=listing(f'"{word}"' for word in get_args(Adjustment)),
+    ),
+    Rule(key="simultaneous", attribute="simultaneous", read=_yes_or_no, expected="true or false"),
+    Rule(
+        key="rank_by", attribute="rank_by", read=_word(*get_args(RankOrder)),
+        expected=listing(f'"{word}"' for word in get_args(RankOrder)),
+    ),
+    Rule(key="first", attribute="first", read=_whole(1), expected="a whole number, at least 1"),
 )  # fmt: skip
 
 KEYS = (*(rule.key for rule in RULES), "charge")

@@ -44,7 +44,10 @@ def result_files(result: Result, *, cycle_figures: bool | None = None) -> dict[s
     """
     from .report.page import report_html  # with its templates, only when files are written
 
-    shared = {"per_subunit.csv": _csv(result.per_subunit)} if len(result.per_subunit) else {}
+    some: dict[str, Table[Row]] = {
+        "per_subunit.csv": result.per_subunit,
+        "backgrounds.csv": result.backgrounds,
+    }
     return {
         "result.json": result.to_json(),
         "interactions.csv": _csv(result.interactions),
@@ -52,7 +55,8 @@ def result_files(result: Result, *, cycle_figures: bool | None = None) -> dict[s
         "cells.csv": _csv(result.cells),
         "midpoints.csv": _csv(result.midpoints),
         "budget.csv": _csv(result.budget),
-        **shared,
+        "ranking.csv": _csv(result.ranking),
+        **{name: _csv(table) for name, table in some.items() if len(table)},
         "report.html": report_html(result, cycle_figures=cycle_figures),
     }
 

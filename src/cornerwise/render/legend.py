@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterable
 
 from ..campaign import Settings, StatedCharge
+from ..result import BudgetRow, Result
 
 FORMULA = "I = sum over the corners of s F Q Vm; s = (-1)^(order - mutations in the corner)"
 SIGN_OF_PAIR = (
@@ -15,6 +16,8 @@ SIGN_OF_ODD = (
     "I > 0: the native residues' joint interaction favours the activated state; I < 0: the resting one"
 )
 SIGN_OF_ODD_ORDER = "orders 3, 5, ...: the wild type enters with a minus sign, so read the two the other way"
+_CYCLES_TOLD = 3
+
 CAUTION = "a coupling energy is a difference between two states and no proof of a contact"
 
 
@@ -45,6 +48,26 @@ def percent(fraction: float) -> str:
     return f"{100 * fraction:.10g} %"
 
 
+def interval_words(settings: Settings) -> str:
+    """Level of the headline interval, and its kind where that is not the usual one."""
+    kind = " Monte Carlo" if settings.interval == "monte-carlo" else ""
+    return f"{percent(settings.confidence)}{kind} interval"
+
+
+def budget_sentence(result: Result) -> list[str]:
+    """Largest part of the uncertainty of the strongest cycles; nothing where there is no uncertainty."""
+    largest: dict[str, BudgetRow] = {}
+    for part in result.budget:  # the largest of each cycle comes first
+        if part.share is not None:
+            largest.setdefault(part.cycle, part)
+    parts = [largest[row.cycle] for row in result.ranking if row.cycle in largest]
+    if not parts:
+        return []
+    told = "; ".join(f"{part.cycle} {part.share:.0%} {part.source}" for part in parts[:_CYCLES_TOLD])
+    rest = "; the other cycles' in budget.csv" if len(parts) > _CYCLES_TOLD else ""
+    return [f"largest part of the squared uncertainty: {told}{rest}"]
+
+
 def _charge_words(settings: Settings) -> str:
     if isinstance(settings.charge, StatedCharge):
         return f"{{ value_e0 = {settings.charge.value_e0:g}, sem_e0 = {settings.charge.sem_e0:g} }}"
@@ -72,6 +95,11 @@ def setting_values(settings: Settings) -> dict[str, str]:
         "charge_method": "the wild type's"
         if settings.charge_method is None
         else f'"{settings.charge_method}"',
+        "interval": f'"{settings.interval}"',
+        "adjustment": f'"{settings.adjustment}"',
+        "simultaneous": "true" if settings.simultaneous else "false",
+        "rank_by": f'"{settings.rank_by}"',
+        "first": str(settings.first),
     }
 
 

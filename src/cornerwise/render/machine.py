@@ -5,9 +5,11 @@ from __future__ import annotations
 import dataclasses
 import json
 
+from ..result import Result
 from ..surveying import Survey
 
 SURVEY_SCHEMA = "cornerwise-survey/1"
+RANKING_SCHEMA = "cornerwise-ranking/1"
 
 
 def survey_json(found: Survey) -> str:
@@ -21,5 +23,16 @@ def survey_json(found: Survey) -> str:
         "cycles": found.cycles,
         "incomplete": [{"construct": label, "lacks": missing} for label, missing in found.incomplete],
         "flags": [dataclasses.asdict(flag) for flag in found.flags],
+    }
+    return json.dumps(document, indent=1, ensure_ascii=False, allow_nan=False) + "\n"
+
+
+def ranking_json(result: Result) -> str:
+    """Text of a ranking as JSON, full precision."""
+    document = {
+        "schema": RANKING_SCHEMA,
+        "settings": dataclasses.asdict(result.settings),
+        "ranking": [dataclasses.asdict(row) for row in result.ranking],
+        "notes": result.notes,
     }
     return json.dumps(document, indent=1, ensure_ascii=False, allow_nan=False) + "\n"

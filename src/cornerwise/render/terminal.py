@@ -14,7 +14,15 @@ from rich.text import Text
 from ..flags import FLAG_CODES, Flag
 from ..result import Result
 from ..surveying import Survey, SurveyRow
-from .legend import CAUTION, FORMULA, percent, settings_sentences, sign_sentences, unit_phrase
+from .legend import (
+    CAUTION,
+    FORMULA,
+    budget_sentence,
+    interval_words,
+    settings_sentences,
+    sign_sentences,
+    unit_phrase,
+)
 from .ordering import by_strength
 from .rounding import span, with_uncertainty
 
@@ -72,12 +80,11 @@ def _verdict(word: str) -> Text:
 
 
 def _interaction_grid(result: Result, marks: dict[str, str], plus_minus: str) -> Grid:
-    unit, level = result.settings.energy_unit, percent(result.settings.confidence)
     grid = _grid(
         [
             ("cycle", False),
-            (f"I ({unit})", True),
-            (f"{level} interval", True),
+            (f"I ({result.settings.energy_unit})", True),
+            (interval_words(result.settings), True),
             ("favours", False),
             ("verdict", False),
             ("shortcut", False),
@@ -164,7 +171,9 @@ def _show_result(result: Result, screen: Console) -> None:
         [f"Background of every construct: {'/'.join(result.background)}"] if result.background else []
     )
     notes = [f"Note: {note}" for note in result.notes]
-    _print_lines(screen, [FORMULA, *sign_sentences(orders), CAUTION, *background, *notes])
+    _print_lines(
+        screen, [FORMULA, *sign_sentences(orders), CAUTION, *budget_sentence(result), *background, *notes]
+    )
     screen.print()
     _print_lines(screen, settings_sentences(result.settings))
 

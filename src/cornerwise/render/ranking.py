@@ -1,0 +1,73 @@
+"""The ranking as a person reads it."""
+
+from __future__ import annotations
+
+from typing import IO
+
+from rich.table import Table as Grid
+from rich.text import Text
+
+from ..result import RankRow, Result
+from .legend import CAUTION, interval_words, percent, settings_sentences, sign_sentences, unit_phrase
+from .rounding import decimals_for, number, span
+from .terminal import screen_on
+
+_ORDERS = {
+    "estimate": "by the size of the estimate",
+    "lower bound": "by the lower limit of the absolute size",
+}
+
+
+def print_ranking(result: Result, stream: IO[str]) -> None:
+    """Cycles in order of strength, with what can be said about that order.
+
+    Parameters
+    ----------
+    result : Result
+        What `cornerwise.couple` returned.
+    stream : text stream
+        At a terminal the table is fitted to its width; elsewhere the text is plain and never cut.
+    """
+    settings, level = result.settings, percent(result.settings.confidence)
+    uncertainty = {row.cycle: row.std_uncertainty for row in result.interactions}
+    grid = Grid(box=None, padding=(0, 1, 0, 0), pad_edge=False, header_style="bold")
+    headers = ("rank", "cycle", "I", interval_words(settings), "at least", "ranks", f"first {settings.first}",
+               "shrunken", "verdict", "native pair")  # fmt: skip
+    for header in headers:
+        words = header in ("cycle", "verdict", "native pair")
+        grid.add_column(Text(header), justify="left" if words else "right", overflow="fold")
+    for row in result.ranking:
+        grid.add_row(*map(Text, _line(row, uncertainty[row.cycle])))
+    legend = [
+        f"I, interval, at least and shrunken in {unit_phrase(settings)}; ranked {_ORDERS[settings.rank_by]}",
+        "at least: lower limit of the absolute size; 0 where the interval includes 0",
+        f"ranks: those the data allow at {level}; first {settings.first}: probability of being among them",
+        "shrunken: the strongest of many tend to exaggerate; this is what to expect of a repetition",
+        "native pair: opposite charges make a candidate salt bridge and no more; distances as stated",
+        *sign_sentences({row.order for row in result.interactions}),
+        CAUTION,
+    ]
+    with screen_on(stream) as screen:
+        screen.print(grid)
+        screen.print()
+        for line in [*legend, "", *settings_sentences(settings)]:
+            screen.print(Text(line))
+
+
+def _line(row: RankRow, uncertainty: float | None) -> list[str]:
+    decimals = decimals_for(uncertainty)
+    native: list[str] = [] if row.opposite_charges is None else [row.opposite_charges]
+    if row.distance_angstrom is not None:
+        native.append(f"{row.distance_angstrom:.1f} A")
+    return [
+        str(row.rank),
+        row.cycle,
+        number(row.interaction, decimals),
+        span((row.low, row.high), uncertainty),
+        number(row.strength_low, decimals),
+        f"{row.rank_low} to {row.rank_high}",
+        "" if row.first_probability is None else f"{row.first_probability:.2f}",
+        number(row.shrunken, decimals),
+        row.interaction_verdict,
+        ", ".join(native),
+    ]
