@@ -8,7 +8,7 @@ import pytest
 
 from cornerwise.campaign import Settings
 from cornerwise.intake import charges, curves, medians, openings
-from cornerwise.intake.settings import KEYS, TABLES
+from cornerwise.intake.settings import KEYS, SECTIONS
 from cornerwise.render.legend import setting_values
 
 PAGE = (Path(__file__).parents[1] / "docs" / "formats.md").read_text(encoding="utf-8")
@@ -22,7 +22,7 @@ def test_every_key_has_its_row() -> None:
 def test_every_key_is_in_the_starter() -> None:
     text = resources.files("cornerwise").joinpath("starter_campaign", "campaign.toml").read_text("utf-8")
     assert [key for key in KEYS if not re.search(rf"^(# )?{key} = ", text, flags=re.MULTILINE)] == []
-    assert [table for table in TABLES if f"[{table}]" not in text] == []
+    assert [table for table in SECTIONS if f"[{table}]" not in text] == []
 
 
 def test_every_key_is_printed_with_the_result() -> None:

@@ -62,6 +62,25 @@ def too_narrow(voltage_mv: FloatArray) -> bool:
     return bool(np.ptp(voltage_mv) <= NARROWEST_RANGE_MV)
 
 
+def volts_among_millivolts(voltage_mv: FloatArray) -> NDArray[np.bool_]:
+    """Which voltages of one cell, in mV, shape (n,) and rising, are most likely volts typed by mistake.
+
+    Such a value is tiny, lies where the cell's steps leave no room for it, and a thousandfold fills a gap
+    between the other voltages or goes on by a step where they end. Voltages near zero of a grid that is
+    shifted as a whole, as after a correction of the junction potential, pass.
+    """
+    tiny = (np.abs(voltage_mv) < VOLTAGE_LIMIT_MV / 1000) & (voltage_mv != 0)
+    others = voltage_mv[~tiny]
+    if not tiny.any() or len(others) < FEWEST_POINTS - 1:
+        return np.zeros(len(voltage_mv), dtype=bool)
+    step = float(np.median(np.diff(others)))
+    away = np.abs(voltage_mv[:, None] - others).min(axis=1)
+    meant_away = np.abs(1000 * voltage_mv[:, None] - others).min(axis=1)
+    crowded = away <= step / 2
+    fitting = (meant_away > step / 2) & (meant_away < 1.5 * step)
+    return np.asarray(tiny & crowded & fitting)
+
+
 def possible_temperature(temperature_c: float) -> bool:
     """Whether a recording can be made at this temperature in degrees Celsius."""
     low, high = TEMPERATURE_RANGE_C

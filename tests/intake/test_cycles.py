@@ -74,7 +74,7 @@ def test_no_double_mutant(tmp_path: Path) -> None:
         (entry('["E181A", "D300N"]'), "mutation D300N, which no construct carries; .*correct it, or add"),
         (
             entry('["E181A", "R212Q"]') + "colour = 1\n",
-            "unknown key 'colour'; expected only name and mutations",
+            "unknown key 'colour'; expected only the keys name, mutations",
         ),
         (entry('["E181A", "R212Q"]') + "mutation = 1\n", "did you mean mutations"),
         (entry('["E181A", "R212Q"]') + "seed = 1\n", "unknown key 'seed'.*move seed above"),

@@ -111,7 +111,7 @@ def test_the_same_cell_twice(reason: str, tmp_path: Path) -> None:
             'reason = "leak rose"\n',
             'reason = "x"\nreasons = "y"\n',
             "reasons",
-            "only construct, .*mean reason",
+            "unknown key .*mean reason",
         ),
         ('reason = "leak rose"\n', 'reason = "x"\namplifier = 1\n', "amplifier", "unknown key.*delete it"),
         ('reason = "leak rose"\n', 'reason = "x"\nseed = 1\n', "seed", "move seed above the first"),

@@ -6,7 +6,7 @@ import pytest
 
 from cornerwise.campaign import Settings, StatedCharge
 from cornerwise.intake import read
-from intake.writing import assert_refused, folder, problems
+from intake.writing import assert_refused, changed, curve_rows, folder, problems
 
 CHARGE = "charge = { value_e0 = 13.0, sem_e0 = 0.5 }\n"
 BASE = 'wild_type = "WT"\n' + CHARGE
@@ -137,8 +137,6 @@ def test_energy_units(unit: str, tmp_path: Path) -> None:
         ("temperature", "temperature_C"),
         ("Seed", "seed"),
         ("voltage_offset_mv", "voltage_offset_mV"),
-        ("cycles", "cycle"),
-        ("excluded", "exclude"),
         ("reference_voltage", "reference_voltage_mV"),
     ],
 )
@@ -147,6 +145,25 @@ def test_unknown_keys(key: str, meant: str, tmp_path: Path) -> None:
     assert_refused(
         path, file="campaign.toml", column=key, match=f"unknown key '{key}'.*did you mean {meant}\\?"
     )
+
+
+@pytest.mark.parametrize("section", ["cycle", "exclude"])
+def test_a_misspelt_section_is_read_on(section: str, tmp_path: Path) -> None:
+    """So the fault inside it is told in the same run."""
+    found = problems(folder(tmp_path / "a", f"{BASE}[[{section}s]]\nname = 3\ncell = 3\n"))
+    assert [str(problem.origin) for problem in found[:1]] == [f"campaign.toml, row 3, column {section}s"]
+    assert f"did you mean {section}?" in str(found[0])
+    assert [problem.origin.row for problem in found[1:]]  # of what stands in the entry
+
+
+def test_a_misspelt_wild_type_is_told_once_and_hides_nothing(tmp_path: Path) -> None:
+    spoilt = changed(curve_rows(), 12, "construct", "WT\u200b")
+    found = problems(folder(tmp_path / "a", f'wild_typ = "WT"\nseed = -1\n{CHARGE}', curves=spoilt))
+    texts = [str(problem) for problem in found]
+    assert len([text for text in texts if "wild" in text]) == 1
+    assert "did you mean wild_type?" in texts[0]
+    assert any("number -1" in text for text in texts)
+    assert any("invisible" in text for text in texts)
 
 
 def test_a_key_that_resembles_none(tmp_path: Path) -> None:

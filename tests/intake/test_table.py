@@ -6,7 +6,17 @@ import pytest
 
 from cornerwise.intake import read
 from cornerwise.intake.numbers import parse_number
-from intake.writing import LABELS, Rows, assert_refused, content, curve_rows, folder, problems, text_of
+from intake.writing import (
+    LABELS,
+    Rows,
+    assert_refused,
+    changed,
+    content,
+    curve_rows,
+    folder,
+    problems,
+    text_of,
+)
 
 
 def with_header(position: int, name: str) -> Rows:
@@ -30,6 +40,40 @@ def with_header(position: int, name: str) -> Rows:
 def test_headers_that_are_nearly_right(position: int, name: str, match: str, tmp_path: Path) -> None:
     path = folder(tmp_path / "a", curves=with_header(position, name))
     assert_refused(path, file="curves.csv", row=1, column=name, match=match)
+
+
+def test_a_missing_unit_hides_no_other_fault(tmp_path: Path) -> None:
+    rows = with_header(2, "voltage")
+    rows[3][2] = rows[2][2]
+    rows[5][1] = ""
+    rows[7][2] = "900"
+    found = " ".join(map(str, problems(folder(tmp_path / "a", curves=rows))))
+    for fault in ("put the unit", "a second value at -100 mV", "expected a label", "900 mV"):
+        assert fault in found
+
+
+@pytest.mark.parametrize("factor", [1.0, 0.001])
+def test_without_a_unit_no_fault_is_made_of_the_unit(factor: float, tmp_path: Path) -> None:
+    rows = with_header(2, "voltage")
+    for row in rows[1:]:
+        row[2] = str(factor * float(row[2]))
+    assert_refused(folder(tmp_path / "a", curves=rows), file="curves.csv", row=1, match="put the unit",
+                   column="voltage")  # fmt: skip
+
+
+@pytest.mark.parametrize(("row", "volts"), [(4, "-0.08"), (5, "-0.06"), (2, "-0.12"), (9, "0.02")])
+def test_one_value_in_volts_among_millivolts(row: int, volts: str, tmp_path: Path) -> None:
+    path = folder(tmp_path / "a", curves=changed(curve_rows(), row, "voltage_mV", volts))
+    assert_refused(path, file="curves.csv", row=row, column="voltage_mV",
+                   match=f"{volts} mV.*a value in volts among")  # fmt: skip
+
+
+@pytest.mark.parametrize("offset", [0.4, -0.3, 0.05, 10.2])
+def test_corrected_voltages_near_zero_are_no_volts(offset: float, tmp_path: Path) -> None:
+    rows = curve_rows()
+    for row in rows[1:]:
+        row[2] = f"{float(row[2]) + offset:g}"
+    assert read(folder(tmp_path / "a", curves=rows)).constructs
 
 
 def test_an_unknown_column(tmp_path: Path) -> None:

@@ -72,7 +72,8 @@ def curves_of(points: Points, findings: Findings) -> tuple[Curve, ...]:
     points : Points
         All points, in any order.
     findings : Findings
-        Takes cells with two batches, holding voltages or phases, and curves that cannot be.
+        Takes cells with two batches, holding voltages or phases, voltages in two units, and curves that
+        cannot be.
 
     Returns
     -------
@@ -84,6 +85,8 @@ def curves_of(points: Points, findings: Findings) -> tuple[Curve, ...]:
     curves, narrow = [], []
     for members in cells_in(points, named):
         curve = _curve(points, members)
+        if np.isfinite(points.voltage_mv[members]).all() and refuse_volts(points, members, findings):
+            continue
         if is_steady(points, members) and sound[members].all():
             fault = _shape_fault(curve, points.table.raw.lost)
             if fault == "narrow":
@@ -94,6 +97,20 @@ def curves_of(points: Points, findings: Findings) -> tuple[Curve, ...]:
                 curves.append(curve)
     refuse_narrow(points, narrow, others=len(curves), findings=findings)
     return tuple(sorted(curves, key=lambda curve: (curve.construct, curve.cell)))
+
+
+def refuse_volts(points: Points, members: IntArray, findings: Findings) -> bool:
+    """Whether a cell has values in volts among its millivolts, each of which is a fault."""
+    wrong = members[plausible.volts_among_millivolts(points.voltage_mv[members])]
+    for point in wrong.tolist():
+        value = points.voltage_mv[point]
+        findings.add(
+            points.table.origin(int(points.index[point]), "voltage"),
+            found=f"{value:g} mV in the cell {_name(points, point)}, a value in volts among millivolts",
+            expected=f"{1000 * value:g} mV, which its other voltages leave out",
+            remedy="correct the value",
+        )
+    return bool(wrong.size)
 
 
 def cells_in(points: Points, named: IntArray) -> list[IntArray]:

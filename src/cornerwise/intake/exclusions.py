@@ -15,6 +15,7 @@ from ..mutations import Cycle
 from .findings import Findings, listing, nearest, shown
 from .parts import Parts
 from .settings import KEYS, Document, say, visible_text
+from .spelling import meant_keys
 
 EXCLUDE_KEYS = ("construct", "cell", "reason")
 MOST_LISTED = 12  # cells named where one is not known
@@ -55,16 +56,14 @@ def read_exclusions(document: Document, findings: Findings) -> dict[Exclusion, O
 def _exclusion(
     document: Document, number: int, entry: Mapping[str, object], findings: Findings
 ) -> Exclusion | None:
-    for key in entry:
-        if key not in EXCLUDE_KEYS:
-            close = nearest(key, EXCLUDE_KEYS)
-            remedy = f"did you mean {close}?" if close else "delete it"
-            if key in KEYS:
-                remedy = f"move {key} above the first [[exclude]]"
-            findings.add(
-                document.origin("exclude", number, key), found=f"the unknown key {shown(key)}",
-                expected="only construct, cell and reason", remedy=remedy,
-            )  # fmt: skip
+    meant = meant_keys(
+        entry,
+        EXCLUDE_KEYS,
+        findings,
+        origin=lambda key: document.origin("exclude", number, key),
+        misplaced=lambda key: f"move {key} above the first [[exclude]]" if key in KEYS else None,
+    )
+    entry = {meant[key]: value for key, value in entry.items() if key in meant}
     values: dict[str, str] = {}
     for key in EXCLUDE_KEYS:
         try:

@@ -62,7 +62,8 @@ def match_header(
     fields : sequence of Field
         The columns it may have.
     findings : Findings
-        Takes unknown, doubled, missing columns and missing units.
+        Takes unknown, doubled, missing columns and missing units. A column whose header is at fault but can
+        be told is read on, so that no fault in it is hidden.
     cells : collection of int
         Columns that hold one cell each (the wide layout) and need no known name.
 
@@ -72,21 +73,24 @@ def match_header(
         Index of the column of each field that was found, by its name.
     """
     found: dict[str, int] = {}
-    meant: set[str] = set()  # columns that are there, if under a wrong name
+    at_fault: dict[str, int] = {}  # columns that are there, if under a wrong name
     by_header = {header: field for field in fields for header in field.headers}
     for index, header in enumerate(raw.header):
         field = by_header.get(header)
         if index in cells:
             continue
         if field is None:
-            meant.add(_refuse_header(raw, index, fields, findings))
+            meant = _refuse_header(raw, index, fields, findings)
+            if meant is not None:
+                at_fault.setdefault(meant.name, index)
         elif field.name not in found:
             found[field.name] = index
         elif raw.header[found[field.name]] != header:
             _refuse_second(raw, header, raw.header[found[field.name]], findings)
     refuse_doubled(raw, findings)
+    found = at_fault | found
     for field in fields:
-        if field.required and field.name not in found and field.base not in meant:
+        if field.required and field.name not in found:
             findings.add(
                 raw.header_origin(field.headers[0]),
                 found=f"the columns {', '.join(map(shown, raw.header))}",
@@ -117,8 +121,8 @@ def _refuse_second(raw: RawTable, header: str, first: str, findings: Findings) -
     )
 
 
-def _refuse_header(raw: RawTable, index: int, fields: Sequence[Field], findings: Findings) -> str:
-    """Refuse an unknown header; return the base name it was most likely meant to be, or ""."""
+def _refuse_header(raw: RawTable, index: int, fields: Sequence[Field], findings: Findings) -> Field | None:
+    """Refuse an unknown header; return the column it was most likely meant to be, if it can be told."""
     header = raw.header[index]
     if not header:
         findings.add(
@@ -127,7 +131,7 @@ def _refuse_header(raw: RawTable, index: int, fields: Sequence[Field], findings:
             expected="a header",
             remedy="name the column or delete it",
         )
-        return ""
+        return None
     base = header.replace("(", "_").replace("[", "_").replace(" ", "_").partition("_")[0].casefold()
     same = [field for field in fields if field.base.casefold() == base and field.units != ("",)]
     if same:
@@ -138,13 +142,13 @@ def _refuse_header(raw: RawTable, index: int, fields: Sequence[Field], findings:
             expected=f"the quantity with its unit, {listing(headers)}",
             remedy="put the unit the values are in into the header",
         )
-        return same[0].base
-    by_header = {name: field.base for field in fields for name in field.headers}
+        return same[0]
+    by_header = {name: field for field in fields for name in field.headers}
     close = nearest(header, by_header)
     findings.add(
         raw.header_origin(header),
         found=f"the unknown column {shown(header)}",
-        expected=f"only the columns {listing(by_header)}",
+        expected="a known column" if close else f"only the columns {listing(by_header)}",
         remedy=f"did you mean {close}?" if close else "delete the column, or move it to a file of its own",
     )
-    return by_header[close] if close else ""
+    return by_header[close] if close else None

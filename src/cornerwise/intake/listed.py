@@ -15,8 +15,9 @@ from ..mutations import (
     parse_label,
     parse_mutation,
 )
-from .findings import Findings, nearest, shown
+from .findings import Findings, shown
 from .settings import KEYS, Document, say
+from .spelling import meant_keys
 
 CYCLE_KEYS = ("name", "mutations")
 
@@ -70,18 +71,16 @@ def _request(
     document: Document, number: int, entry: Mapping[str, object], findings: Findings
 ) -> CycleRequest | None:
     origin = document.origin("cycle", number)
-    for key in entry:
-        if key not in CYCLE_KEYS:
-            close = nearest(key, CYCLE_KEYS)
-            remedy = f"did you mean {close}?" if close else "delete it"
-            if key in KEYS:
-                remedy = f"move {key} above the first [[cycle]] and [mutations]"
-            findings.add(
-                origin,
-                found=f"the unknown key {shown(key)}",
-                expected="only name and mutations",
-                remedy=remedy,
-            )
+    meant = meant_keys(
+        entry,
+        CYCLE_KEYS,
+        findings,
+        origin=lambda _: origin,
+        misplaced=lambda key: (
+            f"move {key} above the first [[cycle]] and [mutations]" if key in KEYS else None
+        ),
+    )
+    entry = {meant[key]: value for key, value in entry.items() if key in meant}
     name = entry.get("name")
     if name is not None and (not isinstance(name, str) or not name.strip() or not name.isprintable()):
         findings.add(origin, found=say(name), expected="a name in quotes", remedy="correct the name")

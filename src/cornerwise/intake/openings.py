@@ -14,7 +14,7 @@ import numpy as np
 from .. import plausible
 from ..campaign import OpeningCurve
 from ..errors import Origin
-from .cells import Points, cells_in, is_steady, refuse_narrow
+from .cells import Points, cells_in, is_steady, refuse_narrow, refuse_volts
 from .findings import Findings
 from .header import Field, RawTable
 from .layouts import VOLTAGE, is_wide, once_only, wide_points
@@ -109,6 +109,8 @@ def _openings(points: Points, findings: Findings) -> tuple[OpeningCurve, ...]:
     sound = np.isfinite(points.voltage_mv) & (points.value >= 0) & (points.value <= 1)
     openings, narrow = [], []
     for members in cells_in(points, named):
+        if np.isfinite(points.voltage_mv[members]).all() and refuse_volts(points, members, findings):
+            continue
         if not is_steady(points, members) or not sound[members].all():
             continue
         opening = _opening(points, members)

@@ -30,7 +30,7 @@ from .listed import cycle_requests, listed_mutations
 from .medians import MediansRead, read_medians
 from .openings import OpeningsRead, read_openings
 from .parts import Parts
-from .settings import Document, read_settings
+from .settings import KEYS, SECTIONS, Document, read_settings
 from .toml_lines import lines_of_keys
 
 _Read = TypeVar("_Read")
@@ -163,14 +163,15 @@ def _campaign(source: Source | None, findings: Findings) -> Campaign | None:
     openings_read = _read("openings", read_openings, OpeningsRead, source, findings)
     if source.document is None:
         return None
-    settings = read_settings(source.document, findings)
-    listed = listed_mutations(source.document, findings)
-    requests = cycle_requests(source.document, findings)
-    exclusions = read_exclusions(source.document, findings)
+    document = source.document.as_meant((*KEYS, *SECTIONS), findings)
+    settings = read_settings(document, findings)
+    listed = listed_mutations(document, findings)
+    requests = cycle_requests(document, findings)
+    exclusions = read_exclusions(document, findings)
     if settings is None:
         return None
     parts = Parts(
-        document=source.document, settings=settings, listed=listed, requests=requests,
+        document=document, settings=settings, listed=listed, requests=requests,
         exclusions=exclusions, curves=curves_read, medians=medians_read, charges=charges_read,
         openings=openings_read, charges_file=charges.file if charges else None, inputs=source.inputs,
     )  # fmt: skip

@@ -10,7 +10,7 @@ read.
 from __future__ import annotations
 
 import math
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass, field
 from typing import Any, get_args
 
@@ -20,6 +20,7 @@ from ..errors import Origin
 from ..intervals import Adjustment
 from ..units import ENERGY_UNITS
 from .findings import Findings, listing, nearest, shown
+from .spelling import meant_keys
 
 CHARGE_WORDS = ("measured", "wild-type")
 
@@ -32,9 +33,18 @@ class Document:
     file: str
     rows: Mapping[tuple[str | int, ...], tuple[str, int]] = field(default_factory=dict)  # file and row
 
+    def as_meant(self, known: Sequence[str], findings: Findings) -> Document:
+        """The document under known keys; others are refused, and taken for what they must stand for."""
+        meant = meant_keys(self.values, known, findings, origin=self.origin)
+        values = {meant[key]: value for key, value in self.values.items() if key in meant}
+        rows = {(meant.get(str(first), first), *rest): place for (first, *rest), place in self.rows.items()}
+        return Document(values=values, file=self.file, rows=rows)
+
     def origin(self, *path: str | int) -> Origin:
         """Return the place of a key, named by its path; that of its table when it is missing there."""
-        known = (path[:length] for length in range(len(path), 0, -1) if path[:length] in self.rows)
+        first_entry = (*path, 0)  # where an array of tables begins
+        places = (first_entry, *(path[:length] for length in range(len(path), 0, -1)))
+        known = (place for place in places if place in self.rows)
         file, row = self.rows.get(next(known, ()), (self.file, None))
         names = [f"entry {part + 1}" if isinstance(part, int) else part for part in path]
         return Origin(file=file, row=row, column=" ".join(names) or None)
@@ -193,7 +203,7 @@ RULES = (
 
 KEYS = (*(rule.key for rule in RULES), "charge")
 CHARGE_KEYS = ("value_e0", "sem_e0", "citation")
-TABLES = ("mutations", "cycle", "exclude")
+SECTIONS = ("mutations", "cycle", "exclude")
 
 
 def read_settings(document: Document, findings: Findings) -> Settings | None:
@@ -202,18 +212,15 @@ def read_settings(document: Document, findings: Findings) -> Settings | None:
     Parameters
     ----------
     document : Document
-        The content of the file.
+        The content of the file, under known keys.
     findings : Findings
-        Takes unknown keys, wrong types and values out of range.
+        Takes wrong types and values out of range.
 
     Returns
     -------
     Settings or None
         None only if the wild type is not named; keys at fault have their defaults.
     """
-    for key in document.values:
-        if key not in (*KEYS, *TABLES):
-            _refuse_key(document.origin(key), key, (*KEYS, *TABLES), findings)
     values: dict[str, Any] = {}
     for rule in RULES:
         if rule.key in document.values:
@@ -254,16 +261,6 @@ def say(value: object) -> str:
     return f"the value {value}"
 
 
-def _refuse_key(origin: Origin, key: str, known: tuple[str, ...], findings: Findings) -> None:
-    close = nearest(key, known)
-    findings.add(
-        origin,
-        found=f"the unknown key {shown(key)}",
-        expected=f"only the keys {', '.join(known)}",
-        remedy=f"did you mean {close}?" if close else "delete it",
-    )
-
-
 def _charge_policy(document: Document, findings: Findings) -> ChargePolicy:
     stated = document.values["charge"]
     if stated in CHARGE_WORDS:
@@ -281,9 +278,8 @@ def _charge_policy(document: Document, findings: Findings) -> ChargePolicy:
 
 
 def _stated_charge(document: Document, stated: Mapping[str, object], findings: Findings) -> ChargePolicy:
-    for key in stated:
-        if key not in CHARGE_KEYS:
-            _refuse_key(document.origin("charge", key), key, CHARGE_KEYS, findings)
+    meant = meant_keys(stated, CHARGE_KEYS, findings, origin=lambda key: document.origin("charge", key))
+    stated = {meant[key]: value for key, value in stated.items() if key in meant}
     possible = _where(plausible.possible_total_charge)
     rules: tuple[tuple[str, Callable[[object], object], str], ...] = (
         ("value_e0", possible, f"a charge per channel above 0, at most {plausible.CHARGE_LIMIT_E0:g} e0"),

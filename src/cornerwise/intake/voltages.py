@@ -9,6 +9,7 @@ from .. import plausible
 from ..campaign import FloatArray
 from .table import Table
 
+_LARGEST_VOLTS = 1.0  # a curve in mV goes further
 _EXPECTED = f"voltages between -{plausible.VOLTAGE_LIMIT_MV:g} and {plausible.VOLTAGE_LIMIT_MV:g} mV"
 
 
@@ -18,10 +19,18 @@ def read_voltages(table: Table, base: str, *, empty: bool = False) -> FloatArray
     Volts are rounded to the picovolt, so that -0.12 V is -120 mV and nothing near it.
     """
     voltage = table.numbers(base, empty=empty)
-    if base in table and table.unit(base) == "V":
+    if base in table and _in_volts(table.unit(base), voltage):
         voltage = np.round(voltage * constants.kilo, 9)
     _refuse_beyond_limit(table, base, voltage)
     return np.where(plausible.beyond_voltage_limit(voltage), np.nan, voltage)
+
+
+def _in_volts(unit: str, voltage: FloatArray) -> bool:
+    """Whether a column holds volts; without a unit, which is a fault told elsewhere, its size must tell."""
+    if unit in ("V", "mV"):
+        return unit == "V"
+    finite = np.abs(voltage[np.isfinite(voltage)])
+    return bool(finite.size and finite.max() < _LARGEST_VOLTS)
 
 
 def _refuse_beyond_limit(table: Table, base: str, voltage_mv: FloatArray) -> None:
