@@ -14,7 +14,8 @@ from ..errors import Origin
 from ..mutations import Cycle
 from .findings import Findings, listing, nearest, shown
 from .parts import Parts
-from .settings import KEYS, Document, say, visible_text
+from .rules import say, visible_text
+from .settings import KEYS, Document
 from .spelling import meant_keys
 
 EXCLUDE_KEYS = ("construct", "cell", "reason")

@@ -16,7 +16,8 @@ from ..mutations import (
     parse_mutation,
 )
 from .findings import Findings, shown
-from .settings import KEYS, Document, say
+from .rules import say
+from .settings import KEYS, Document
 from .spelling import meant_keys
 
 CYCLE_KEYS = ("name", "mutations")

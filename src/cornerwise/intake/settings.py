@@ -9,7 +9,6 @@ read.
 
 from __future__ import annotations
 
-import math
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass, field
 from typing import Any, get_args
@@ -19,7 +18,8 @@ from ..campaign import ChargePolicy, IntervalKind, RankOrder, Settings, StatedCh
 from ..errors import Origin
 from ..intervals import Adjustment
 from ..units import ENERGY_UNITS
-from .findings import Findings, listing, nearest, shown
+from .findings import Findings, listing, nearest
+from .rules import Rule, read_by_rules, say, text, visible_text, where, whole, word, yes_or_no
 from .spelling import meant_keys
 
 CHARGE_WORDS = ("measured", "wild-type")
@@ -50,109 +50,38 @@ class Document:
         return Origin(file=file, row=row, column=" ".join(names) or None)
 
 
-@dataclass(frozen=True, kw_only=True, slots=True)
-class Rule:
-    """How a key is named, read and judged."""
-
-    key: str
-    attribute: str  # of `Settings`
-    read: Callable[[object], object]  # the value; raises ValueError if it is none
-    expected: str
-    remedy: str = "correct the value"
-
-
-def _text(value: object) -> str:
-    if not isinstance(value, str):
-        raise ValueError
-    return value
-
-
-def visible_text(value: object) -> str:
-    """Return a text without outer spaces; ValueError if there is nothing else, or what cannot be seen."""
-    text = _text(value).strip()
-    if not text or not text.isprintable():
-        raise ValueError
-    return text
-
-
-def _yes_or_no(value: object) -> bool:
-    if not isinstance(value, bool):
-        raise ValueError
-    return value
-
-
-def _number(value: object) -> float:
-    if isinstance(value, bool) or not isinstance(value, int | float) or not math.isfinite(value):
-        raise ValueError
-    return float(value)
-
-
-def _whole(least: int, most: float = math.inf) -> Callable[[object], int]:
-    def read(value: object) -> int:
-        if isinstance(value, bool) or not isinstance(value, int) or not least <= value <= most:
-            raise ValueError
-        return value
-
-    return read
-
-
-def _where(allowed: Callable[[float], bool]) -> Callable[[object], float]:
-    def read(value: object) -> float:
-        number = _number(value)
-        if not allowed(number):
-            raise ValueError
-        return number
-
-    return read
-
-
-def _energy_unit(value: object) -> str:
-    if value not in ENERGY_UNITS:
-        raise ValueError
-    return str(value)
-
-
-def _word(*allowed: str) -> Callable[[object], str]:
-    def read(value: object) -> str:
-        if value not in allowed:
-            raise ValueError
-        return str(value)
-
-    return read
-
-
 # Stands for a policy that was refused, so that no charges are called for in its name.
 _UNKNOWN_CHARGE = StatedCharge(value_e0=1.0, sem_e0=0.0)
 
 _LOW_C, _HIGH_C = plausible.TEMPERATURE_RANGE_C
-_POSITIVE = _where(lambda number: number > 0)
+_POSITIVE = where(lambda number: number > 0)
 
 RULES = (
-    Rule(key="title", attribute="title", read=_text, expected="text in quotes"),
+    Rule(key="title", attribute="title", read=text, expected="text in quotes"),
     Rule(
         key="wild_type", attribute="wild_type", read=visible_text,
         expected="the wild type's label, in quotes",
         remedy="write the label as it stands in the tables",
     ),
     Rule(
-        key="temperature_C", attribute="temperature_c", read=_where(plausible.possible_temperature),
+        key="temperature_C", attribute="temperature_c", read=where(plausible.possible_temperature),
         expected=f"a temperature from {_LOW_C:g} to {_HIGH_C:g} degrees Celsius",
         remedy="correct the value; subtract 273.15 if it is in kelvin",
     ),
-    Rule(key="subunits", attribute="subunits", read=_whole(1), expected="a whole number, at least 1"),
+    Rule(key="subunits", attribute="subunits", read=whole(1), expected="a whole number, at least 1"),
     Rule(
-        key="energy_unit", attribute="energy_unit", read=_energy_unit,
+        key="energy_unit", attribute="energy_unit", read=word(*ENERGY_UNITS),
         expected=listing(f'"{unit}"' for unit in ENERGY_UNITS),
     ),
     Rule(
-        key="confidence", attribute="confidence", read=_where(lambda number: 0.5 < number < 1),
+        key="confidence", attribute="confidence", read=where(lambda number: 0.5 < number < 1),
         expected="a number above 0.5 and below 1", remedy="write 0.95 for 95 %",
     ),
     Rule(
-        key="replicates", attribute="replicates", read=_whole(1000, 1_000_000),
+        key="replicates", attribute="replicates", read=whole(1000, 1_000_000),
         expected="a whole number from 1000 to 1000000",
     ),
-    Rule(key="seed", attribute="seed", read=_whole(0), expected="a whole number, not negative"),
+    Rule(key="seed", attribute="seed", read=whole(0), expected="a whole number, not negative"),
     Rule(
         key="threshold", attribute="threshold", read=_POSITIVE,
         expected="an energy above 0, in the campaign's energy_unit",
@@ -162,17 +91,17 @@ RULES = (
         expected="an energy above 0, in the campaign's energy_unit",
     ),
     Rule(
-        key="charge_margin", attribute="charge_margin", read=_where(lambda number: 0 < number < 1),
+        key="charge_margin", attribute="charge_margin", read=where(lambda number: 0 < number < 1),
         expected="a fraction above 0 and below 1", remedy="write 0.10 for 10 %",
     ),
     Rule(
         key="voltage_offset_mV", attribute="voltage_offset_mv",
-        read=_where(lambda number: 0 <= number <= plausible.VOLTAGE_LIMIT_MV),
+        read=where(lambda number: 0 <= number <= plausible.VOLTAGE_LIMIT_MV),
         expected="a standard uncertainty in mV, not negative",
     ),
     Rule(
         key="reference_voltage_mV", attribute="reference_voltage_mv",
-        read=_where(lambda number: abs(number) <= plausible.VOLTAGE_LIMIT_MV),
+        read=where(lambda number: abs(number) <= plausible.VOLTAGE_LIMIT_MV),
         expected=f"a voltage in mV, from -{plausible.VOLTAGE_LIMIT_MV:g} to {plausible.VOLTAGE_LIMIT_MV:g}",
         remedy="correct the value; write -60 for -60 mV",
     ),
@@ -182,23 +111,23 @@ RULES = (
         remedy="write it as it stands in the column method of charges",
     ),
     Rule(
-        key="correct_sloping_plateaus", attribute="correct_sloping_plateaus", read=_yes_or_no,
+        key="correct_sloping_plateaus", attribute="correct_sloping_plateaus", read=yes_or_no,
         expected="true or false",
     ),
     Rule(
-        key="interval", attribute="interval", read=_word(*get_args(IntervalKind)),
+        key="interval", attribute="interval", read=word(*get_args(IntervalKind)),
         expected=listing(f'"{word}"' for word in get_args(IntervalKind)),
     ),
     Rule(
-        key="adjustment", attribute="adjustment", read=_word(*get_args(Adjustment)),
+        key="adjustment", attribute="adjustment", read=word(*get_args(Adjustment)),
         expected=listing(f'"{word}"' for word in get_args(Adjustment)),
     ),
-    Rule(key="simultaneous", attribute="simultaneous", read=_yes_or_no, expected="true or false"),
+    Rule(key="simultaneous", attribute="simultaneous", read=yes_or_no, expected="true or false"),
     Rule(
-        key="rank_by", attribute="rank_by", read=_word(*get_args(RankOrder)),
+        key="rank_by", attribute="rank_by", read=word(*get_args(RankOrder)),
         expected=listing(f'"{word}"' for word in get_args(RankOrder)),
     ),
-    Rule(key="first", attribute="first", read=_whole(1), expected="a whole number, at least 1"),
+    Rule(key="first", attribute="first", read=whole(1), expected="a whole number, at least 1"),
 )  # fmt: skip
 
 KEYS = (*(rule.key for rule in RULES), "charge")
@@ -221,15 +150,7 @@ def read_settings(document: Document, findings: Findings) -> Settings | None:
     Settings or None
         None only if the wild type is not named; keys at fault have their defaults.
     """
-    values: dict[str, Any] = {}
-    for rule in RULES:
-        if rule.key in document.values:
-            try:
-                values[rule.attribute] = rule.read(document.values[rule.key])
-            except ValueError:
-                found = say(document.values[rule.key])
-                origin = document.origin(rule.key)
-                findings.add(origin, found=found, expected=rule.expected, remedy=rule.remedy)
+    values = read_by_rules(document.values, RULES, document.origin, findings)
     if "charge" in document.values:
         values["charge"] = _charge_policy(document, findings)
     if "wild_type" not in document.values:
@@ -243,22 +164,6 @@ def read_settings(document: Document, findings: Findings) -> Settings | None:
         return None
     defaulted = tuple(key for key in KEYS if key not in document.values)
     return Settings(**values, defaulted=defaulted)
-
-
-def say(value: object) -> str:
-    """Name a value and, when it is no text, its kind."""
-    match value:
-        case str():
-            return f"the text {shown(value)}" if value.strip() else "an empty text"
-        case bool():
-            return f"the truth value {str(value).lower()}"
-        case int() | float():
-            return f"the number {value}"
-        case Mapping():
-            return "a table"
-        case list():
-            return "a list"
-    return f"the value {value}"
 
 
 def _charge_policy(document: Document, findings: Findings) -> ChargePolicy:
@@ -280,10 +185,10 @@ def _charge_policy(document: Document, findings: Findings) -> ChargePolicy:
 def _stated_charge(document: Document, stated: Mapping[str, object], findings: Findings) -> ChargePolicy:
     meant = meant_keys(stated, CHARGE_KEYS, findings, origin=lambda key: document.origin("charge", key))
     stated = {meant[key]: value for key, value in stated.items() if key in meant}
-    possible = _where(plausible.possible_total_charge)
+    possible = where(plausible.possible_total_charge)
     rules: tuple[tuple[str, Callable[[object], object], str], ...] = (
         ("value_e0", possible, f"a charge per channel above 0, at most {plausible.CHARGE_LIMIT_E0:g} e0"),
-        ("sem_e0", _where(lambda number: number >= 0), "its standard uncertainty in e0, not negative"),
+        ("sem_e0", where(lambda number: number >= 0), "its standard uncertainty in e0, not negative"),
         ("citation", visible_text, "the source of the value, in quotes"),
     )
     values: dict[str, Any] = {}
