@@ -11,6 +11,7 @@ from cornerwise.coupling import couple
 from cornerwise.gating import LinearSequence
 from cornerwise.intervals import Interval
 from cornerwise.result import InteractionRow, Result
+from cornerwise.verdicts import interaction_verdict
 
 
 def _judged(verdict: str, p: float) -> ChargeJudgement:
@@ -96,6 +97,24 @@ def test_breakdown_names_the_change_that_erases_the_interaction() -> None:
     energies = {r.construct: r.energy for r in couple(given).constructs}
     nearest = row.low if row.low > 0 else row.high  # type: ignore[operator]
     assert nearest + one.fraction * energies["E5A/R9Q"] == pytest.approx(0.0, abs=1e-12)  # type: ignore[operator]
+    assert row.interaction_verdict in ("coupled", "detected")
+
+
+@pytest.mark.parametrize(("threshold", "verdict"), [(0.01, "coupled"), (3.0, "detected"), (3.0, "uncoupled")])
+def test_breakdown_names_the_change_that_undoes_the_verdict(threshold: float, verdict: str) -> None:
+    """A double whose charge differs by a little less keeps the verdict, by a little more loses it."""
+    constructs = _four([])
+    spread = [-40.4, -41.4, -39.4, -40.9] if verdict == "uncoupled" else [-33.0, -34.0, -32.0, -33.5]
+    constructs[3] = construct("E5A/R9Q", spread)
+    row = _row(couple(campaign(constructs, threshold=threshold)))
+    assert row.interaction_verdict == verdict
+    (one,) = row.breakdown
+    energy = next(r.energy for r in couple(campaign(constructs)).constructs if r.construct == "E5A/R9Q")
+    assert energy is not None
+    for factor, kept in ((0.99, True), (1.01, False)):
+        shift = factor * one.verdict_fraction * energy  # the double enters with a plus
+        moved = Interval(row.low + shift, row.high + shift)  # type: ignore[operator]
+        assert (interaction_verdict(moved, threshold, established=verdict != "uncoupled") == verdict) is kept
 
 
 def _three_states(charge: float, median_mv: float) -> LinearSequence:

@@ -16,6 +16,7 @@ from .measurements import Measurement
 from .rows import Breakdown, CornerCharge, ProfilePoint
 from .sources import Derived, linear
 from .tables import available
+from .verdicts import InteractionVerdict
 
 _PROFILE_POINTS = 41
 _BEYOND_MEDIANS_MV = 60.0
@@ -63,9 +64,13 @@ def profile(interaction: Interaction, book: EnergyBook, settings: Settings) -> t
 
 
 def breakdowns(
-    interaction: Interaction, interval: Interval, assumed: Sequence[str], book: EnergyBook
+    interaction: Interaction,
+    interval: Interval,
+    assumed: Sequence[str],
+    book: EnergyBook,
+    judged: tuple[InteractionVerdict, float],
 ) -> tuple[Breakdown, ...]:
-    """Change of each assumed charge that would bring the interaction's interval to 0.
+    """Change of each assumed charge that would undo what is said of the interaction.
 
     Parameters
     ----------
@@ -77,22 +82,34 @@ def breakdowns(
         Corners whose charge was never measured.
     book : EnergyBook
         Energies of the campaign.
+    judged : tuple of str and float
+        The verdict on the interaction, and the threshold beyond which one counts, in the campaign's unit.
 
     Returns
     -------
     tuple of Breakdown
-        The smallest change first; empty when the interval includes 0 already. A corner's energy is
-        proportional to its charge, so a fraction f changes I by s f dG of that corner.
+        The smallest change first; empty when the verdict is ``unresolved``.
+        A corner's energy is proportional to its charge, so a fraction f changes I by s f dG of that corner.
     """
-    if not interval.excludes(0.0):
+    verdict, threshold = judged
+    if verdict == "unresolved":
         return ()
-    nearest = interval.low if interval.low > 0 else interval.high
+    nearest = min(interval.low, interval.high, key=abs)
+    to_zero = -nearest if interval.excludes(0.0) else None
+    to_verdict = {
+        "coupled": math.copysign(threshold, nearest) - nearest,
+        "detected": -nearest,
+        "uncoupled": min(threshold - interval.high, -threshold - interval.low, key=abs),
+    }[verdict]
     found = []
     for corner in interaction.cycle.corners:
-        energy = book.energies[corner.label].energy.value
+        energy = corner.sign * book.energies[corner.label].energy.value
         if corner.label in assumed and energy != 0:
-            found.append(Breakdown(construct=corner.label, fraction=-nearest / (corner.sign * energy)))
-    return tuple(sorted(found, key=lambda one: (abs(one.fraction), one.construct)))
+            fraction = None if to_zero is None else to_zero / energy
+            found.append(
+                Breakdown(construct=corner.label, fraction=fraction, verdict_fraction=to_verdict / energy)
+            )
+    return tuple(sorted(found, key=lambda one: (abs(one.verdict_fraction), one.construct)))
 
 
 def corner_charges(

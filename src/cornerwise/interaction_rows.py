@@ -96,7 +96,9 @@ class _ChargeFields(TypedDict):
     profile: tuple[ProfilePoint, ...]
 
 
-def _charge_fields(one: Estimate, book: EnergyBook, corners: Corners, charges: Interval) -> _ChargeFields:
+def _charge_fields(
+    one: Estimate, verdict: InteractionVerdict, book: EnergyBook, corners: Corners, charges: Interval
+) -> _ChargeFields:
     settings, interaction = corners.settings, one.interaction
     trace = _charge_trace(one, corners)
     bias = _limits(interaction.shortcut_bias, interaction.ledger, settings.confidence)
@@ -120,7 +122,9 @@ def _charge_fields(one: Estimate, book: EnergyBook, corners: Corners, charges: I
         "change_per_10_mv_low": available(slope_limits.low),
         "change_per_10_mv_high": available(slope_limits.high),
         "offset_contribution": None if offset is None else available(offset),
-        "breakdown": breakdowns(interaction, one.interval, assumed, book),
+        "breakdown": breakdowns(
+            interaction, one.interval, assumed, book, (verdict, settings.energy_threshold)
+        ),
         "profile": profile(interaction, book, settings) if charges.excludes(0.0) else (),
     }
 
@@ -167,6 +171,7 @@ def _row(
     charges = _limits(interaction.charge, interaction.ledger, settings.confidence)
     own = _nonadditive(interaction, charges, book.per_e0_mv, settings.energy_unit)
     own += protocol_flags(cycle.name, tuple(corners.measurements[label].construct for label in labels))
+    stands = _standing_fields(one, standing, settings)
     inherited = {code for label in labels for code in corners.rows[label].flags}
     row = InteractionRow(
         cycle=cycle.name,
@@ -191,8 +196,8 @@ def _row(
         edges=cycle_edges(cycle, book),
         opposite_charges=opposite_charges(cycle.mutations),
         distance_angstrom=distance_between(cycle.mutations, corners.distances),
-        **_standing_fields(one, standing, settings),
-        **_charge_fields(one, book, corners, charges),
+        **stands,
+        **_charge_fields(one, stands["interaction_verdict"], book, corners, charges),
     )
     return row, own
 

@@ -35,10 +35,11 @@ class CornerCharge:
 
 @dataclass(frozen=True, kw_only=True, slots=True)
 class Breakdown:
-    """Change of one assumed charge that would bring the interaction's interval to 0."""
+    """Changes of one assumed charge, as fractions of it, that would undo what is said of the interaction."""
 
     construct: str
-    fraction: float  # of the assumed charge
+    fraction: float | None  # brings the interaction's interval to 0; None where it includes 0 already
+    verdict_fraction: float  # from here on its interval no longer bears the verdict out
 
 
 @dataclass(frozen=True, kw_only=True, slots=True)
@@ -120,7 +121,7 @@ class InteractionRow:
     change_per_10_mv_low: float | None
     change_per_10_mv_high: float | None
     offset_contribution: float | None  # standard uncertainty from the stated voltage offset
-    breakdown: tuple[Breakdown, ...]  # where a charge is assumed and the interval excludes 0
+    breakdown: tuple[Breakdown, ...]  # where a charge is assumed and the verdict says more than unresolved
     profile: tuple[ProfilePoint, ...]  # where the charges do not add up
     units: tuple[Units, ...]  # what was counted in each family of cells: cells, or batches, and why
     edges: tuple[Edge, ...] = ()  # of the square, the cube, ...

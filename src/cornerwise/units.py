@@ -109,3 +109,18 @@ def convert_energy(value: float, unit: EnergyUnit, target: EnergyUnit, temperatu
     4.184
     """
     return value * energy_per_e0_mv(target, temperature_c) / energy_per_e0_mv(unit, temperature_c)
+
+
+def in_percent(fraction: float, decimals: int = 0, *, signed: bool = False) -> str:
+    """Fraction as a percentage for a sentence: 0.074 is "7 %".
+
+    Parameters
+    ----------
+    fraction : float
+        The fraction.
+    decimals : int, optional
+        Decimals of the percentage.
+    signed : bool, optional
+        Whether a positive one carries its sign too.
+    """
+    return f"{100 * fraction:{'+' if signed else ''}.{decimals}f} %"

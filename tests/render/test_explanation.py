@@ -1,3 +1,5 @@
+import re
+
 import pytest
 from builders import campaign, construct
 
@@ -49,14 +51,24 @@ def test_changed_charge_in_words() -> None:
 
 def test_assumed_charge_in_words() -> None:
     text = explain(_result(None), "E5A/R9Q")
-    assert "the total charge of E5A/R9Q was never measured and is taken to be the wild type's" in text
-    assert "The interval would reach 0 if the charge" in text
+    assert "E5A/R9Q: Vm" in text
+    assert "Q not measured" in text
+    assert (
+        "the total charge of E5A/R9Q was not measured in this campaign and is taken to be that of WT" in text
+    )
+    assert re.search(
+        r"if the charge of one of them differed from that by so much: E5A/R9Q [+-][0-9.]+ %", text
+    )
     assert "measuring the assumed charges would test the shortcut" in text
 
 
 def test_every_paragraph_is_a_line() -> None:
     text = explain(_result(WILD), "E5A/R9Q")
     assert all(len(paragraph.splitlines()) == 1 for paragraph in text.split("\n\n"))
+
+
+def test_mutations_in_another_order_name_the_cycle() -> None:
+    assert explain(_result(WILD), "R9Q+E5A") == explain(_result(WILD), "E5A/R9Q")
 
 
 def test_unknown_cycle_names_the_nearest() -> None:

@@ -11,6 +11,7 @@ from cornerwise.render.legend import budget_sentence, interval_words
 from cornerwise.render.ranking import print_ranking
 from cornerwise.render.terminal import print_result
 from cornerwise.result import Result
+from cornerwise.units import in_percent
 
 PAIRS = {"D10N/R60Q": 16.0, "E12Q/K64M": -12.0, "S16A/T70A": 1.0, "D14N/H66A": 4.0}
 
@@ -53,7 +54,7 @@ def test_budget_line_names_the_largest_source_of_the_strongest_cycles() -> None:
     (line,) = budget_sentence(RESULT)
     for row in RESULT.ranking[:3]:
         (part, *_) = [one for one in RESULT.budget if one.cycle == row.cycle]
-        assert f"{row.cycle} {part.share:.0%} {part.source}" in line
+        assert f"{row.cycle} {in_percent(part.share)} {part.source}" in line
     assert RESULT.ranking[3].cycle not in line
     assert "budget.csv" in line
     stream = io.StringIO()

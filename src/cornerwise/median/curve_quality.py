@@ -9,6 +9,7 @@ import numpy as np
 from scipy.special import stdtrit
 
 from ..flags import Flag, FlagCode
+from ..units import in_percent
 from .shapes import FloatArray
 
 MISSING_LIMIT = 0.02  # fraction of the charge outside the range at one end
@@ -110,8 +111,9 @@ def _unsaturated(e: Evidence) -> list[Flag]:
         Flag(
             code=code,
             subject=e.subject,
-            message=f"an estimated {missing:.1%} of the charge moves {where}; what has to be extrapolated "
-            f"makes the construct's median uncertain by {doubt:.1f} mV ({MISSING_LIMIT:.0%} and "
+            message=f"an estimated {in_percent(missing, 1)} of the charge moves {where}; what has to be "
+            "extrapolated "
+            f"makes the construct's median uncertain by {doubt:.1f} mV ({in_percent(MISSING_LIMIT)} and "
             f"{DOUBT_LIMIT_MV:g} mV are tolerated): go on to a more {sign} voltage",
             value=missing,
             limit=MISSING_LIMIT,
@@ -127,9 +129,12 @@ def _sloping(e: Evidence) -> Flag | None:
     return Flag(
         code="sloping-plateau",
         subject=e.subject,
-        message=f"both plateaus slope: over the measured span that adds {e.slope_charge:+.1%} of the charge, "
-        f"more than {SLOPE_LIMIT:.0%}, as residual linear capacity does; without it the construct's medians "
-        f"would lie {e.slope_shift_mv:+.1f} mV from here, which widens the uncertainty: correct the capacity "
+        message="both plateaus slope: over the measured span that adds "
+        f"{in_percent(e.slope_charge, 1, signed=True)} of the charge, "
+        f"more than {in_percent(SLOPE_LIMIT)}, as residual linear capacity does; without it the "
+        "construct's medians "
+        f"would lie {e.slope_shift_mv:+.1f} mV from here, which widens the uncertainty: correct the "
+        "capacity "
         "or ask for the slope to be taken off",
         value=e.slope_charge,
         limit=SLOPE_LIMIT,
@@ -143,8 +148,10 @@ def _reversal(e: Evidence) -> Flag | None:
     return Flag(
         code="not-monotonic",
         subject=e.subject,
-        message=f"the charge falls back by {e.reversal:.1%} of its total at {e.reversal_mv:g} mV, more than "
-        f"the {limit:.1%} that noise explains; no equilibrium curve falls: look for a leak, a lost seal or a "
+        message=f"the charge falls back by {in_percent(e.reversal, 1)} of its total at "
+        f"{e.reversal_mv:g} mV, more than "
+        f"the {in_percent(limit, 1)} that noise explains; no equilibrium curve falls: look for a leak, "
+        "a lost seal or a "
         "typing error",
         value=e.reversal,
         limit=limit,
@@ -156,7 +163,8 @@ def _coarse(e: Evidence) -> Flag | None:
         return Flag(
             code="coarse-steps",
             subject=e.subject,
-            message=f"the curve has {e.points} points, fewer than {POINTS_LIMIT}; too few to show its shape: "
+            message=f"the curve has {e.points} points, fewer than {POINTS_LIMIT}; too few to show its "
+            "shape: "
             "record more voltages",
             value=float(e.points),
             limit=float(POINTS_LIMIT),
@@ -168,7 +176,8 @@ def _coarse(e: Evidence) -> Flag | None:
         code="coarse-steps",
         subject=e.subject,
         message=f"the rise from 10 to 90 % takes {e.rise_mv:.0f} mV, only {steps:.1f} steps of "
-        f"{e.largest_step_mv:g} mV and fewer than {STEPS_LIMIT:g}; the shape between the points is a guess: "
+        f"{e.largest_step_mv:g} mV and fewer than {STEPS_LIMIT:g}; the shape between the points is a "
+        "guess: "
         "record smaller steps there",
         value=steps,
         limit=STEPS_LIMIT,
@@ -181,8 +190,9 @@ def _noisy(e: Evidence) -> Flag | None:
     return Flag(
         code="noisy",
         subject=e.subject,
-        message=f"the points scatter by {e.noise:.1%} of the charge around the smooth curve, more than "
-        f"{NOISE_LIMIT:.0%}; average more sweeps or leave the cell out with a reason",
+        message=f"the points scatter by {in_percent(e.noise, 1)} of the charge around the smooth curve, "
+        "more than "
+        f"{in_percent(NOISE_LIMIT)}; average more sweeps or leave the cell out with a reason",
         value=e.noise,
         limit=NOISE_LIMIT,
     )

@@ -6,6 +6,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from ..units import in_percent
 from .shape_average import PooledShape
 from .shapes import FloatArray
 
@@ -44,7 +45,8 @@ class Missing:
         if self.typical <= REFUSED_MISSING and own <= REFUSED_OWN_MISSING:
             return None
         return (
-            f"an estimated {max(self.typical, own):.0%} of the charge moves outside the measured voltages; "
+            f"an estimated {in_percent(max(self.typical, own))} of the charge moves outside the "
+            "measured voltages; "
             "the median cannot be told from the rest: record a wider range"
         )
 

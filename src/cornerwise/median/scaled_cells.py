@@ -8,6 +8,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from ..campaign import Curve
+from ..units import in_percent
 from .plateaus import plain_median_mv, plain_plateaus
 from .shape_fit import Cells
 from .shapes import FloatArray
@@ -47,7 +48,8 @@ def why_unreadable(curve: Curve) -> str | None:
         return None
     share = rise / spread if spread > 0.0 else 0.0
     return (
-        f"no rise: the two ends differ by {share:.0%} of the spread of the charges, less than half; record "
+        f"no rise: the two ends differ by {in_percent(share)} of the spread of the charges, less than "
+        "half; record "
         "the whole rise with both plateaus"
     )
 

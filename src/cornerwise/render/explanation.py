@@ -2,12 +2,18 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterable
 from difflib import get_close_matches
 
+from ..campaign import StatedCharge
 from ..errors import UsageError
+from ..mutations import parse_label
 from ..result import BudgetRow, ConstructRow, CornerCharge, InteractionRow, Result
+from ..units import in_percent
 from .legend import percent
 from .rounding import decimals_for, number, span, with_uncertainty
+
+_STATED, _WILD_TYPES = "stated", "wild type"  # sources of charge, as the table of constructs names them
 
 
 def explain(result: Result, cycle: str) -> str:
@@ -18,7 +24,7 @@ def explain(result: Result, cycle: str) -> str:
     result : Result
         What `cornerwise.couple` returned.
     cycle : str
-        Name of the cycle, as in the coupling table.
+        Name of the cycle, as in the coupling table, or its mutations in any order.
 
     Returns
     -------
@@ -30,23 +36,32 @@ def explain(result: Result, cycle: str) -> str:
     UsageError
         If there is no cycle of that name; names the nearest.
     """
-    rows = {row.cycle: row for row in result.interactions}
-    if cycle not in rows:
-        near = get_close_matches(cycle, rows, n=1)
-        hint = f"; did you mean {near[0]}?" if near else f"; there are {', '.join(rows)}"
-        raise UsageError(f"no cycle is called {cycle}{hint}")
-    row = rows[cycle]
+    row = _find(result, cycle)
     corners = [one for label, _ in row.corners for one in result.constructs if one.construct == label]
-    budget = [part for part in result.budget if part.cycle == cycle]
+    budget = [part for part in result.budget if part.cycle == row.cycle]
     paragraphs = [
         _interaction(result, row),
-        _measured(corners),
-        _assumed(row, corners),
+        _measured(row, corners),
+        _assumed(result, row, corners),
         _shortcut(result, row),
         _voltages(result, row),
         _outlook(result, row, budget),
     ]
     return "\n\n".join(paragraph for paragraph in paragraphs if paragraph)
+
+
+def _find(result: Result, cycle: str) -> InteractionRow:
+    """The cycle of that name or of those mutations."""
+    rows = {row.cycle: row for row in result.interactions}
+    if cycle in rows:
+        return rows[cycle]
+    asked = set(map(str, parse_label(cycle) or ()))
+    for row in rows.values():
+        if asked == set(row.mutations):
+            return row
+    near = get_close_matches(cycle, rows, n=1)
+    hint = f"; did you mean {near[0]}?" if near else f"; there are {', '.join(rows)}"
+    raise UsageError(f"no cycle is called {cycle}{hint}")
 
 
 def _energy(result: Result, value: float | None, uncertainty: float | None) -> str:
@@ -93,43 +108,81 @@ def _adjusted(result: Result, row: InteractionRow) -> str:
     return "" if count == 1 else f", {row.p_adjusted:.2g} after adjustment for {count} cycles"
 
 
-def _measured(corners: list[ConstructRow]) -> str:
+def _not_measured(row: InteractionRow, one: ConstructRow) -> bool:
+    """Whether a corner's charge comes from elsewhere: stated, or the wild type's."""
+    lent = one.charge_source == _WILD_TYPES and one.construct != row.wild_type
+    return lent or _is_stated(one)
+
+
+def _is_stated(one: ConstructRow) -> bool:
+    return one.charge_source is not None and one.charge_source.partition(":")[0] == _STATED
+
+
+def _measured(row: InteractionRow, corners: list[ConstructRow]) -> str:
     parts = []
     for one in corners:
-        charge = f"Q {with_uncertainty(one.charge_e0, one.charge_sem_e0)} e0"
-        n = "" if one.charge_n is None else f", n = {one.charge_n}"
+        charge = "Q not measured"
+        if not _not_measured(row, one):
+            n = "" if one.charge_n is None else f", n = {one.charge_n}"
+            charge = f"Q {with_uncertainty(one.charge_e0, one.charge_sem_e0)} e0 ({one.charge_source}{n})"
         parts.append(
             f"{one.construct}: Vm {with_uncertainty(one.median_mv, one.median_sem_mv)} mV (n = "
-            f"{one.cells_used}), {charge} ({one.charge_source}{n})"
+            f"{one.cells_used}), {charge}"
         )
-    return f"Measured, mean and standard error. {'; '.join(parts)}."
+    return f"Measured, mean ± standard error: {'; '.join(parts)}."
 
 
-def _assumed(row: InteractionRow, corners: list[ConstructRow]) -> str:
-    assumed = [one.construct for one in row.corner_charges if one.verdict == "assumed"]
-    if not assumed:
+def _assumed(result: Result, row: InteractionRow, corners: list[ConstructRow]) -> str:
+    lent = [one for one in corners if _not_measured(row, one)]
+    if not lent:
         return "Nothing was assumed about total charge: it was measured on every corner."
-    shared = next(one.charge_source for one in corners if one.construct == assumed[0])
-    source = "the wild type's" if shared == "wild type" else "the stated value"
+    value = f"{with_uncertainty(lent[0].charge_e0, lent[0].charge_sem_e0)} e0"
+    source = f"that of {row.wild_type}, {value}"
+    if _is_stated(lent[0]):
+        charge = result.settings.charge
+        cited = charge.citation if isinstance(charge, StatedCharge) else None
+        source = f"the stated {value}{f' ({cited})' if cited else ''}"
     text = (
-        f"Assumed: the total charge of {', '.join(assumed)} was never measured and is taken to be {source}."
+        f"Assumed: the total charge of {', '.join(one.construct for one in lent)} was not measured in this "
+        f"campaign and is taken to be {source}. That the constructs may differ in it is no part of the "
+        "interval."
     )
-    if row.breakdown:
-        changes = [f"{one.construct} {one.fraction:+.0%}" for one in row.breakdown]
-        text += (
-            " The interval would reach 0 if the charge of one of them differed from that by so much: "
-            f"{', '.join(changes)}. Judge whether such a change is plausible."
-        )
-    elif row.low is not None:
-        text += " The interval includes 0 already, so no change of these charges is needed to erase it."
-    return text
+    return f"{text} {_breakdown(result, row)}"
+
+
+def _breakdown(result: Result, row: InteractionRow) -> str:
+    """What change of an assumed charge would undo the verdict, and what would erase the interaction."""
+    if row.interaction_verdict == "unresolved" or not row.breakdown:
+        return "As the interaction is unresolved, no change of a charge is needed to put it in doubt."
+    threshold = f"{result.settings.energy_threshold:.3g} {result.settings.energy_unit}"
+    ends = {
+        "coupled": f"no longer be called coupled, its interval reaching {threshold},",
+        "detected": "no longer be detected, its interval reaching 0,",
+        "uncoupled": f"no longer be shown to be weaker than {threshold}",
+    }[row.interaction_verdict]
+    text = (
+        f"The interaction would {ends} if the charge of one of them differed from that by so much: "
+        f"{_changes((one.construct, one.verdict_fraction) for one in row.breakdown)}."
+    )
+    if row.interaction_verdict == "coupled":
+        to_zero = [(one.construct, one.fraction) for one in row.breakdown if one.fraction is not None]
+        text += f" The interval would reach 0 at {_changes(to_zero)}."
+    return f"{text} Judge whether such a change is plausible."
+
+
+def _changes(fractions: Iterable[tuple[str, float]]) -> str:
+    return ", ".join(
+        f"{construct} {in_percent(fraction, 0 if abs(fraction) > 0.1 else 1, signed=True)}"
+        for construct, fraction in fractions
+    )
 
 
 def _charge_sentence(one: CornerCharge, confidence: float) -> str:
     if one.ratio is None or one.low is None:
-        return f"{one.construct} assumed"
+        return f"{one.construct} not measured"
     return (
-        f"{one.construct} {one.ratio:.3f} ({percent(confidence)} interval {one.low:.3f} to {one.high:.3f}), "
+        f"{one.construct} {one.ratio:.3f} ({percent(confidence)} interval {one.low:.3f} to "
+        f"{one.high:.3f}), "
         f"{one.verdict}"
     )
 
@@ -138,18 +191,22 @@ _SHORTCUT_REASONS = {
     "valid": "every charge is shown to be equal within the margin and the bias is inside the tolerance",
     "invalid": "a charge changed, or the bias lies outside the tolerance",
     "unresolved": "equal charge, or a bias inside the tolerance, could not be shown",
-    "untested": "a total charge was never measured, so it is not known",
+    "untested": "it is right only if the charges that were not measured equal the wild type's",
 }
 
 
 def _shortcut(result: Result, row: InteractionRow) -> str:
     settings = result.settings
     charges = "; ".join(_charge_sentence(one, settings.confidence) for one in row.corner_charges)
+    energy = f"{number(row.shortcut, decimals_for(row.std_uncertainty))} {settings.energy_unit}"
+    if all(one.verdict == "assumed" for one in row.corner_charges):
+        return (
+            f"With one charge for all corners the energy is the shortcut, {energy} from median voltages "
+            f"alone. The shortcut is {row.shortcut_verdict}: {_SHORTCUT_REASONS[row.shortcut_verdict]}."
+        )
     text = (
-        f"Median voltages alone, with one charge for all corners, give "
-        f"{number(row.shortcut, decimals_for(row.std_uncertainty))} {settings.energy_unit}. Charge relative "
-        f"to {row.wild_type}: {charges} (margin {percent(settings.charge_margin)}; the error of the verdict "
-        "changed is held for all corners together)."
+        f"The shortcut, median voltages alone and one charge for all corners, gives {energy}. Charge "
+        f"relative to {row.wild_type}, equal if within {percent(settings.charge_margin)}: {charges}."
     )
     if row.shortcut_bias is not None and row.shortcut_bias_low is not None:
         limits = (row.shortcut_bias_low, row.shortcut_bias_high)
@@ -185,8 +242,10 @@ def _voltages(result: Result, row: InteractionRow) -> str:
             f"{change}, and a common voltage error does not cancel{offset}."
         )
     return (
-        f"The charges add up within their uncertainty, {j}: if they do so exactly the interaction energy is "
-        f"one number for all voltages and a common voltage error cancels; the data allow a change of {change}"
+        f"The charges add up within their uncertainty, {j}: if they do so exactly the interaction "
+        "energy is "
+        "one number for all voltages and a common voltage error cancels; the data allow a change of "
+        f"{change}"
         f"{offset}."
     )
 
@@ -217,5 +276,8 @@ def _outlook(result: Result, row: InteractionRow, budget: list[BudgetRow]) -> st
     known = [part for part in budget if part.share is not None]
     if known:
         most = known[0]
-        parts.append(f"the largest part of the uncertainty, {most.share:.0%}, comes from {most.source}")
+        parts.append(
+            f"the largest part of the squared uncertainty, {in_percent(most.share or 0.0)}, comes from "
+            f"{most.source}"
+        )
     return f"What would change it: {'; '.join(parts)}." if parts else ""

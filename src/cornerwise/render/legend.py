@@ -6,6 +6,7 @@ from collections.abc import Iterable
 
 from ..campaign import Settings, StatedCharge
 from ..result import BudgetRow, Result
+from ..units import in_percent
 
 FORMULA = "I = sum over the corners of s F Q Vm; s = (-1)^(order - mutations in the corner)"
 SIGN_OF_PAIR = (
@@ -63,14 +64,17 @@ def budget_sentence(result: Result) -> list[str]:
     parts = [largest[row.cycle] for row in result.ranking if row.cycle in largest]
     if not parts:
         return []
-    told = "; ".join(f"{part.cycle} {part.share:.0%} {part.source}" for part in parts[:_CYCLES_TOLD])
+    told = "; ".join(
+        f"{part.cycle} {in_percent(part.share or 0.0)} {part.source}" for part in parts[:_CYCLES_TOLD]
+    )
     rest = "; the other cycles' in budget.csv" if len(parts) > _CYCLES_TOLD else ""
     return [f"largest part of the squared uncertainty: {told}{rest}"]
 
 
 def _charge_words(settings: Settings) -> str:
     if isinstance(settings.charge, StatedCharge):
-        return f"{{ value_e0 = {settings.charge.value_e0:g}, sem_e0 = {settings.charge.sem_e0:g} }}"
+        cited = "" if settings.charge.citation is None else f', citation = "{settings.charge.citation}"'
+        return f"{{ value_e0 = {settings.charge.value_e0:g}, sem_e0 = {settings.charge.sem_e0:g}{cited} }}"
     return f'"{settings.charge}"'
 
 
@@ -104,7 +108,7 @@ def setting_values(settings: Settings) -> dict[str, str]:
 
 
 def settings_sentences(settings: Settings) -> list[str]:
-    """Two sentences: what the user set, and what was left to its default."""
+    """Two lines: what the user set, and what was left to its default."""
     values = setting_values(settings)
     stated = [f"{key} = {value}" for key, value in values.items() if key not in settings.defaulted]
     default = [f"{key} = {values[key]}" for key in values if key in settings.defaulted and key != "title"]

@@ -224,17 +224,31 @@ def _many(result: Result, cited: _Cited) -> str:
 
 def _judgement(result: Result, cited: _Cited) -> str:
     settings = result.settings
-    unit, level = settings.energy_unit, percent(settings.confidence)
-    inner = percent(round(2 * settings.confidence - 1, 6))
+    unit = settings.energy_unit
     return (
         f"A pair is called coupled when its whole interval lies beyond {settings.energy_threshold:.3g} "
         f"{unit} on one side of 0, detected when the interval excludes 0 only (both only with an adjusted p "
         f"of at most {1 - settings.confidence:.3g}), uncoupled when it lies inside that threshold, and "
-        "unresolved otherwise. A mutant's total charge is called equal to the wild "
+        f"unresolved otherwise. {_charge_judgement(result, cited)}"
+    )
+
+
+def _charge_judgement(result: Result, cited: _Cited) -> str:
+    """How the charges were compared; where none was, that their equality is assumed."""
+    settings = result.settings
+    if all(row.charge_verdict in (None, "assumed") for row in result.constructs):
+        return (
+            "That all constructs move the same total charge is an assumption here: it was not tested, and an "
+            "error of it is no part of the intervals."
+        )
+    inner = percent(round(2 * settings.confidence - 1, 6))
+    return (
+        "A mutant's total charge is called equal to the wild "
         f"type's when the {inner} interval of their ratio lies inside 1 ± {settings.charge_margin:g} (two "
-        f"one-sided tests {cited('equivalence')}), and changed when its {level} interval excludes 1. "
-        "Median voltages alone are called a valid shortcut when all charges are equal and the interval of "
-        f"the error they would make lies inside {settings.energy_tolerance:.3g} {unit}."
+        f"one-sided tests {cited('equivalence')}), and changed when its {percent(settings.confidence)} "
+        "interval excludes 1. Median voltages alone are called a valid shortcut when all charges are equal "
+        "and the interval of the error they would make lies inside "
+        f"{settings.energy_tolerance:.3g} {settings.energy_unit}."
     )
 
 

@@ -8,7 +8,7 @@ from typing import IO
 from rich.text import Text
 
 from ..errors import DataRefused
-from .terminal import screen_on
+from .terminal import hanging, screen_on
 
 
 def print_problems(error: DataRefused, stream: IO[str]) -> None:
@@ -28,6 +28,6 @@ def print_problems(error: DataRefused, stream: IO[str]) -> None:
         for where, problems in groupby(error.problems, key=lambda problem: str(problem.origin)):
             screen.print(Text(where or "campaign"))
             for problem in problems:
-                screen.print(Text(f"  found     {problem.found}"))
-                screen.print(Text(f"  expected  {problem.expected}"))
-                screen.print(Text(f"  to do     {problem.remedy}"))
+                hanging(screen, "  found     ", problem.found)
+                hanging(screen, "  expected  ", problem.expected)
+                hanging(screen, "  to do     ", problem.remedy)

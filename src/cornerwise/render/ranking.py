@@ -10,7 +10,7 @@ from rich.text import Text
 from ..result import RankRow, Result
 from .legend import CAUTION, interval_words, percent, settings_sentences, sign_sentences, unit_phrase
 from .rounding import decimals_for, number, span
-from .terminal import screen_on
+from .terminal import print_lines, screen_on
 
 _ORDERS = {
     "estimate": "by the size of the estimate",
@@ -50,8 +50,9 @@ def print_ranking(result: Result, stream: IO[str]) -> None:
     with screen_on(stream) as screen:
         screen.print(grid)
         screen.print()
-        for line in [*legend, "", *settings_sentences(settings)]:
-            screen.print(Text(line))
+        print_lines(screen, legend)
+        screen.print()
+        print_lines(screen, settings_sentences(settings))
 
 
 def _line(row: RankRow, uncertainty: float | None) -> list[str]:

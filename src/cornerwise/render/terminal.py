@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 import string
 from collections.abc import Iterator, Sequence
 from contextlib import contextmanager
@@ -37,6 +38,9 @@ _VERDICT_STYLE = {
 }
 
 
+_WIDE = 100  # columns from which a long name of a cycle has room
+_NARROW_NAME = 12  # columns of such a name elsewhere; two mutations fit
+_NARROWEST = 80  # columns in which the coupling table keeps its numbers whole
 _UNCUT = 1_000_000  # columns; nothing wraps at this width
 
 
@@ -60,12 +64,30 @@ def _plus_minus(screen: Console) -> str:
     return "±"
 
 
-def _grid(headers: Sequence[tuple[str, bool]]) -> Grid:
-    """Table without rules; each header with whether its column is numeric."""
+def _grid(headers: Sequence[tuple[str, bool]], folding: Sequence[str] = ()) -> Grid:
+    """Table without rules; each header with whether its column is numeric.
+
+    Where a screen is too narrow, the columns in `folding` give way before all others; without any, all do.
+    """
     grid = Grid(box=None, padding=(0, 1, 0, 0), pad_edge=False, header_style="bold")
     for header, numeric in headers:
-        grid.add_column(Text(header), justify="right" if numeric else "left", overflow="fold")
+        grid.add_column(
+            Text(header),
+            justify="right" if numeric else "left",
+            overflow="fold",
+            no_wrap=bool(folding) and header not in folding,
+        )
     return grid
+
+
+def broken(name: str, width: int) -> str:
+    """A name of joined mutations on as many lines as a column of that width needs, broken after a slash."""
+    lines = [""]
+    for part in re.findall("[^/]*/|[^/]+$", name):
+        if lines[-1] and len(lines[-1]) + len(part) > width:
+            lines.append("")
+        lines[-1] += part
+    return "\n".join(lines)
 
 
 def _marks(flags: Sequence[str]) -> dict[str, str]:
@@ -79,7 +101,7 @@ def _verdict(word: str) -> Text:
     return Text(word, style=_VERDICT_STYLE[word])
 
 
-def _interaction_grid(result: Result, marks: dict[str, str], plus_minus: str) -> Grid:
+def _interaction_grid(result: Result, marks: dict[str, str], plus_minus: str, width: int) -> Grid:
     grid = _grid(
         [
             ("cycle", False),
@@ -89,11 +111,12 @@ def _interaction_grid(result: Result, marks: dict[str, str], plus_minus: str) ->
             ("verdict", False),
             ("shortcut", False),
             ("flags", False),
-        ]
+        ],
+        folding=("flags",) if width >= _NARROWEST else (),
     )
     for row in by_strength(result.interactions):
         grid.add_row(
-            Text(row.cycle),
+            Text(broken(row.cycle, _NARROW_NAME) if width < _WIDE else row.cycle),
             Text(with_uncertainty(row.interaction, row.std_uncertainty, plus_minus)),
             Text(span((row.low, row.high), row.std_uncertainty)),
             Text(row.favours or "-"),
@@ -127,9 +150,19 @@ def _short(subject: str, flags: Sequence[Flag]) -> str:
     return subject if flags[0].value is None else f"{subject} ({flags[0].value:.3g})"
 
 
-def _print_lines(screen: Console, lines: Sequence[str]) -> None:
+def print_lines(screen: Console, lines: Sequence[str], indent: int = 2) -> None:
+    """Lines of text; what has to wrap hangs by `indent` columns."""
     for line in lines:
-        screen.print(Text(line))
+        hanging(screen, line[:indent], line[indent:])
+
+
+def hanging(screen: Console, head: str, text: str) -> None:
+    """A head and a text beside it; where the text has to wrap it stays beside the head."""
+    grid = Grid.grid()
+    grid.add_column(no_wrap=True)
+    grid.add_column(overflow="fold")
+    grid.add_row(Text(head), Text(text))
+    screen.print(grid)
 
 
 def _print_flags(screen: Console, flags: Sequence[Flag], marks: dict[str, str]) -> None:
@@ -161,9 +194,9 @@ def _show_result(result: Result, screen: Console) -> None:
     relevant = _flags_of_cycles(result)
     if result.settings.title:
         screen.print(Text(result.settings.title, style="bold"))
-    _print_lines(screen, [f"Interaction energies I in {unit_phrase(result.settings)}, strongest first"])
+    print_lines(screen, [f"Interaction energies I in {unit_phrase(result.settings)}, strongest first"])
     screen.print()
-    screen.print(_interaction_grid(result, marks, _plus_minus(screen)))
+    screen.print(_interaction_grid(result, marks, _plus_minus(screen), screen.width))
     _print_flags(screen, relevant, marks)
     screen.print()
     orders = {row.order for row in result.interactions}
@@ -171,11 +204,11 @@ def _show_result(result: Result, screen: Console) -> None:
         [f"Background of every construct: {'/'.join(result.background)}"] if result.background else []
     )
     notes = [f"Note: {note}" for note in result.notes]
-    _print_lines(
+    print_lines(
         screen, [FORMULA, *sign_sentences(orders), CAUTION, *budget_sentence(result), *background, *notes]
     )
     screen.print()
-    _print_lines(screen, settings_sentences(result.settings))
+    print_lines(screen, settings_sentences(result.settings))
 
 
 def _flags_of_cycles(result: Result) -> list[Flag]:
@@ -249,4 +282,4 @@ def _show_survey(survey: Survey, screen: Console) -> None:
     lines += [f"{label}: no cycle, it lacks {', '.join(missing)}" for label, missing in survey.incomplete]
     if survey.background:
         lines.append(f"Background of every construct: {'/'.join(survey.background)}")
-    _print_lines(screen, [*lines, "Vm, Q: mean ± standard error over cells; no energy was computed"])
+    print_lines(screen, [*lines, "Vm, Q: mean ± standard error over cells; no energy was computed"])

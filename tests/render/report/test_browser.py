@@ -120,7 +120,7 @@ def test_shortcut_and_doubt_filters(opened: Page, result: Result) -> None:
     opened.get_by_label("Shortcut").select_option("invalid")
     assert set(_shown(opened)) == {r.cycle for r in result.interactions if r.shortcut_verdict == "invalid"}
     opened.get_by_role("button", name="Show all").click()
-    opened.get_by_label("without doubts").check()
+    opened.get_by_label("without flags").check()
     assert set(_shown(opened)) == {row.cycle for row in result.interactions if not row.flags}
 
 

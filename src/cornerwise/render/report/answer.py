@@ -109,10 +109,18 @@ def _headline(cycles: Sequence[CycleView], threshold: str) -> str:
 
 def _sureness(result: Result, cycles: Sequence[CycleView]) -> list[str]:
     level = percent(result.settings.confidence)
+    adjusted = f"; p values are adjusted for {counted(len(cycles), 'cycle')}" if len(cycles) > 1 else ""
     sentences = [
         f"Every interval is a {level} interval for that cycle alone, from the scatter of cells and from all "
-        f"stated uncertainties; p values are adjusted for {counted(len(cycles), 'cycle')}."
+        f"stated uncertainties{adjusted}."
     ]
+    untested = sum(any(one.verdict == "assumed" for one in view.row.corner_charges) for view in cycles)
+    if untested:
+        sentences.append(
+            f"{untested} of {counted(len(cycles), 'cycle')} {'rests' if untested == 1 else 'rest'} on total "
+            "charges that were not measured: that they may differ from the wild type's is no part of the "
+            "interval; each cycle's section says what difference would undo its verdict."
+        )
     strongest = next((one for one in cycles if one.row.rank == 1), None)
     if strongest is not None and len(cycles) > 1:
         row = strongest.row
