@@ -226,13 +226,13 @@ def _survey_line(row: SurveyRow, marks: dict[str, str], plus_minus: str) -> list
     cells = str(row.cells_used)
     if row.cells_set_aside:
         cells += f" of {row.cells_used + row.cells_set_aside}"
-    charges = "" if row.charge_n is None else f" ({row.charge_n})"
-    median_u, charge_u = row.median_sem_mv, row.charge_sem_e0
+    charges = "" if row.charge_n is None else f" (n = {row.charge_n})"
+    charge = with_uncertainty(row.charge_e0, row.charge_sem_e0, plus_minus) + charges
     return [
         Text(row.construct),
         Text(cells),
-        Text(with_uncertainty(row.median_mv, median_u, plus_minus)),
-        Text(with_uncertainty(row.charge_e0, charge_u, plus_minus) + charges),
+        Text(with_uncertainty(row.median_mv, row.median_sem_mv, plus_minus)),
+        Text(charge or "not measured"),
         Text(" ".join(marks[code] for code in row.flags)),
     ]
 
@@ -269,7 +269,7 @@ def _show_cells(screen: Console, survey: Survey, marks: dict[str, str]) -> None:
 def _show_survey(survey: Survey, screen: Console) -> None:
     marks = _marks([flag.code for flag in survey.flags])
     grid = _grid(
-        [("construct", False), ("cells", True), ("Vm (mV)", True), ("Q (e0), (n)", True), ("flags", False)]
+        [("construct", False), ("cells", True), ("Vm (mV)", True), ("Q (e0)", True), ("flags", False)]
     )
     for row in survey.constructs:
         grid.add_row(*_survey_line(row, marks, _plus_minus(screen)))

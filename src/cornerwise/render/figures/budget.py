@@ -42,16 +42,17 @@ def cycle_budget(row: InteractionRow, parts: Sequence[BudgetRow], width: float) 
     bottom = 1.0 + len(shown) * _SOURCE_MM
     title = f"Where the uncertainty of {row.cycle} comes from"
     sheet = Sheet(width=width, height=bottom + _BOTTOM_MM, title=title)
-    largest = shown[0].contribution or 1.0
+    largest = 100 * (shown[0].share or 0.0)
     scale = Scale(low=0.0, high=1.02 * largest, start=3.0, end=width - 11.0)
     for place, part in enumerate(shown):
         y = 1.0 + place * _SOURCE_MM
         sheet.name((scale.start, y + 2.3), part.source, width - 3.5, size=SMALL_TYPE)
-        end = scale(part.contribution or 0.0)
+        end = scale(100 * (part.share or 0.0))
         sheet.box(scale.start, y + 3.1, max(end, scale.start + 0.15), y + 5.3, ink="below", tint=0.75)
         sheet.words((end + 1.0, y + 5.0), _share(part.share), size=SMALL_TYPE)
     rule_below(sheet, scale, bottom)
-    axis = f"standard uncertainty ({row.energy_unit} per channel)"
+    total = number(row.std_uncertainty, decimals_for(row.std_uncertainty))
+    axis = f"share of u² (%); u = {total} {row.energy_unit} per channel"
     sheet.words(((scale.start + scale.end) / 2, bottom + 7.6), axis, anchor="middle")
     left = len(known) - len(shown)
     if left:

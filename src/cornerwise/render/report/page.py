@@ -16,7 +16,7 @@ from ..figures.vector import svg_inline
 from ..legend import CAUTION, FORMULA, percent, setting_values, sign_sentences, unit_phrase
 from ..methods import figure_legends, methods_paragraphs
 from .answer import answer
-from .views import CycleViews, cell_views, construct_view, typeset
+from .views import FIGURE_TITLES, CycleView, CycleViews, cell_views, construct_view, typeset
 
 MOST_DRAWN_CYCLES = 60  # beyond it a cycle's figures are left out unless they are asked for
 _MOST_IN_ANSWER = 24  # cycles whose figure still fits beside the answer
@@ -70,7 +70,7 @@ def report_html(result: Result, *, cycle_figures: bool | None = None) -> str:
             cells=cell_views(result),
             methods=[typeset(text) for text in paragraphs],
             references=references,
-            legends=[(kind, typeset(text)) for kind, text in figure_legends(result).items()],
+            legends=_legends(result, overview, cycles),
             setting_values=setting_values(result.settings),
             level=percent(result.settings.confidence),
             unit=unit_phrase(result.settings),
@@ -83,6 +83,19 @@ def report_html(result: Result, *, cycle_figures: bool | None = None) -> str:
             policy=_policy(style, script),
         )
     )
+
+
+def _legends(
+    result: Result, overview: list[tuple[str, str, list[Markup]]], cycles: list[CycleView]
+) -> list[tuple[str, str]]:
+    """Legends of the figures there are; where cycles are not drawn, those their figures would have."""
+    drawn = {kind for kind, _, _ in overview} | {
+        kind for one in cycles for kind, title in FIGURE_TITLES.items() if title in dict(one.figures)
+    }
+    of_cycles = set() if any(one.figures for one in cycles) else set(FIGURE_TITLES)
+    return [
+        (kind, typeset(text)) for kind, text in figure_legends(result).items() if kind in drawn | of_cycles
+    ]
 
 
 def _environment() -> Environment:

@@ -26,11 +26,18 @@ FIGURE_TITLES = {
 
 
 def typeset(text: str) -> str:
-    """Numbers for reading: a true minus sign before a digit."""
+    """Numbers for reading: a true minus sign before a digit and between terms."""
     return "".join(
-        "−" if sign == "-" and after.isdigit() and not (before.isalnum() or before in ")-") else sign
+        "−" if sign == "-" and _is_minus(before, after) else sign
         for before, sign, after in zip(" " + text, text, text[1:] + " ", strict=False)
     )
+
+
+def _is_minus(before: str, after: str) -> bool:
+    """Whether a hyphen between these two characters is a sign or an operator."""
+    if before == " " and after == " ":
+        return True
+    return after.isdigit() and not (before.isalnum() or before in ")-")
 
 
 @dataclass(frozen=True, kw_only=True, slots=True)
