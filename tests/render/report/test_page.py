@@ -167,10 +167,10 @@ CHARGES3 = [13.0, 12.5, 13.3]
         ("-0.5 to 1.2", "−0.5 to 1.2"),
         ("(-1)^n", "(−1)^n"),
         ("Δ6-46", "Δ6-46"),
-        ("2.0 - 3.0", "2.0 - 3.0"),
+        ("2.0 - 3.0", "2.0 − 3.0"),
         ("p = 5.3e-15", "p = 5.3e-15"),
         ("x-3", "x-3"),
     ],
 )
-def test_minus_signs_are_set_only_before_numbers(plain: str, read: str) -> None:
+def test_minus_signs_are_set_before_numbers_and_between_terms(plain: str, read: str) -> None:
     assert typeset(plain) == read
