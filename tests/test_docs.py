@@ -1,7 +1,11 @@
 """The pages under docs say what the program does: examples run, every flag and verdict has its paragraph."""
 
 import doctest
+import os
 import re
+import shutil
+import subprocess
+import sys
 from pathlib import Path
 from typing import get_args
 
@@ -65,3 +69,46 @@ def test_the_page_of_flags_states_the_limits_in_force(heading: str, words: str) 
     page = (DOCS / "flags_and_verdicts.md").read_text(encoding="utf-8")
     (paragraph,) = [part for part in page.split("\n### ") if part.startswith(f"`{heading}`")]
     assert words in " ".join(paragraph.split())
+
+
+WITH_COMMANDS = sorted(
+    page for page in DOCS.glob("*.md") if "```console\n" in page.read_text(encoding="utf-8")
+)
+
+
+def _dialogue(page: Path) -> list[tuple[str, str]]:
+    """Commands of a page in their order, each with the output that is shown below it."""
+    blocks = re.findall(r"```console\n(.*?)```", page.read_text(encoding="utf-8"), flags=re.DOTALL)
+    steps = [step for block in blocks for step in re.split(r"^\$ ", block, flags=re.MULTILINE)[1:]]
+    return [(step.partition("\n")[0], step.partition("\n")[2]) for step in steps]
+
+
+@pytest.mark.skipif(shutil.which("sh") is None, reason="no POSIX shell to run the page's commands")
+@pytest.mark.parametrize("page", WITH_COMMANDS, ids=lambda page: page.name)
+def test_commands_on_the_page_print_what_it_shows(page: Path, tmp_path: Path) -> None:
+    shutil.copytree(DOCS.parent / "cycles", tmp_path / "cycles")
+    (tmp_path / "bin").mkdir()
+    command = tmp_path / "bin" / "cornerwise"
+    command.write_text(f'#!/bin/sh\nexec "{sys.executable}" -m cornerwise "$@"\n', encoding="utf-8")
+    command.chmod(0o755)
+    environment = {
+        **os.environ,
+        "PATH": f"{command.parent}{os.pathsep}{os.environ['PATH']}",
+        "PYTHONIOENCODING": "utf-8",
+    }
+    checker = doctest.OutputChecker()
+    for line, shown in _dialogue(page):
+        done = subprocess.run(
+            ["sh", "-c", line], cwd=tmp_path, env=environment, encoding="utf-8", check=False,
+            stdout=subprocess.PIPE, stderr=subprocess.STDOUT,
+        )  # fmt: skip
+        printed = "".join(
+            f"{text}\n"
+            for text in done.stdout.splitlines()
+            if not re.match("cornerwise: .*, [0-9]+ of", text)
+        )
+        assert checker.check_output(shown, printed, doctest.ELLIPSIS), f"$ {line}\n{printed}"
+
+
+def test_there_are_pages_with_commands() -> None:
+    assert [page.name for page in WITH_COMMANDS] == ["tutorial.md"]
