@@ -52,6 +52,34 @@ def test_rank_in_words_and_as_json(tmp_path: Path) -> None:
     assert _run("rank", tmp_path / "trial", "--first", "0").exit_code == 2
 
 
+def test_simulate_then_couple(tmp_path: Path) -> None:
+    made, models = tmp_path / "made", Path(__file__).parents[1] / "examples" / "models"
+    done = _run("simulate", models / "two_states.toml", "--out", made)
+    assert done.exit_code == 0
+    assert "E21A/R84Q" in done.stdout
+    assert "wrote campaign.toml, curves.csv, charges.csv, 3 files in truth" in done.stderr
+    assert _run("couple", made).exit_code == 0
+    again = _run("simulate", made / "truth" / "model.toml", "--out", made)
+    assert again.exit_code == 2
+    assert "use --force" in again.stderr
+    before = {p: p.read_bytes() for p in made.rglob("*.*")}
+    told = _run("simulate", made / "truth" / "model.toml", "--out", made, "--force", "--json")
+    assert told.exit_code == 0
+    assert {p: p.read_bytes() for p in made.rglob("*.*")} == before
+    document = json.loads(told.stdout)
+    assert document["schema"] == "cornerwise-truth/1"
+    assert document["cycles"][0]["interaction"] == pytest.approx(2.4)
+
+
+def test_simulate_lists_every_problem_and_writes_nothing(tmp_path: Path) -> None:
+    bad = tmp_path / "bad.toml"
+    bad.write_text("sedd = 1\n[campaign]\nwild_type = 3\n")
+    done = _run("simulate", bad, "--out", tmp_path / "made")
+    assert done.exit_code == 3
+    assert done.stderr.count("bad.toml") >= 3
+    assert not (tmp_path / "made").exists()
+
+
 def test_new_keeps_what_is_there(tmp_path: Path) -> None:
     (tmp_path / "mine.txt").write_text("kept")
     done = _run("new", tmp_path)

@@ -22,7 +22,7 @@ FLOORS = [
     {"standings", "verdicts"},
     {"charge_judgement"},
     {"tables"},
-    {"rows"},
+    {"rows", "simulation"},
     {"result"},
     {"result_reading"},
     {"charge_trace"},

@@ -9,7 +9,7 @@ import cornerwise
 def test_public_names_are_frozen() -> None:
     assert sorted(cornerwise.__all__) == [
         "Campaign", "CornerwiseError", "DataRefused", "Result", "Survey", "UsageError", "couple", "explain",
-        "read", "survey",
+        "read", "read_model", "simulate", "survey", "truth_of",
     ]  # fmt: skip
     for name in cornerwise.__all__:
         assert getattr(cornerwise, name) is not None

@@ -1,7 +1,8 @@
 """Interaction energies from charge-voltage data and double-mutant cycles.
 
 ``read`` turns a campaign folder or workbook into a `Campaign`, ``couple`` computes the interaction energy
-of every cycle with its uncertainty, ``survey`` judges the data without computing an energy.
+of every cycle with its uncertainty, ``survey`` judges the data without computing an energy. ``read_model``
+reads a gating model, ``simulate`` draws a campaign from it and ``truth_of`` says what is true of that.
 """
 
 from importlib import import_module
@@ -12,8 +13,10 @@ if TYPE_CHECKING:
     from .coupling import couple
     from .errors import CornerwiseError, DataRefused, UsageError
     from .intake import read
+    from .intake.model import read_model
     from .render.explanation import explain
     from .result import Result
+    from .simulation import simulate, truth_of
     from .surveying import Survey, survey
 
 __all__ = [
@@ -26,7 +29,10 @@ __all__ = [
     "couple",
     "explain",
     "read",
+    "read_model",
+    "simulate",
     "survey",
+    "truth_of",
 ]
 
 _ROOM_OF = {
@@ -39,7 +45,10 @@ _ROOM_OF = {
     "couple": "coupling",
     "explain": "render.explanation",
     "read": "intake",
+    "read_model": "intake.model",
+    "simulate": "simulation",
     "survey": "surveying",
+    "truth_of": "simulation",
 }
 
 

@@ -128,6 +128,7 @@ def _cornerwise(
       cornerwise new trial                    a filled-in campaign to start from
       cornerwise check trial                  read and judge the data
       cornerwise couple trial --out results   the coupling table and its files
+      cornerwise simulate model.toml --out it  a campaign with a known truth
 
     \b
     Exit codes: 0 done, 1 a fault of the program, 2 a wrong call,
@@ -149,6 +150,38 @@ def new(
 
     for name in new_campaign(folder):
         print(folder / name)
+
+
+@app.command()
+def simulate(
+    model_file: Annotated[Path, typer.Argument(metavar="MODEL.toml", help="Model file.")],
+    out: Annotated[Path, typer.Option(metavar="DIR", help="Write the campaign into DIR.")],
+    force: _Force = False,
+    as_json: _Json = False,
+) -> None:
+    """Draw a campaign with a known truth from a gating model.
+
+    Prints what is true; DIR gets the campaign and, in the folder truth, the model and the true values.
+
+    \b
+    For example:
+      cornerwise simulate model.toml --out trial
+      cornerwise couple trial
+    """  # noqa: D301
+    from . import read_model, truth_of
+    from . import simulate as draw
+    from .render.machine import truth_json
+    from .render.simulated import campaign_files
+    from .render.truth import print_truth
+
+    _expect_room(out, force=force)
+    model = read_model(model_file)
+    truth = truth_of(model)
+    _write(campaign_files(draw(model), truth, model), out, force=force)
+    if as_json:
+        print(truth_json(truth), end="")
+    else:
+        print_truth(truth, sys.stdout)
 
 
 @app.command()

@@ -43,7 +43,7 @@ def listed_mutations(document: Document, findings: Findings) -> dict[str, Mutati
                 remedy=f"move {label} above the line [mutations]",
             )  # fmt: skip
             continue
-        mutations = _mutations(words, origin, findings)
+        mutations = mutation_set(words, origin, findings)
         if mutations is not None:
             listed[label.strip()] = mutations
     return listed
@@ -86,7 +86,7 @@ def _request(
     if name is not None and (not isinstance(name, str) or not name.strip() or not name.isprintable()):
         findings.add(origin, found=say(name), expected="a name in quotes", remedy="correct the name")
         name = None
-    mutations = _mutations(entry.get("mutations", []), origin, findings)
+    mutations = mutation_set(entry.get("mutations", []), origin, findings)
     if mutations is None:
         return None
     if len(mutations) < 2:
@@ -119,8 +119,8 @@ def _refuse_twins(requests: list[CycleRequest], findings: Findings) -> None:
         sets.add(request.mutations)
 
 
-def _mutations(words: object, origin: Origin, findings: Findings) -> Mutations | None:
-    """Read a list of mutations; None when it is at fault."""
+def mutation_set(words: object, origin: Origin, findings: Findings) -> Mutations | None:
+    """Read a list of mutations; None when it is at fault, or names a residue twice."""
     if not isinstance(words, list) or not all(isinstance(word, str) and word.strip() for word in words):
         findings.add(
             origin, found=say(words), expected='a list of mutations such as ["E181A", "R212Q"]',

@@ -8,8 +8,6 @@ A campaign is a folder with ``campaign.toml`` and the tables ``curves``, ``media
 from __future__ import annotations
 
 import os
-import re
-import tomllib
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass
 from pathlib import Path
@@ -31,11 +29,9 @@ from .medians import MediansRead, read_medians
 from .openings import OpeningsRead, read_openings
 from .parts import Parts
 from .settings import KEYS, SECTIONS, Document, read_settings
-from .toml_lines import lines_of_keys
+from .toml_file import read_toml
 
 _Read = TypeVar("_Read")
-
-_LINE = re.compile(r"\(at line (\d+), column \d+\)")
 
 
 @dataclass(frozen=True, kw_only=True, slots=True)
@@ -102,7 +98,7 @@ def _open_folder(folder: Path, findings: Findings) -> Source:
         if contents is not None:
             inputs.append(contents[1])
         if name == "campaign":
-            document = None if contents is None else _toml(contents[0], path.name, findings)
+            document = None if contents is None else read_toml(contents[0], path.name, findings)
         else:
             tables[name] = None if contents is None else _table(contents[0], path, name, findings)
     return Source(document=document, tables=tables, inputs=tuple(inputs))
@@ -119,26 +115,6 @@ def _open_workbook(path: Path, findings: Findings) -> Source | None:
         document = workbook.read_document(book, findings)
         tables = workbook.read_tables(book, TABLES, findings)
     return Source(document=document, tables=tables, inputs=(contents[1],))
-
-
-def _toml(data: bytes, name: str, findings: Findings) -> Document | None:
-    decoded = text.decode(data, name, findings)
-    if decoded is None:
-        return None
-    try:
-        values = tomllib.loads(decoded)
-    except tomllib.TOMLDecodeError as error:
-        message = str(error)
-        line = _LINE.search(message)
-        row = int(line[1]) if line else decoded.count("\n") + 1
-        found = f"a line that is no TOML ({_LINE.sub('', message).strip()})"
-        findings.add(
-            Origin(file=name, row=row), found=found, expected='lines such as wild_type = "WT"',
-            remedy="put text in quotes, write numbers with a decimal point and each key once",
-        )  # fmt: skip
-        return None
-    rows = {path: (name, line) for path, line in lines_of_keys(decoded).items()}
-    return Document(values=values, file=name, rows=rows)
 
 
 def _table(data: bytes, path: Path, name: str, findings: Findings) -> RawTable | None:

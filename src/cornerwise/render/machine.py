@@ -6,9 +6,11 @@ import dataclasses
 import json
 
 from ..result import Result
+from ..simulation import Truth
 from ..surveying import Survey
 
 SURVEY_SCHEMA = "cornerwise-survey/1"
+TRUTH_SCHEMA = "cornerwise-truth/1"
 RANKING_SCHEMA = "cornerwise-ranking/1"
 
 
@@ -23,6 +25,16 @@ def survey_json(found: Survey) -> str:
         "cycles": found.cycles,
         "incomplete": [{"construct": label, "lacks": missing} for label, missing in found.incomplete],
         "flags": [dataclasses.asdict(flag) for flag in found.flags],
+    }
+    return json.dumps(document, indent=1, ensure_ascii=False, allow_nan=False) + "\n"
+
+
+def truth_json(truth: Truth) -> str:
+    """Text of what is true of a simulated campaign as JSON, full precision."""
+    document = {
+        "schema": TRUTH_SCHEMA,
+        "constructs": [dataclasses.asdict(row) for row in truth.constructs],
+        "cycles": [dataclasses.asdict(row) for row in truth.cycles],
     }
     return json.dumps(document, indent=1, ensure_ascii=False, allow_nan=False) + "\n"
 

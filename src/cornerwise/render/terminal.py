@@ -64,7 +64,7 @@ def _plus_minus(screen: Console) -> str:
     return "±"
 
 
-def _grid(headers: Sequence[tuple[str, bool]], folding: Sequence[str] = ()) -> Grid:
+def plain_grid(headers: Sequence[tuple[str, bool]], folding: Sequence[str] = ()) -> Grid:
     """Table without rules; each header with whether its column is numeric.
 
     Where a screen is too narrow, the columns in `folding` give way before all others; without any, all do.
@@ -102,7 +102,7 @@ def _verdict(word: str) -> Text:
 
 
 def _interaction_grid(result: Result, marks: dict[str, str], plus_minus: str, width: int) -> Grid:
-    grid = _grid(
+    grid = plain_grid(
         [
             ("cycle", False),
             (f"I ({result.settings.energy_unit})", True),
@@ -258,7 +258,7 @@ def _show_cells(screen: Console, survey: Survey, marks: dict[str, str]) -> None:
             groups.setdefault((cell.construct, cell.flags, cell.reason or ""), []).append(cell.cell)
     if not groups:
         return
-    grid = _grid([("cells to look at", False), ("", False), ("flags", False)])
+    grid = plain_grid([("cells to look at", False), ("", False), ("flags", False)])
     for (construct, flags, reason), cells in groups.items():
         aside = f" (not used: {reason})" if reason else ""
         grid.add_row(Text(construct), Text(", ".join(cells) + aside), Text(" ".join(marks[f] for f in flags)))
@@ -268,7 +268,7 @@ def _show_cells(screen: Console, survey: Survey, marks: dict[str, str]) -> None:
 
 def _show_survey(survey: Survey, screen: Console) -> None:
     marks = _marks([flag.code for flag in survey.flags])
-    grid = _grid(
+    grid = plain_grid(
         [("construct", False), ("cells", True), ("Vm (mV)", True), ("Q (e0)", True), ("flags", False)]
     )
     for row in survey.constructs:
