@@ -16,23 +16,10 @@ def sigmoid(midpoint_mv: float = -40.0, slope_mv: float = 9.0) -> np.ndarray:
 
 
 @pytest.mark.parametrize(
-    ("temperature", "possible"),
-    [(-5, True), (-5.01, False), (60, True), (60.01, False), (float("nan"), False)],
-)
-def test_temperatures(temperature: float, possible: bool) -> None:
-    assert plausible.possible_temperature(temperature) is possible
-
-
-@pytest.mark.parametrize(
     ("charge", "possible"), [(0, False), (1e-9, True), (100, True), (100.01, False), (-13, False)]
 )
 def test_total_charges(charge: float, possible: bool) -> None:
     assert plausible.possible_total_charge(charge) is possible
-
-
-def test_voltages() -> None:
-    voltages = np.array([-500.1, -500.0, 0.0, 500.0, 501.0, np.nan])
-    assert plausible.beyond_voltage_limit(voltages).tolist() == [True, False, False, False, True, False]
 
 
 @pytest.mark.parametrize(("width", "narrow"), [(4.9, True), (5.0, True), (5.1, False)])

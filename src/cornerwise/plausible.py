@@ -52,11 +52,6 @@ _LEVELS_LIMIT = 500  # the mixture changes little beyond, and the limit on the s
 Direction = Literal["rises", "falls", "flat"]
 
 
-def beyond_voltage_limit(voltage_mv: FloatArray) -> NDArray[np.bool_]:
-    """Which voltages in mV, shape (n,), no membrane is held at; NaN is not one of them."""
-    return np.asarray(np.abs(voltage_mv) > VOLTAGE_LIMIT_MV)
-
-
 def too_narrow(voltage_mv: FloatArray) -> bool:
     """Whether all voltages in mV, shape (n,), lie within `NARROWEST_RANGE_MV`."""
     return bool(np.ptp(voltage_mv) <= NARROWEST_RANGE_MV)
@@ -79,17 +74,6 @@ def volts_among_millivolts(voltage_mv: FloatArray) -> NDArray[np.bool_]:
     crowded = away <= step / 2
     fitting = (meant_away > step / 2) & (meant_away < 1.5 * step)
     return np.asarray(tiny & crowded & fitting)
-
-
-def possible_temperature(temperature_c: float) -> bool:
-    """Whether a recording can be made at this temperature in degrees Celsius."""
-    low, high = TEMPERATURE_RANGE_C
-    return low <= temperature_c <= high
-
-
-def impossible_probability(probability: FloatArray) -> NDArray[np.bool_]:
-    """Which values, shape (n,), are no probability; NaN is not one of them."""
-    return np.asarray((probability < 0.0) | (probability > 1.0))
 
 
 def possible_total_charge(charge_e0: float) -> bool:

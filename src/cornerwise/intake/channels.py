@@ -13,17 +13,18 @@ import numpy as np
 from .. import plausible
 from ..campaign import FloatArray
 from ..units import ChargeUnit, elementary_charges
+from . import allowed
 from .findings import Findings, nearest, shown
 from .header import Field, RawTable
 from .table import BoolArray, Table
 
+FEWEST_CHANNELS = 1
 RAW = "raw charge"
 RAW_UNITS: tuple[ChargeUnit, ...] = ("fC", "pC", "nC")
-CHARGE = Field(base="charge", units=("e0",))
-RAW_CHARGE = Field(base="charge", key=RAW, units=RAW_UNITS, required=False)
-CHANNELS = Field(base="channels", required=False)
-CHANNELS_SEM = Field(base="channels_sem", required=False)
-FEWEST_CHANNELS = 1
+CHARGE = Field(base="charge", units=("e0",), values=allowed.number(above=0, most=plausible.CHARGE_LIMIT_E0))
+RAW_CHARGE = Field(base="charge", key=RAW, units=RAW_UNITS, required=False, values=allowed.number(above=0))
+CHANNELS = Field(base="channels", required=False, values=allowed.number(least=FEWEST_CHANNELS))
+CHANNELS_SEM = Field(base="channels_sem", required=False, values=allowed.number(least=0))
 
 _EXPECTED = f"a total charge per channel above 0 and at most {plausible.CHARGE_LIMIT_E0:g} e0"
 
@@ -111,7 +112,7 @@ def _channels(table: Table, is_raw: BoolArray) -> FloatArray:
                 remedy="enter the count; without it the cell's charge is not that of a channel and may not "
                 "be compared with another construct's",
             )  # fmt: skip
-    too_few = is_raw & (channels < FEWEST_CHANNELS)
+    too_few = is_raw & table.outside("channels", channels)
     for index in np.flatnonzero(too_few):
         table.refuse(
             int(index), "channels", found=f"{channels[index]:g}", expected=expected,
@@ -138,7 +139,7 @@ def _refuse_needless(table: Table) -> None:
 def _counts_sem(table: Table, channels: FloatArray) -> FloatArray:
     """Read the standard uncertainties of the counts, shape (n_rows,); NaN where there is none that can be."""
     sem = table.numbers("channels_sem", empty=True)
-    wrong = (sem < 0) | (sem > channels)
+    wrong = table.outside("channels_sem", sem) | (sem > channels)
     for index in np.flatnonzero(wrong):
         table.refuse(
             int(index), "channels_sem", found=f"{sem[index]:g}",
@@ -150,8 +151,7 @@ def _counts_sem(table: Table, channels: FloatArray) -> FloatArray:
 
 def _possible(table: Table, charge_e0: FloatArray, is_raw: BoolArray) -> FloatArray:
     """Refuse charges no channel can move and put NaN in their place; a wrong unit is told once."""
-    impossible = [not plausible.possible_total_charge(float(charge)) for charge in charge_e0]
-    wrong = np.flatnonzero(np.array(impossible, dtype=bool) & ~np.isnan(charge_e0))
+    wrong = np.flatnonzero(allowed.outside(CHARGE.values, charge_e0))
     raw = wrong[is_raw[wrong]]
     count = int(np.count_nonzero(is_raw))
     once = len(raw) > max(2, count // 2)

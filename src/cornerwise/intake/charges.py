@@ -24,24 +24,33 @@ import numpy as np
 
 from ..campaign import ChargeReplicate, ChargeSummary, FloatArray
 from ..errors import Origin
+from . import allowed
 from .channels import CHANNELS, CHANNELS_SEM, CHARGE, RAW, RAW_CHARGE, charge_per_channel, refused_raw_charge
 from .findings import Findings, shown
 from .header import Field, RawTable
-from .rows import FEWEST_CELLS, first_named, refuse_repeated, standard_errors
+from .rows import (
+    BATCH,
+    CELL,
+    CONSTRUCT,
+    COUNT,
+    FEWEST_CELLS,
+    STANDARD_ERROR,
+    first_named,
+    refuse_repeated,
+    standard_errors,
+)
 from .table import BoolArray, Table, TextArray
 
 UNNAMED = "measured"
 CITED = "literature"
 
-_CONSTRUCT = Field(base="construct")
-_METHOD = Field(base="method", required=False)
+_METHOD = Field(base="method", required=False, values=allowed.line())
 REPLICATE_FIELDS = (
-    _CONSTRUCT, Field(base="cell"), Field(base="batch", required=False), CHARGE, RAW_CHARGE, CHANNELS,
-    CHANNELS_SEM, _METHOD,
+    CONSTRUCT, CELL, BATCH, CHARGE, RAW_CHARGE, CHANNELS, CHANNELS_SEM, _METHOD,
 )  # fmt: skip
 SUMMARY_FIELDS = (
-    _CONSTRUCT, CHARGE, Field(base="sem", units=("e0",)), Field(base="n"), _METHOD,
-    Field(base="citation", required=False),
+    CONSTRUCT, CHARGE, Field(base="sem", units=("e0",), values=STANDARD_ERROR), COUNT, _METHOD,
+    Field(base="citation", required=False, values=allowed.line()),
 )  # fmt: skip
 _OF_A_CELL = ("batch", RAW)  # columns that a row of a construct leaves empty
 _OF_A_CONSTRUCT = ("sem", "n", "citation")  # columns that a row of a cell leaves empty
@@ -181,7 +190,7 @@ def _replicates(rows: _Rows, charge_e0: FloatArray, own_e0: FloatArray) -> tuple
 def _summaries(rows: _Rows, charge_e0: FloatArray) -> tuple[ChargeSummary, ...]:
     table, of_constructs = rows.table, ~rows.of_cells
     sem = standard_errors(table, empty=rows.mixed)
-    n = table.whole_numbers("n", least=FEWEST_CELLS, empty=True)
+    n = table.whole_numbers("n", empty=True)
     if table.readable:
         _refuse_incomplete(rows)
     counted = np.isfinite(n) | (~table.filled("n") & (rows.citation != ""))

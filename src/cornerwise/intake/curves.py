@@ -15,23 +15,25 @@ import numpy as np
 
 from ..campaign import Curve
 from ..errors import Origin
+from . import allowed
 from .cells import Points, curves_of
 from .findings import Findings, shown
 from .header import Field, RawTable
 from .layouts import VOLTAGE, is_wide, once_only, wide_points
+from .rows import BATCH, CELL, CONSTRUCT
 from .table import Table, TextArray
-from .voltages import read_voltages
+from .voltages import VOLTAGE_VALUES, read_voltages
 
+PHASE = allowed.word("on", "off", "On", "Off", "ON", "OFF")
 FIELDS = (
-    Field(base="construct"),
-    Field(base="cell"),
-    Field(base="batch", required=False),
+    CONSTRUCT,
+    CELL,
+    BATCH,
     VOLTAGE,
-    Field(base="charge", units=("", "fC", "pC", "nC", "e0")),
-    Field(base="holding", units=("mV",), required=False),
-    Field(base="phase", required=False),
+    Field(base="charge", units=("", "fC", "pC", "nC", "e0"), values=allowed.number()),
+    Field(base="holding", units=("mV",), required=False, values=VOLTAGE_VALUES),
+    Field(base="phase", required=False, values=PHASE),
 )
-PHASES = ("", "on", "off")
 
 
 @dataclass(frozen=True, kw_only=True, slots=True)
@@ -89,10 +91,10 @@ def _tidy_points(raw: RawTable, findings: Findings) -> Points | None:
 
 
 def _phases(table: Table) -> TextArray:
-    phase = np.array([text.lower() for text in table.text("phase")], dtype=object)
-    for index in np.flatnonzero(np.array([text not in PHASES for text in phase], dtype=bool)):
+    phase = table.text("phase")
+    for index in np.flatnonzero(np.array([text not in ("", *PHASE["enum"]) for text in phase], dtype=bool)):
         table.refuse(
             int(index), "phase", found=shown(phase[index]), expected="on, off or nothing",
             remedy="name the phase of the pulse whose charge was integrated",
         )  # fmt: skip
-    return phase
+    return np.array([text.lower() for text in phase], dtype=object)

@@ -4,12 +4,13 @@ from __future__ import annotations
 
 from collections import Counter
 from collections.abc import Collection, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 
 import numpy as np
 from numpy.typing import NDArray
 
 from ..errors import Origin
+from . import allowed
 from .findings import Findings, listing, nearest, shown
 
 
@@ -38,6 +39,7 @@ class Field:
     units: tuple[str, ...] = ("",)  # "" is the bare name
     required: bool = True
     key: str = ""  # what it is asked for by, where that is not `base`
+    values: allowed.Fragment = field(default_factory=allowed.label, hash=False)  # numbers in the first unit
 
     @property
     def name(self) -> str:

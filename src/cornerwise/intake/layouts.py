@@ -15,9 +15,9 @@ from .cells import Points
 from .findings import Findings, shown
 from .header import Field, RawTable
 from .table import Table, TextArray, factorize
-from .voltages import read_voltages
+from .voltages import VOLTAGE_VALUES, read_voltages
 
-VOLTAGE = Field(base="voltage", units=("mV", "V"))
+VOLTAGE = Field(base="voltage", units=("mV", "V"), values=VOLTAGE_VALUES)
 _CELL = Field(base="construct/cell", required=False)  # for the messages
 
 

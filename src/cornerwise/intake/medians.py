@@ -10,17 +10,17 @@ from ..campaign import FloatArray, MedianSummary
 from ..errors import Origin
 from .findings import Findings
 from .header import Field, RawTable
-from .rows import FEWEST_CELLS, first_named, refuse_repeated, standard_errors
+from .rows import CONSTRUCT, COUNT, STANDARD_ERROR, first_named, refuse_repeated, standard_errors
 from .table import Table
-from .voltages import read_voltages
+from .voltages import VOLTAGE_VALUES, read_voltages
 
 VOLTS_BELOW = 0.5  # medians that are all smaller are volts in a column of millivolts
 
 FIELDS = (
-    Field(base="construct"),
-    Field(base="median", units=("mV",)),
-    Field(base="sem", units=("mV",)),
-    Field(base="n"),
+    CONSTRUCT,
+    Field(base="median", units=("mV",), values=VOLTAGE_VALUES),
+    Field(base="sem", units=("mV",), values=STANDARD_ERROR),
+    COUNT,
 )
 
 
@@ -40,7 +40,7 @@ def read_medians(raw: RawTable, findings: Findings) -> MediansRead:
     construct = table.labels("construct")
     median = read_voltages(table, "median")
     sem = standard_errors(table)
-    n = table.whole_numbers("n", least=FEWEST_CELLS)
+    n = table.whole_numbers("n")
     table.check_decimal_mark()
     _refuse_volts(table, median)
     refuse_repeated(table, "construct", range(len(table)), [(label, "") for label in construct.tolist()])

@@ -14,20 +14,23 @@ import numpy as np
 from .. import plausible
 from ..campaign import OpeningCurve
 from ..errors import Origin
+from . import allowed
 from .cells import Points, cells_in, is_steady, refuse_narrow, refuse_volts
 from .findings import Findings
 from .header import Field, RawTable
 from .layouts import VOLTAGE, is_wide, once_only, wide_points
+from .rows import BATCH, CELL, CONSTRUCT
 from .table import IntArray, Table
 from .voltages import read_voltages
 
 METHOD = "limiting slope"  # as the charge it gives is called
+PROBABILITY = allowed.number(least=0, most=1)
 FIELDS = (
-    Field(base="construct"),
-    Field(base="cell"),
-    Field(base="batch", required=False),
+    CONSTRUCT,
+    CELL,
+    BATCH,
     VOLTAGE,
-    Field(base="open_probability"),
+    Field(base="open_probability", values=PROBABILITY),
 )
 
 _EXPECTED = "open probabilities from 0 to 1"
@@ -87,7 +90,7 @@ def _tidy_points(raw: RawTable, findings: Findings) -> Points | None:
 
 def _refuse_no_probability(points: Points, findings: Findings) -> None:
     """Refuse what is no probability; a table that is mostly so has the wrong unit and is told once."""
-    beyond = np.flatnonzero(plausible.impossible_probability(points.value))
+    beyond = np.flatnonzero(allowed.outside(PROBABILITY, points.value))
     if len(beyond) > max(2, len(points.value) // 2):
         first = int(beyond[np.argmin(points.index[beyond])])
         place = points.origin(first)
@@ -106,7 +109,8 @@ def _refuse_no_probability(points: Points, findings: Findings) -> None:
 
 def _openings(points: Points, findings: Findings) -> tuple[OpeningCurve, ...]:
     named = np.flatnonzero((points.construct != "") & (points.cell != ""))
-    sound = np.isfinite(points.voltage_mv) & (points.value >= 0) & (points.value <= 1)
+    sound = np.isfinite(points.voltage_mv) & np.isfinite(points.value)
+    sound &= ~allowed.outside(PROBABILITY, points.value)
     openings, narrow = [], []
     for members in cells_in(points, named):
         if np.isfinite(points.voltage_mv[members]).all() and refuse_volts(points, members, findings):

@@ -8,16 +8,23 @@ import numpy as np
 
 from ..campaign import FloatArray
 from ..errors import Origin
+from . import allowed
 from .findings import shown
+from .header import Field
 from .table import Table, TextArray
 
 FEWEST_CELLS = 2  # a standard error needs two
+CONSTRUCT = Field(base="construct")
+CELL = Field(base="cell")
+BATCH = Field(base="batch", required=False, values=allowed.line())
+COUNT = Field(base="n", values=allowed.whole(FEWEST_CELLS))
+STANDARD_ERROR = allowed.number(least=0)
 
 
 def standard_errors(table: Table, *, empty: bool = False) -> FloatArray:
     """Read the column ``sem``, shape (n_rows,); NaN where it holds none that is possible."""
     sem = table.numbers("sem", empty=empty)
-    negative = sem < 0
+    negative = table.outside("sem", sem)
     for index in np.flatnonzero(negative):
         table.refuse(
             int(index), "sem", found=f"{sem[index]:g}", expected="a standard error, not negative",

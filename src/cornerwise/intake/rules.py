@@ -1,14 +1,33 @@
-"""How a key of a TOML file is named, read and judged, and the readers of plain values."""
+"""How a key of a TOML file is named, read and judged, and the readers of plain values.
+
+A value is judged by a fragment of JSON Schema, the one that the published schemas are put together from.
+"""
 
 from __future__ import annotations
 
-import math
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
-from typing import Any
+from typing import Any, Generic, TypeVar
 
 from ..errors import Origin
+from . import allowed
 from .findings import Findings, shown
+
+T = TypeVar("T")
+
+
+@dataclass(frozen=True, slots=True)
+class Reader(Generic[T]):
+    """Reads the values that a fragment of JSON Schema allows."""
+
+    schema: allowed.Fragment  # judged by, and published
+    convert: Callable[[Any], T]  # what is kept; ValueError where no schema can tell the fault
+
+    def __call__(self, value: object) -> T:
+        """Return what is kept of a value; ValueError if it is not allowed."""
+        if not allowed.allows(self.schema, value):
+            raise ValueError
+        return self.convert(value)
 
 
 @dataclass(frozen=True, kw_only=True, slots=True)
@@ -17,7 +36,7 @@ class Rule:
 
     key: str
     attribute: str  # of the dataclass that holds the value
-    read: Callable[[object], object]  # the value; raises ValueError if it is none
+    read: Reader[Any]
     expected: str
     remedy: str = "correct the value"
 
@@ -58,67 +77,29 @@ def read_by_rules(
     return read
 
 
-def text(value: object) -> str:
-    """Return a text; ValueError if it is none."""
-    if not isinstance(value, str):
-        raise ValueError
-    return value
+text = Reader(allowed.text(), str)
+line = Reader(allowed.line(), str.strip)  # of visible characters, perhaps none
+visible_text = Reader(allowed.label(), str.strip)  # without outer spaces
+yes_or_no = Reader(allowed.truth(), bool)
+number = Reader(allowed.number(), float)
 
 
-def visible_text(value: object) -> str:
-    """Return a text without outer spaces; ValueError if there is nothing else, or what cannot be seen."""
-    stripped = text(value).strip()
-    if not stripped or not stripped.isprintable():
-        raise ValueError
-    return stripped
-
-
-def yes_or_no(value: object) -> bool:
-    """Return a truth value; ValueError if it is none."""
-    if not isinstance(value, bool):
-        raise ValueError
-    return value
-
-
-def number(value: object) -> float:
-    """Return a finite number; ValueError if it is none."""
-    if isinstance(value, bool) or not isinstance(value, int | float) or not math.isfinite(value):
-        raise ValueError
-    return float(value)
-
-
-def whole(least: int, most: float = math.inf) -> Callable[[object], int]:
+def whole(least: int, most: int = allowed.LARGEST_WHOLE) -> Reader[int]:
     """Reader of whole numbers from `least` to `most`."""
-
-    def read(value: object) -> int:
-        if isinstance(value, bool) or not isinstance(value, int) or not least <= value <= most:
-            raise ValueError
-        return value
-
-    return read
+    return Reader(allowed.whole(least, most), int)
 
 
-def where(allowed: Callable[[float], bool]) -> Callable[[object], float]:
-    """Reader of the numbers that are allowed."""
-
-    def read(value: object) -> float:
-        plain = number(value)
-        if not allowed(plain):
-            raise ValueError
-        return plain
-
-    return read
+def within(
+    *, least: float | None = None, above: float | None = None, most: float | None = None,
+    below: float | None = None,
+) -> Reader[float]:  # fmt: skip
+    """Reader of the numbers from `least` or above `above`, to `most` or below `below`."""
+    return Reader(allowed.number(least=least, above=above, most=most, below=below), float)
 
 
-def word(*allowed: str) -> Callable[[object], str]:
+def word(*words: str) -> Reader[str]:
     """Reader of one of a few words."""
-
-    def read(value: object) -> str:
-        if value not in allowed:
-            raise ValueError
-        return str(value)
-
-    return read
+    return Reader(allowed.word(*words), str)
 
 
 def say(value: object) -> str:
@@ -128,6 +109,8 @@ def say(value: object) -> str:
             return f"the text {shown(value)}" if value.strip() else "an empty text"
         case bool():
             return f"the truth value {str(value).lower()}"
+        case int() if abs(value) > allowed.LARGEST_WHOLE:
+            return "a number of many digits"
         case int() | float():
             return f"the number {value}"
         case Mapping():

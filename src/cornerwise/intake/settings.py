@@ -9,9 +9,9 @@ read.
 
 from __future__ import annotations
 
-from collections.abc import Callable, Mapping, Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
-from typing import Any, get_args
+from typing import get_args
 
 from .. import plausible
 from ..campaign import ChargePolicy, IntervalKind, RankOrder, Settings, StatedCharge
@@ -19,10 +19,8 @@ from ..errors import Origin
 from ..intervals import Adjustment
 from ..units import ENERGY_UNITS
 from .findings import Findings, listing, nearest
-from .rules import Rule, read_by_rules, say, text, visible_text, where, whole, word, yes_or_no
+from .rules import Rule, line, read_by_rules, say, visible_text, whole, within, word, yes_or_no
 from .spelling import meant_keys
-
-CHARGE_WORDS = ("measured", "wild-type")
 
 
 @dataclass(frozen=True, kw_only=True, slots=True)
@@ -54,17 +52,18 @@ class Document:
 _UNKNOWN_CHARGE = StatedCharge(value_e0=1.0, sem_e0=0.0)
 
 _LOW_C, _HIGH_C = plausible.TEMPERATURE_RANGE_C
-_POSITIVE = where(lambda number: number > 0)
+_STATE_CHARGE = "write charge = { value_e0 = 13.0, sem_e0 = 0.5 } with your own values"
+_POSITIVE = within(above=0)
 
 RULES = (
-    Rule(key="title", attribute="title", read=text, expected="text in quotes"),
+    Rule(key="title", attribute="title", read=line, expected="text in quotes, on one line"),
     Rule(
         key="wild_type", attribute="wild_type", read=visible_text,
         expected="the wild type's label, in quotes",
         remedy="write the label as it stands in the tables",
     ),
     Rule(
-        key="temperature_C", attribute="temperature_c", read=where(plausible.possible_temperature),
+        key="temperature_C", attribute="temperature_c", read=within(least=_LOW_C, most=_HIGH_C),
         expected=f"a temperature from {_LOW_C:g} to {_HIGH_C:g} degrees Celsius",
         remedy="correct the value; subtract 273.15 if it is in kelvin",
     ),
@@ -74,7 +73,7 @@ RULES = (
         expected=listing(f'"{unit}"' for unit in ENERGY_UNITS),
     ),
     Rule(
-        key="confidence", attribute="confidence", read=where(lambda number: 0.5 < number < 1),
+        key="confidence", attribute="confidence", read=within(above=0.5, below=1),
         expected="a number above 0.5 and below 1", remedy="write 0.95 for 95 %",
     ),
     Rule(
@@ -91,17 +90,17 @@ RULES = (
         expected="an energy above 0, in the campaign's energy_unit",
     ),
     Rule(
-        key="charge_margin", attribute="charge_margin", read=where(lambda number: 0 < number < 1),
+        key="charge_margin", attribute="charge_margin", read=within(above=0, below=1),
         expected="a fraction above 0 and below 1", remedy="write 0.10 for 10 %",
     ),
     Rule(
         key="voltage_offset_mV", attribute="voltage_offset_mv",
-        read=where(lambda number: 0 <= number <= plausible.VOLTAGE_LIMIT_MV),
+        read=within(least=0, most=plausible.VOLTAGE_LIMIT_MV),
         expected="a standard uncertainty in mV, not negative",
     ),
     Rule(
         key="reference_voltage_mV", attribute="reference_voltage_mv",
-        read=where(lambda number: abs(number) <= plausible.VOLTAGE_LIMIT_MV),
+        read=within(least=-plausible.VOLTAGE_LIMIT_MV, most=plausible.VOLTAGE_LIMIT_MV),
         expected=f"a voltage in mV, from -{plausible.VOLTAGE_LIMIT_MV:g} to {plausible.VOLTAGE_LIMIT_MV:g}",
         remedy="correct the value; write -60 for -60 mV",
     ),
@@ -130,8 +129,27 @@ RULES = (
     Rule(key="first", attribute="first", read=whole(1), expected="a whole number, at least 1"),
 )  # fmt: skip
 
+CHARGE_WORD = word("measured", "wild-type")
+CHARGE_RULES = (
+    Rule(
+        key="value_e0", attribute="value_e0", read=within(above=0, most=plausible.CHARGE_LIMIT_E0),
+        expected=f"a charge per channel above 0, at most {plausible.CHARGE_LIMIT_E0:g} e0",
+        remedy=_STATE_CHARGE,
+    ),
+    Rule(
+        key="sem_e0", attribute="sem_e0", read=within(least=0),
+        expected="its standard uncertainty in e0, not negative", remedy=_STATE_CHARGE,
+    ),
+    Rule(
+        key="citation", attribute="citation", read=visible_text,
+        expected="the source of the value, in quotes",
+        remedy='write citation = "where the value is published", or leave it out',
+    ),
+)  # fmt: skip
+NEEDED = ("value_e0", "sem_e0")  # of a stated charge
+
 KEYS = (*(rule.key for rule in RULES), "charge")
-CHARGE_KEYS = ("value_e0", "sem_e0", "citation")
+CHARGE_KEYS = tuple(rule.key for rule in CHARGE_RULES)
 SECTIONS = ("mutations", "cycle", "exclude")
 
 
@@ -168,39 +186,29 @@ def read_settings(document: Document, findings: Findings) -> Settings | None:
 
 def _charge_policy(document: Document, findings: Findings) -> ChargePolicy:
     stated = document.values["charge"]
-    if stated in CHARGE_WORDS:
-        return str(stated)
     if isinstance(stated, Mapping):
         return _stated_charge(document, stated, findings)
-    close = nearest(stated, CHARGE_WORDS) if isinstance(stated, str) else None
-    findings.add(
-        document.origin("charge"),
-        found=say(stated),
-        expected='"measured", "wild-type" or a table such as { value_e0 = 13.0, sem_e0 = 0.5 }',
-        remedy=f'did you mean "{close}"?' if close else "choose one of the three",
-    )
-    return _UNKNOWN_CHARGE
+    try:
+        return CHARGE_WORD(stated)
+    except ValueError:
+        close = nearest(stated, CHARGE_WORD.schema["enum"]) if isinstance(stated, str) else None
+        findings.add(
+            document.origin("charge"),
+            found=say(stated),
+            expected='"measured", "wild-type" or a table such as { value_e0 = 13.0, sem_e0 = 0.5 }',
+            remedy=f'did you mean "{close}"?' if close else "choose one of the three",
+        )
+        return _UNKNOWN_CHARGE
 
 
 def _stated_charge(document: Document, stated: Mapping[str, object], findings: Findings) -> ChargePolicy:
-    meant = meant_keys(stated, CHARGE_KEYS, findings, origin=lambda key: document.origin("charge", key))
+    def origin(key: str) -> Origin:
+        return document.origin("charge", key)
+
+    meant = meant_keys(stated, CHARGE_KEYS, findings, origin=origin)
     stated = {meant[key]: value for key, value in stated.items() if key in meant}
-    possible = where(plausible.possible_total_charge)
-    rules: tuple[tuple[str, Callable[[object], object], str], ...] = (
-        ("value_e0", possible, f"a charge per channel above 0, at most {plausible.CHARGE_LIMIT_E0:g} e0"),
-        ("sem_e0", where(lambda number: number >= 0), "its standard uncertainty in e0, not negative"),
-        ("citation", visible_text, "the source of the value, in quotes"),
-    )
-    values: dict[str, Any] = {}
-    for key, read, expected in rules:
-        if key == "citation" and key not in stated:
-            continue
-        try:
-            values[key] = read(stated.get(key))
-        except ValueError:
-            found = say(stated[key]) if key in stated else f"no {key}"
-            remedy = "write charge = { value_e0 = 13.0, sem_e0 = 0.5 } with your own values"
-            if key == "citation":
-                remedy = 'write citation = "where the value is published", or leave it out'
-            findings.add(document.origin("charge", key), found=found, expected=expected, remedy=remedy)
-    return StatedCharge(**values) if {"value_e0", "sem_e0"} <= values.keys() else _UNKNOWN_CHARGE
+    values = read_by_rules(stated, CHARGE_RULES, origin, findings)
+    for rule in CHARGE_RULES:
+        if rule.key in NEEDED and rule.key not in stated:
+            findings.add(origin(rule.key), found=f"no {rule.key}", expected=rule.expected, remedy=rule.remedy)
+    return StatedCharge(**values) if values.keys() >= set(NEEDED) else _UNKNOWN_CHARGE

@@ -10,6 +10,7 @@ from numpy.typing import NDArray
 
 from ..campaign import FloatArray
 from ..errors import Origin
+from . import allowed
 from .findings import Findings, shown
 from .header import Field, RawTable, match_header
 from .numbers import looks_grouped, parse_number, refusal
@@ -41,6 +42,7 @@ class Table:
     ) -> None:
         self.raw = raw
         self.findings = findings
+        self.fields = {field.name: field for field in fields}
         findings.take_columns(raw.file, raw.header)
         self.found = match_header(raw, fields, findings, cells=cells)
         self.readable = all(field.base in self.found for field in fields if field.required)
@@ -125,13 +127,18 @@ class Table:
         values[self._refuse_grouped(columns, codes, uniques)] = np.nan
         return np.asarray(values[codes].reshape(len(columns), len(self)))
 
-    def whole_numbers(self, base: str, *, least: int, empty: bool = False) -> FloatArray:
+    def outside(self, base: str, values: FloatArray) -> BoolArray:
+        """Which values of a column, shape (n_rows,), in the first of its units, are beyond its bounds."""
+        return allowed.outside(self.fields[base].values if base in self.fields else {}, values)
+
+    def whole_numbers(self, base: str, *, empty: bool = False) -> FloatArray:
         """Read a column of counts, shape (n_rows,); NaN where it holds none."""
         values = self.numbers(base, empty=empty)
-        wrong = np.isfinite(values) & ((values < least) | (values != np.round(values)))
+        wrong = np.isfinite(values) & (self.outside(base, values) | (values != np.round(values)))
         for index in np.flatnonzero(wrong):
             self.refuse(
-                int(index), base, found=f"{values[index]:g}", expected=f"a whole number, at least {least}",
+                int(index), base, found=f"{values[index]:g}",
+                expected=f"a whole number, at least {self.fields[base].values['minimum']}",
                 remedy="enter the number of independent cells or measurements",
             )  # fmt: skip
         return np.where(wrong, np.nan, values)

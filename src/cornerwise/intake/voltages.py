@@ -7,7 +7,10 @@ from scipy import constants
 
 from .. import plausible
 from ..campaign import FloatArray
+from . import allowed
 from .table import Table
+
+VOLTAGE_VALUES = allowed.number(least=-plausible.VOLTAGE_LIMIT_MV, most=plausible.VOLTAGE_LIMIT_MV)
 
 _LARGEST_VOLTS = 1.0  # a curve in mV goes further
 _EXPECTED = f"voltages between -{plausible.VOLTAGE_LIMIT_MV:g} and {plausible.VOLTAGE_LIMIT_MV:g} mV"
@@ -22,7 +25,7 @@ def read_voltages(table: Table, base: str, *, empty: bool = False) -> FloatArray
     if base in table and _in_volts(table.unit(base), voltage):
         voltage = np.round(voltage * constants.kilo, 9)
     _refuse_beyond_limit(table, base, voltage)
-    return np.where(plausible.beyond_voltage_limit(voltage), np.nan, voltage)
+    return np.where(table.outside(base, voltage), np.nan, voltage)
 
 
 def _in_volts(unit: str, voltage: FloatArray) -> bool:
@@ -35,7 +38,7 @@ def _in_volts(unit: str, voltage: FloatArray) -> bool:
 
 def _refuse_beyond_limit(table: Table, base: str, voltage_mv: FloatArray) -> None:
     """Refuse impossible voltages; a column that is mostly so has the wrong unit and is told once."""
-    beyond = np.flatnonzero(plausible.beyond_voltage_limit(voltage_mv))
+    beyond = np.flatnonzero(table.outside(base, voltage_mv))
     if len(beyond) > max(2, len(voltage_mv) // 2):
         first = int(beyond[0])
         table.findings.add(

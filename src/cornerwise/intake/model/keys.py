@@ -7,8 +7,9 @@ from typing import get_args
 
 from ... import plausible
 from ...simulation.model import ChargeForm, Order, Scatter
+from .. import allowed
 from ..findings import listing
-from ..rules import Rule, number, text, visible_text, where, whole, word, yes_or_no
+from ..rules import Reader, Rule, number, text, visible_text, whole, within, word, yes_or_no
 
 SECTIONS = (
     "campaign", "gating", "step", "coupling", "side", "mutation", "interaction", "recording", "construct",
@@ -18,10 +19,10 @@ MOST_CELLS = 1000
 MOST_COPIES = 12
 
 _LIMIT = plausible.VOLTAGE_LIMIT_MV
-_NOT_NEGATIVE = where(lambda value: value >= 0)
-_FRACTION = where(lambda value: 0 <= value < 0.5)
-_STEP = where(lambda value: 0 < value <= _LIMIT)
-_VOLTAGE = where(lambda value: abs(value) <= _LIMIT)
+_NOT_NEGATIVE = within(least=0)
+_FRACTION = within(least=0, below=0.5)
+_STEP = within(above=0, most=_LIMIT)
+_VOLTAGE = within(least=-_LIMIT, most=_LIMIT)
 _A_VOLTAGE = f"a voltage in mV, from -{_LIMIT:g} to {_LIMIT:g}"
 _A_FRACTION = "a fraction of the whole charge, from 0 to below 0.5"
 _AN_ENERGY = "an energy in the campaign's energy_unit"
@@ -31,23 +32,22 @@ def _words(allowed: tuple[str, ...]) -> str:
     return listing(f'"{one}"' for one in allowed)
 
 
-def _batches(value: object) -> tuple[str, ...]:
-    if not isinstance(value, list):
+def _different(names: list[str]) -> tuple[str, ...]:
+    stripped = tuple(map(str.strip, names))
+    if len(set(stripped)) < len(stripped):
         raise ValueError
-    names = tuple(visible_text(name) for name in value)
-    if len(set(names)) < len(names):
-        raise ValueError
-    return names
+    return stripped
 
 
-def _span(value: object) -> tuple[float, float]:
-    if not isinstance(value, list) or len(value) != 2:
-        raise ValueError
-    low, high = map(number, value)
-    if not 0 < low <= high:
+def _rising(ends: list[float]) -> tuple[float, float]:
+    low, high = map(float, ends)
+    if low > high:
         raise ValueError
     return low, high
 
+
+_BATCHES = Reader(allowed.items(allowed.label()), _different)
+_SPAN = Reader(allowed.items(allowed.number(above=0), least=2, most=2), _rising)
 
 TOP_RULES = (
     Rule(key="note", attribute="note", read=text, expected="text in quotes"),
@@ -68,7 +68,7 @@ STEP_RULES = (
     Rule(key="name", attribute="name", read=visible_text, expected="a name in quotes"),
     Rule(
         key="charge_e0", attribute="charge_e0",
-        read=where(lambda value: 0 <= value <= plausible.CHARGE_LIMIT_E0),
+        read=within(least=0, most=plausible.CHARGE_LIMIT_E0),
         expected=f"a charge in e0, from 0 to {plausible.CHARGE_LIMIT_E0:g}",
     ),
     Rule(key="midpoint_mV", attribute="midpoint_mv", read=_VOLTAGE, expected=_A_VOLTAGE),
@@ -134,7 +134,7 @@ RECORDING_RULES = (
         expected="a standard deviation in mV, not negative",
     ),
     Rule(
-        key="batches", attribute="batches", read=_batches,
+        key="batches", attribute="batches", read=_BATCHES,
         expected='different names in quotes, such as ["day 1", "day 2"]',
     ),
     Rule(key="first_mV", attribute="first_mv", read=_VOLTAGE, expected=_A_VOLTAGE),
@@ -143,11 +143,11 @@ RECORDING_RULES = (
     Rule(key="noise", attribute="noise", read=_FRACTION, expected=_A_FRACTION),
     Rule(key="baseline_sd", attribute="baseline_sd", read=_FRACTION, expected=_A_FRACTION),
     Rule(
-        key="leak_per_mV", attribute="leak_per_mv", read=where(lambda value: abs(value) < 0.1),
+        key="leak_per_mV", attribute="leak_per_mv", read=within(above=-0.1, below=0.1),
         expected="a slope in fractions of the whole charge per mV, smaller than 0.1",
     ),
     Rule(
-        key="gain_pC", attribute="gain_pc", read=_span,
+        key="gain_pC", attribute="gain_pc", read=_SPAN,
         expected="two charges in pC above 0, the lower first, such as [0.6, 2.4]",
     ),
     Rule(key="holding_mV", attribute="holding_mv", read=_VOLTAGE, expected=_A_VOLTAGE),
@@ -157,7 +157,7 @@ RECORDING_RULES = (
         expected=f"a whole number from 0 to {MOST_CELLS}",
     ),
     Rule(
-        key="charge_sd", attribute="charge_sd", read=where(lambda value: 0 <= value <= 0.2),
+        key="charge_sd", attribute="charge_sd", read=within(least=0, most=0.2),
         expected="a fraction of the charge, from 0 to 0.2",
     ),
     Rule(
@@ -175,7 +175,7 @@ RECORDING_RULES = (
         expected="a relative standard deviation, from 0 to below 0.5",
     ),
     Rule(
-        key="opening_floor", attribute="opening_floor", read=where(lambda value: 0 < value < 0.1),
+        key="opening_floor", attribute="opening_floor", read=within(above=0, below=0.1),
         expected="a probability above 0 and below 0.1",
     ),
 )  # fmt: skip
