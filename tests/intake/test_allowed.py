@@ -48,8 +48,8 @@ EDGES: list[Any] = [
     *(float(bound) for bound in BOUNDS),
     *WORDS,
     *(word.upper() for word in WORDS),
-    "", " ", "WT", " WT ", "two words", "two\nlines", "WT\n", "WT\u200b", "W\u00adT", "\ufeffWT", 
-    "Δ1/p.(Arg2Gln)",     "a\tb", "\x00", "a\u3000b", "a\u00a0b", "𝛼", "\u2028",
+    "", " ", "WT", " WT ", "two words", "two\nlines", "WT\n", "WT\u200b", "W\u00adT", "\ufeffWT",
+    "Δ1/p.(Arg2Gln)", "a\tb", "\x00", "a\u3000b", "a\u00a0b", "𝛼", "\u2028",
     True, False, 0, 0.5, 1, 4.0, -0.0, 1.5, 1e300, 2**63, -(2**63), None, [], {}, ["a"], ["a", "b"],
     ["a", ""], ["a", 1], {"a": 1}, [1.0, 2.0], [0, 1], [2, 3, 4],
 ]  # fmt: skip
