@@ -28,6 +28,7 @@ FLOORS = [
     {"charge_trace"},
     {"construct_rows", "interaction_rows", "backgrounds"},
     {"coupling", "surveying"},
+    {"unit_change"},
     {"intake", "render", "starter"},
     {"cli"},
     {"__main__"},
