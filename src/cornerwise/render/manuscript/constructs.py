@@ -16,7 +16,7 @@ from .recipes import ENERGY, LEVEL, Recipe, Shared, chosen, filled_groups
 from .words import Words, words
 
 _Row = ConstructRow
-_USUAL = (
+USUAL = (
     "construct", "cells", "median", "charge", "charge_cells", "charge_source", "energy", "interval",
     "charge_ratio", "charge_verdict", "flags",
 )  # fmt: skip
@@ -142,7 +142,7 @@ def construct_table(result: Result, options: TableOptions) -> ManuscriptTable:
     UsageError
         If a column is unknown.
     """
-    recipes = chosen(RECIPES, options.construct_columns, _USUAL, "construct table")
+    recipes = chosen(RECIPES, options.construct_columns, USUAL, "construct table")
     shared = Shared(
         settings=result.settings,
         rounding=Rounding(options.digits),

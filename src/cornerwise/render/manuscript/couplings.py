@@ -28,7 +28,7 @@ from .words import Words, words
 
 _Row = InteractionRow
 _Fill = Callable[[_Row, Shared], Cell]
-_USUAL = (
+USUAL = (
     "cycle", "interaction", "interval", "p_adjusted", "favours", "verdict", "shortcut_verdict", "cells",
     "batches", "flags",
 )  # fmt: skip
@@ -144,8 +144,8 @@ RECIPES: tuple[Recipe[_Row], ...] = (
         key="rank", head="Rank",
         parts=(
             ("rank", "", "rank by strength, 1 the strongest"),
-            ("rank_low", "", "lowest rank that the data allow"),
-            ("rank_high", "", "highest rank that the data allow"),
+            ("rank_low", "", "smallest rank that the data allow"),
+            ("rank_high", "", "largest rank that the data allow"),
         ),
         fill=_rank,
     ),
@@ -221,7 +221,7 @@ def coupling_table(result: Result, options: TableOptions) -> ManuscriptTable:
         If a column is unknown.
     """
     stated = any(map(batches_of, result.interactions))
-    usual = [key for key in _USUAL if stated or key != "batches"]
+    usual = [key for key in USUAL if stated or key != "batches"]
     recipes = chosen(RECIPES, options.columns, usual, "coupling table")
     rows = by_strength(result.interactions)
     shared = Shared(

@@ -80,6 +80,6 @@ class ManuscriptTable:
 
     def paragraphs(self) -> tuple[Words, ...]:
         """Footnotes as they are printed: those with a mark in one paragraph, each after its letter."""
-        marked = [(Run(note.mark, "bold"), Run(" "), *note.text) for note in self.notes if note.mark]
+        marked = [(Run(note.mark, "bold"), Run("\u00a0"), *note.text) for note in self.notes if note.mark]
         whole = tuple(note.text for note in self.notes if not note.mark)
         return (*whole, joined(marked)) if marked else whole

@@ -129,8 +129,8 @@ def _longtable(table: ManuscriptTable, set_out: Layout) -> str:
         _kind(column, width, wraps)
         for column, width, wraps in zip(table.columns, set_out.widths_mm, set_out.wraps, strict=True)
     )
-    names = _heads(table.columns, [column.head for column in table.columns])
-    units = _heads(table.columns, [_unit(column) for column in table.columns])
+    names = _heads(table.columns, [column.head if column.unit else () for column in table.columns])
+    units = _heads(table.columns, [_unit(column) or column.head for column in table.columns])
     rows = []
     for group in table.groups:
         if group.head:

@@ -5,7 +5,8 @@ from __future__ import annotations
 from collections.abc import Collection, Mapping, Sequence
 
 from ...campaign import Settings
-from ...result import Result
+from ...measurements import SET_ASIDE
+from ...result import CellRow, Result
 from ..legend import CAUTION, interval_words, percent, sign_sentences
 from ..methods import ADJUSTMENTS, batch_sentence, charge_sentence, counted
 from ..ordering import grouped
@@ -146,9 +147,9 @@ def _unit(settings: Settings) -> Words:
 
 def _interval(settings: Settings) -> Words:
     if settings.interval == "monte-carlo":
-        how = "Monte Carlo propagation of Student's t distributions"
+        how = "Monte Carlo propagation of Student's *t* distributions"
     else:
-        how = "Student's t with Welch-Satterthwaite degrees of freedom on propagated uncertainty"
+        how = "Student's *t* with Welch-Satterthwaite degrees of freedom on propagated uncertainty"
     return words(f"{interval_words(settings)}: {how}.")
 
 
@@ -164,7 +165,7 @@ def _adjusted(result: Result) -> Words:
     if number < 2:
         return words("*p*~adj~, two-sided; one cycle, so nothing was adjusted.")
     name, _ = ADJUSTMENTS[result.settings.adjustment]
-    return words(f"*p*~adj~, two-sided p value adjusted for {counted(number, 'cycle')} by {name}.")
+    return words(f"*p*~adj~, two-sided *p* value adjusted for {counted(number, 'cycle')} by {name}.")
 
 
 _FREEDOM = words("*ν*, Welch-Satterthwaite degrees of freedom.")
@@ -220,10 +221,15 @@ def _common(result: Result) -> list[Words]:
 def _excluded(result: Result) -> str:
     aside = [cell for cell in result.cells if not cell.used]
     if not aside:
-        return "No cell was set aside."
-    groups = grouped(((cell.construct, cell.reason or "no reason stated"), cell.cell) for cell in aside)
+        return "Every cell was used."
+    groups = grouped(((cell.construct, _reason(cell)), cell.cell) for cell in aside)
     told = [f"{construct} {_cells(cells)} ({reason})" for (construct, reason), cells in groups.items()]
-    return printable(f"{counted(len(aside), 'cell')} set aside: {'; '.join(told)}.")
+    were = "was" if len(aside) == 1 else "were"
+    return printable(f"{counted(len(aside), 'cell')} {were} not used: {'; '.join(told)}.")
+
+
+def _reason(cell: CellRow) -> str:
+    return (cell.reason or "no reason stated").removeprefix(SET_ASIDE)
 
 
 def _cells(cells: list[str]) -> str:

@@ -80,15 +80,19 @@ def _write_head(sheet: Worksheet, heads: Sequence[str]) -> None:
 
 
 def _write(sheet: Worksheet, row: int, column: int, value: Value, form: str = "General") -> None:
-    """Put a value into a cell; text that looks like a formula stays text, when it is edited too."""
+    """Put a value into a cell; text that looks like a formula stays text, when it is edited too.
+
+    A number is handed over as its shortest exact text, since openpyxl would write 16 digits of the 17 that
+    some need.
+    """
     if value is None:
         return
-    cell = sheet.cell(row=row, column=column, value=value)
+    cell = sheet.cell(row=row, column=column)
     if isinstance(value, str):
-        cell.data_type = "s"
+        cell.value, cell.data_type = value, "s"
         cell.quotePrefix = value.startswith(_RUNS_AS_FORMULA)
     else:
-        cell.number_format = form
+        cell.value, cell.data_type, cell.number_format = repr(value), "n", form
 
 
 def _fill_columns(sheet: Worksheet, tables: Sequence[ManuscriptTable]) -> None:
