@@ -184,13 +184,7 @@ def test_render_refuses_what_couple_did_not_write(tmp_path: Path, old: str, new:
 
 @pytest.mark.parametrize(
     "words",
-    [
-        ("--unit", "eV"),
-        ("--columns", "cyle"),
-        ("--construct-columns", "x"),
-        ("--group", "x"),
-        ("--digits", "3"),
-    ],
+    ["--unit eV", "--columns cyle", "--construct-columns x", "--group x", "--digits 3"],
 )
 def test_render_refuses_unknown_choices(computed: Path, tmp_path: Path, words: str) -> None:
     done = _run("render", computed / "result.json", "--out", tmp_path / "out", *words.split())
