@@ -5,7 +5,6 @@ import math
 import numpy as np
 import pytest
 from builders import campaign, construct
-from reference_values import load
 
 from cornerwise.campaign import (
     ChargeReplicate,
@@ -16,8 +15,6 @@ from cornerwise.campaign import (
     StatedCharge,
 )
 from cornerwise.charges import (
-    PLAUSIBLE_CHARGE_E0,
-    PLAUSIBLE_LOSS_PER_MUTATION_E0,
     charge_values,
     choose,
     method_flags,
@@ -104,15 +101,6 @@ def test_charges_beyond_what_is_known_are_flagged(
     one = Construct(label="R5Q", mutations=(mutation,))
     flags = plausibility_flags(one, charge, wild_type)
     assert [flag.code for flag in flags] == (["charge-implausible"] if flagged else [])
-
-
-def test_published_charges_raise_no_warning() -> None:
-    published = load("gating_charge")
-    low, high = PLAUSIBLE_CHARGE_E0
-    values = [*published["voltage_gated_potassium_channels_e0"]]
-    values += published["calcium_activated_potassium_channel_e0"]
-    assert all(low <= value <= high for value in values)
-    assert published["lost_per_neutralised_sensor_charge_e0"] <= PLAUSIBLE_LOSS_PER_MUTATION_E0
 
 
 def test_mutants_are_measured_by_the_wild_types_method() -> None:

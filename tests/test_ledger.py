@@ -1,13 +1,8 @@
 """All sources together: Monte Carlo after JCGM 101, footprints and first-order replicates."""
 
-import math
-from collections.abc import Sequence
-from dataclasses import dataclass
-
 import numpy as np
 import pytest
 from builders import batched, cells, measurement
-from reference_values import load
 from scipy import stats
 
 from cornerwise.campaign import Settings
@@ -19,85 +14,16 @@ from cornerwise.quantities import Sample, Summary
 from cornerwise.sources import (
     CellSource,
     Component,
-    Derived,
-    Part,
-    Spread,
-    StatedSource,
-    Stream,
     cell_source,
     summary_source,
 )
 
-JCGM = load("jcgm101")
 LABELS = ("WT", "A1G", "C2S", "A1G/C2S")
-
-
-@dataclass(frozen=True)
-class Rectangular:
-    """An input known to lie between two limits, as JCGM 101 has it; the package itself has no such source."""
-
-    name: str
-    component: Component
-    std_uncertainty: float
-
-    @property
-    def components(self) -> tuple[Component, ...]:
-        return (self.component,)
-
-    def parts(self, gradient: Sequence[float]) -> tuple[Part, ...]:
-        return (Part(self.name, Spread((gradient[0] * self.std_uncertainty) ** 2, math.inf)),)
-
-    def shift(self, gradient: Sequence[float]) -> float:
-        return 0.0
-
-    def draws(self, rng: np.random.Generator, replicates: int) -> np.ndarray:
-        half = math.sqrt(3) * self.std_uncertainty
-        return rng.uniform(-half, half, replicates)[np.newaxis]
-
-    def deviations_drawn(self, gradient: Sequence[float], stream: Stream, replicates: int) -> np.ndarray:
-        return gradient[0] * self.draws(stream(self.component), replicates)[0]
-
-    def footprint(self, gradient: Sequence[float]) -> dict[Component, np.ndarray]:
-        return {self.component: np.array([gradient[0] * self.std_uncertainty])}
-
-    conservative_draws = draws
-
-
-def _sum(ledger: Ledger) -> tuple[Derived, np.ndarray]:
-    components = [source.components[0] for source in ledger.sources]
-    total = Derived(value=0.0, sensitivities=dict.fromkeys(components, 1.0))
-    return total, np.sum([ledger.draws(component) for component in components], axis=0)
 
 
 def _half_width(draws: np.ndarray) -> float:
     low, high = np.quantile(draws, [0.025, 0.975])
     return float(high - low) / 2
-
-
-def test_four_normal_inputs() -> None:
-    # JCGM 101 9.2.2: the law of propagation and the Monte Carlo method agree.
-    sources = [
-        StatedSource(name=str(i), component=Component("median", str(i)), mean=0.0, std_uncertainty=u)
-        for i, u in enumerate(JCGM["std_uncertainties"])
-    ]
-    ledger = Ledger(sources, seed=1, replicates=400_000, conservative=True)
-    total, draws = _sum(ledger)
-    assert math.sqrt(ledger.spread(total).variance) == pytest.approx(JCGM["u"])
-    assert _half_width(draws) == pytest.approx(JCGM["interval95"][1], abs=0.02)
-
-
-@pytest.mark.parametrize("case", ["rectangular_9_2_3", "rectangular_9_2_4"])
-def test_four_rectangular_inputs(case: str) -> None:
-    given = JCGM[case]
-    sources = [
-        Rectangular(str(i), Component("median", str(i)), u) for i, u in enumerate(given["std_uncertainties"])
-    ]
-    ledger = Ledger(sources, seed=1, replicates=400_000, conservative=True)
-    total, draws = _sum(ledger)
-    limits = total.interval(ledger, 0.95)
-    assert math.sqrt(ledger.spread(total).variance) == pytest.approx(given["u"], abs=JCGM["tolerance"])
-    assert limits.high == pytest.approx(given["propagated95"], abs=JCGM["tolerance"])
-    assert _half_width(draws) == pytest.approx(given["monte_carlo95"], rel=0.004)
 
 
 def test_conservative_draws_are_students_t() -> None:

@@ -3,10 +3,9 @@ import math
 import numpy as np
 import pytest
 from builders import cells
-from reference_values import load
 
 from cornerwise.ledger import Ledger
-from cornerwise.quantities import Sample, Summary
+from cornerwise.quantities import Sample
 from cornerwise.sources import (
     CellSource,
     Component,
@@ -15,8 +14,6 @@ from cornerwise.sources import (
     cell_source,
     linear,
     log_ratio,
-    product,
-    summary_source,
 )
 
 V, Q, X = Component("median", "WT"), Component("charge", "WT"), Component("median", "A1G")
@@ -32,25 +29,6 @@ def _ledger(*sources: CellSource | StatedSource, replicates: int = 100) -> Ledge
 
 def _one(component: Component, value: float = 0.0) -> Derived:
     return Derived(value=value, sensitivities={component: 1.0})
-
-
-def test_product_of_three_inputs_as_in_g41() -> None:
-    # GUM G.4.1: Y = b X1 X2 X3; relative uncertainties add in squares, degrees of freedom as printed.
-    case = load("gum_welch_satterthwaite")["G41_from_memory"]
-    kinds = [Component("charge", str(i)) for i in range(3)]
-    values = [3.0, -7.0, 11.0]
-    sources = [
-        summary_source(str(i), c, Summary(mean=x, sem=abs(x) * u / 100, n=n))
-        for i, (c, x, u, n) in enumerate(
-            zip(kinds, values, case["u_relative_percent"], case["n"], strict=True)
-        )
-    ]
-    factors = [_one(c, x) for c, x in zip(kinds, values, strict=True)]
-    y = product(product(factors[0], factors[1]), factors[2])
-    spread = _ledger(*sources).spread(y)
-    relative = 100 * math.sqrt(spread.variance) / abs(y.value)
-    assert relative == pytest.approx(case["u_relative_percent_total"], abs=5e-7)
-    assert spread.dof == pytest.approx(case["dof_total_recomputed"], abs=1e-6)
 
 
 def test_what_two_quantities_share_is_added_before_it_is_squared() -> None:

@@ -1,24 +1,6 @@
 import pytest
-from reference_values import load
 
 from cornerwise import units
-
-
-def test_faraday_constant_is_codata() -> None:
-    reference = load("constants")
-    assert pytest.approx(reference["faraday_C_per_mol"], rel=1e-12) == units.FARADAY_C_PER_MOL
-
-
-def test_one_charge_through_one_volt_in_kcal() -> None:
-    reference = load("constants")
-    per_volt = 1000 * units.energy_per_e0_mv("kcal/mol", 22.0)
-    assert per_volt == pytest.approx(reference["faraday_kcal_per_mol_per_V"], rel=1e-12)
-
-
-@pytest.mark.parametrize("celsius", ["20", "22", "25"])
-def test_thermal_voltage(celsius: str) -> None:
-    expected = load("constants")["recomputed_kT_per_e0_mV"][celsius]
-    assert units.thermal_voltage_mv(float(celsius)) == pytest.approx(expected, rel=1e-12)
 
 
 @pytest.mark.parametrize("unit", units.ENERGY_UNITS)

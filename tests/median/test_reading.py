@@ -11,7 +11,6 @@ from cornerwise.campaign import Curve
 from cornerwise.flags import codes
 from cornerwise.gating import GatingScheme, TwoStates, example_schemes
 from cornerwise.median import CellReading, read_construct
-from cornerwise.units import thermal_voltage_mv
 
 SCHEMES = example_schemes()
 GRID = np.arange(-170.0, 131.0, 10.0)
@@ -99,21 +98,6 @@ def test_scatter_between_cells_survives_pooling() -> None:
         found.append(medians(read_construct(made)).var(ddof=1))
         true.append(truth.var(ddof=1))
     assert 0.9 < math.sqrt(np.mean(found) / np.mean(true)) < 1.2
-
-
-def test_cooperative_binding_gives_the_median_ligand_activity() -> None:
-    # Concerted two-state binding of n = 4 sites, L = 1000, c = 0.01, in the logarithm of the activity. The
-    # median activity [(1 + L)/(1 + L c^n)]^(1/n) = 5.6248045164: the formula is ascribed to Wyman 1964 from
-    # memory, the number follows from it, and the area by quadrature gives the same ten digits.
-    log_x = np.arange(-14.0, 18.05, 0.1)
-    x = np.exp(log_x)
-    large, c, n = 1000.0, 0.01, 4
-    bound = (x * (1 + x) ** (n - 1) + large * c * x * (1 + c * x) ** (n - 1)) / (
-        (1 + x) ** n + large * (1 + c * x) ** n
-    )
-    mv = thermal_voltage_mv(22.0)
-    reading = read_construct([curve(mv * log_x, bound)])[0]
-    assert math.exp(reading.median_mv / mv) == pytest.approx(5.6248045164, rel=1e-6)
 
 
 @pytest.mark.parametrize("name", SCHEMES)

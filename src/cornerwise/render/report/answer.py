@@ -9,8 +9,7 @@ from ...flags import FLAG_CODES
 from ...result import InteractionRow, Result
 from ..legend import percent
 from ..methods import counted
-from ..rounding import typeset
-from .views import CycleView
+from .views import CycleView, typeset
 
 _MOST = 12  # cycles named in one line
 

@@ -1,1 +1,0 @@
-"""Tables for a manuscript: one document model, a writer a format."""
