@@ -1,11 +1,11 @@
 """A campaign for the tests of the report: a triple, charges of every kind, names that look like markup."""
 
+from collections.abc import Mapping
 from dataclasses import replace
 
 from builders import campaign, construct
 
-from cornerwise.campaign import Campaign
-from cornerwise.mutations import in_residue_order, parse_label
+from cornerwise.campaign import Campaign, Construct
 
 MEDIANS = {
     "WT": -40.0, "E5A": -33.0, "R9Q": -52.0, "K12A": -45.0, "E5A/R9Q": -20.0, "E5A/K12A": -38.0,
@@ -24,27 +24,29 @@ def hostile_campaign(**settings: object) -> Campaign:
         one = construct(label, [m - 1, m, m + 0.7, m + 1.4], charges)
         constructs.append(one)
     given = campaign(constructs, title=HOSTILE, **settings)
-    renamed = tuple(
-        replace(
-            one,
-            label=HOSTILE,
-            curves=tuple(replace(curve, construct=HOSTILE) for curve in one.curves),
-            charge_replicates=tuple(replace(q, construct=HOSTILE) for q in one.charge_replicates),
-            mutations=in_residue_order(parse_label("K12A") or ()),
-        )
-        if one.label == "K12A"
-        else one
-        for one in given.constructs
+    return renamed(given, {"K12A": HOSTILE}, {"R9Q/K12A": NAMED})
+
+
+def renamed(given: Campaign, labels: Mapping[str, str], cycles: Mapping[str, str]) -> Campaign:
+    """The campaign with other labels for some constructs and other names for some cycles."""
+    return replace(
+        given,
+        constructs=tuple(_relabelled(one, labels.get(one.label, one.label)) for one in given.constructs),
+        cycles=tuple(
+            replace(
+                cycle,
+                name=cycles.get(cycle.name, cycle.name),
+                corners=tuple(replace(one, label=labels.get(one.label, one.label)) for one in cycle.corners),
+            )
+            for cycle in given.cycles
+        ),
     )
-    cycles = tuple(
-        replace(
-            cycle,
-            name=NAMED if cycle.name == "R9Q/K12A" else cycle.name,
-            corners=tuple(
-                replace(corner, label=HOSTILE) if corner.label == "K12A" else corner
-                for corner in cycle.corners
-            ),
-        )
-        for cycle in given.cycles
+
+
+def _relabelled(one: Construct, label: str) -> Construct:
+    return replace(
+        one,
+        label=label,
+        curves=tuple(replace(curve, construct=label) for curve in one.curves),
+        charge_replicates=tuple(replace(charge, construct=label) for charge in one.charge_replicates),
     )
-    return replace(given, constructs=renamed, cycles=cycles)

@@ -34,7 +34,7 @@ def test_new_check_and_couple_work_on_each_other(tmp_path: Path) -> None:
     written = sorted(p.name for p in (tmp_path / "results").iterdir())
     assert written == [
         "budget.csv", "cells.csv", "constructs.csv", "interactions.csv", "midpoints.csv", "ranking.csv",
-        "report.html", "result.json",
+        "report.html", "result.json", "tables",
     ]  # fmt: skip
 
 
@@ -107,8 +107,99 @@ def test_json_is_the_library_result() -> None:
 def test_same_call_same_bytes(tmp_path: Path) -> None:
     for name in ("one", "two"):
         assert _run("couple", PUBLISHED, "--out", tmp_path / name).exit_code == 0
-    for file in (tmp_path / "one").iterdir():
-        assert file.read_bytes() == (tmp_path / "two" / file.name).read_bytes()
+    assert _contents(tmp_path / "one") == _contents(tmp_path / "two")
+
+
+def _contents(folder: Path) -> dict[str, bytes]:
+    files = [path for path in sorted(folder.rglob("*")) if path.is_file()]
+    return {path.relative_to(folder).as_posix(): path.read_bytes() for path in files}
+
+
+@pytest.fixture(scope="module")
+def computed(tmp_path_factory: pytest.TempPathFactory) -> Path:
+    folder = tmp_path_factory.mktemp("computed") / "results"
+    assert _run("couple", CYCLES / "orvane", "--out", folder).exit_code == 0
+    return folder
+
+
+def test_render_writes_again_what_couple_wrote(computed: Path, tmp_path: Path) -> None:
+    done = _run("render", computed / "result.json", "--out", tmp_path / "again")
+    assert done.exit_code == 0
+    assert done.stdout == ""
+    assert "wrote result.json, interactions.csv" in done.stderr
+    assert "9 files in tables" in done.stderr
+    again = _contents(tmp_path / "again")
+    assert again == _contents(computed)
+    assert "tables/couplings.docx" in again
+
+
+def test_render_computes_nothing(computed: Path, tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    def never(*_: object) -> None:
+        raise AssertionError("computed again")
+
+    for place in ("coupling.measure", "coupling.EnergyBook", "coupling.interaction_rows"):
+        monkeypatch.setattr(f"cornerwise.{place}", never)
+    assert _run("render", computed / "result.json", "--out", tmp_path / "again").exit_code == 0
+
+
+def test_render_in_another_unit_keeps_what_was_computed(computed: Path, tmp_path: Path) -> None:
+    words = (
+        "--unit", "kJ/mol", "--columns", "cycle, interaction,flags", "--construct-columns", "construct",
+    )  # fmt: skip
+    assert _run("render", computed / "result.json", "--out", tmp_path / "si", *words).exit_code == 0
+    si, given = _contents(tmp_path / "si"), _contents(computed)
+    assert si["result.json"] == given["result.json"]
+    assert si["cells.csv"] == given["cells.csv"]
+    assert b",kJ/mol," in si["interactions.csv"]
+    assert "13.1 ± 1.1" in si["tables/couplings.md"].decode()
+    assert "(kJ/mol)" in si["report.html"].decode()
+    heads = si["tables/couplings.md"].decode().splitlines()[2]
+    assert [head.strip() for head in heads.strip("|").split("|")] == ["Cycle", "*I* ± *u* (kJ/mol)", "Flags"]
+
+
+def test_render_of_its_own_output_is_the_same_again(computed: Path, tmp_path: Path) -> None:
+    words = ("--unit", "meV", "--group", "pair", "--digits", "one-or-two")
+    assert _run("render", computed / "result.json", "--out", tmp_path / "a", *words).exit_code == 0
+    assert _run("render", tmp_path / "a" / "result.json", "--out", tmp_path / "b", *words).exit_code == 0
+    assert _contents(tmp_path / "a") == _contents(tmp_path / "b") != _contents(computed)
+
+
+@pytest.mark.parametrize(
+    ("old", "new", "found"),
+    [
+        ('"schema": "cornerwise-result/', '"schema": "cornerwise-result/9', "schema"),
+        ('"interaction": 2.0', '"interaction": 3.0', "checksum"),
+        ('"checksum": "', "", "no JSON from line"),
+    ],
+)
+def test_render_refuses_what_couple_did_not_write(tmp_path: Path, old: str, new: str, found: str) -> None:
+    text = _run("couple", PUBLISHED, "--json").stdout
+    path = tmp_path / "result.json"
+    path.write_text(text.replace(old, new, 1) if new else text[: text.index(old)], encoding="utf-8")
+    done = _run("render", path, "--out", tmp_path / "out")
+    assert done.exit_code == 3
+    assert found in done.stderr
+    assert not (tmp_path / "out").exists()
+
+
+@pytest.mark.parametrize(
+    "words",
+    ["--unit eV", "--columns cyle", "--construct-columns x", "--group x", "--digits 3"],
+)
+def test_render_refuses_unknown_choices(computed: Path, tmp_path: Path, words: str) -> None:
+    done = _run("render", computed / "result.json", "--out", tmp_path / "out", *words.split())
+    assert done.exit_code == 2
+    assert "is not known" in done.stderr
+    assert not (tmp_path / "out").exists()
+
+
+def test_render_keeps_an_existing_folder(computed: Path) -> None:
+    before = _contents(computed)
+    done = _run("render", computed / "result.json", "--out", computed)
+    assert done.exit_code == 2
+    assert "use --force" in done.stderr
+    assert _run("render", computed / "result.json", "--out", computed, "--force").exit_code == 0
+    assert _contents(computed) == before
 
 
 def test_refused_data_exit_3_and_write_nothing(tmp_path: Path) -> None:
@@ -143,7 +234,7 @@ def test_path_that_does_not_exist_is_refused() -> None:
     assert "no-such-folder" in done.stderr
 
 
-@pytest.mark.parametrize("command", [[], ["new"], ["check"], ["couple"]])
+@pytest.mark.parametrize("command", [[], ["new"], ["check"], ["couple"], ["render"]])
 def test_help_shows_examples_at_80_columns(command: list[str]) -> None:
     done = _run(*command, "--help")
     assert done.exit_code == 0
@@ -213,5 +304,8 @@ def test_figures_need_a_folder_and_are_counted(tmp_path: Path) -> None:
     done = _run("couple", tmp_path / "trial", "--out", tmp_path / "out", "--figures")
     assert done.exit_code == 0
     files = [path for path in (tmp_path / "out" / "figures").rglob("*") if path.is_file()]
-    assert f"{len(files)} files in figures into" in done.stderr
+    assert f"{len(files)} files in figures" in done.stderr
+    again = _run("render", tmp_path / "out" / "result.json", "--out", tmp_path / "again", "--figures")
+    assert again.exit_code == 0
+    assert _contents(tmp_path / "again") == _contents(tmp_path / "out")
     assert {path.suffix for path in files} == {".svg", ".pdf", ".png"}

@@ -5,8 +5,7 @@ from pathlib import Path
 import pytest
 
 import cornerwise
-from cornerwise.render.report.views import typeset
-from cornerwise.render.rounding import span, with_uncertainty
+from cornerwise.render.rounding import span, typeset, with_uncertainty
 from cornerwise.result import Result
 
 ROOT = Path(__file__).parents[1]

@@ -3,6 +3,7 @@
 import re
 from importlib import resources
 from pathlib import Path
+from types import ModuleType
 
 import pytest
 
@@ -10,6 +11,10 @@ from cornerwise.campaign import Settings
 from cornerwise.intake import charges, curves, medians, openings
 from cornerwise.intake.settings import KEYS, SECTIONS
 from cornerwise.render.legend import setting_values
+from cornerwise.render.manuscript import constructs, couplings
+from cornerwise.render.manuscript.options import GROUPINGS
+from cornerwise.render.rounding import DIGIT_RULES
+from cornerwise.units import ENERGY_UNITS
 
 PAGE = (Path(__file__).parents[1] / "docs" / "formats.md").read_text(encoding="utf-8")
 
@@ -47,3 +52,23 @@ def test_every_column_is_named(table: str, fields: tuple) -> None:
     documented = set(re.findall(r"`(\w+)`", row.split("|")[2]))
     known = {header for field in fields for header in field.headers}
     assert documented == known | (documented & {"n", "citation"})
+
+
+@pytest.mark.parametrize(
+    ("start", "module"),
+    [("Columns of the coupling table", couplings), ("Columns of the construct table", constructs)],
+)
+def test_every_column_of_a_manuscript_table_is_named(start: str, module: ModuleType) -> None:
+    part = PAGE.partition(start)[2].partition("\n\nColumns")[0]
+    documented = re.findall(r"^\| `(\w+)`( \*)? \|", part, flags=re.MULTILINE)
+    assert [key for key, _ in documented] == [recipe.key for recipe in module.RECIPES]
+    assert {key for key, usual in documented if usual} == set(module.USUAL)
+
+
+def test_every_choice_of_a_manuscript_table_is_named() -> None:
+    (group,) = [line for line in PAGE.splitlines() if line.startswith("| `--group`")]
+    assert re.findall(r"`(\w+)`", group.split("|")[2]) == list(GROUPINGS)
+    (digits,) = [line for line in PAGE.splitlines() if line.startswith("| `--digits`")]
+    assert re.findall(r"`([\w-]+)`", digits.split("|")[2]) == list(DIGIT_RULES)
+    (unit,) = [line for line in PAGE.splitlines() if line.startswith("| `--unit`")]
+    assert re.findall(r"`([\w/]+)`", unit.split("|")[2]) == list(ENERGY_UNITS)

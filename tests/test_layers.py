@@ -28,6 +28,7 @@ FLOORS = [
     {"charge_trace"},
     {"construct_rows", "interaction_rows", "backgrounds"},
     {"coupling", "surveying"},
+    {"unit_change"},
     {"intake", "render", "starter"},
     {"cli"},
     {"__main__"},
@@ -36,7 +37,8 @@ FLOOR_OF = {room: floor for floor, rooms in enumerate(FLOORS) for room in rooms}
 
 ALLOWED = {
     "pandas": {"intake", "result", "tables"},  # the result only for to_frame, on demand
-    "openpyxl": {"intake"},
+    "openpyxl": {"intake", "render"},
+    "docx": {"render"},
     "rich": {"render"},
     "typer": {"cli"},
     "statsmodels": {"intervals"},  # on demand

@@ -3,6 +3,7 @@
 ``read`` turns a campaign folder or workbook into a `Campaign`, ``couple`` computes the interaction energy
 of every cycle with its uncertainty, ``survey`` judges the data without computing an energy. ``read_model``
 reads a gating model, ``simulate`` draws a campaign from it and ``truth_of`` says what is true of that.
+``output_files`` gives the files of a result, ``read_result`` a result from its ``result.json``.
 """
 
 from importlib import import_module
@@ -15,9 +16,13 @@ if TYPE_CHECKING:
     from .intake import read
     from .intake.model import read_model
     from .render.explanation import explain
+    from .render.files import output_files, write_folder
+    from .render.manuscript.options import TableOptions
     from .result import Result
+    from .result_reading import read_result
     from .simulation import simulate, truth_of
     from .surveying import Survey, survey
+    from .unit_change import in_unit
 
 __all__ = [
     "Campaign",
@@ -25,14 +30,19 @@ __all__ = [
     "DataRefused",
     "Result",
     "Survey",
+    "TableOptions",
     "UsageError",
     "couple",
     "explain",
+    "in_unit",
+    "output_files",
     "read",
     "read_model",
+    "read_result",
     "simulate",
     "survey",
     "truth_of",
+    "write_folder",
 ]
 
 _ROOM_OF = {
@@ -41,14 +51,19 @@ _ROOM_OF = {
     "DataRefused": "errors",
     "Result": "result",
     "Survey": "surveying",
+    "TableOptions": "render.manuscript.options",
     "UsageError": "errors",
     "couple": "coupling",
     "explain": "render.explanation",
+    "in_unit": "unit_change",
+    "output_files": "render.files",
     "read": "intake",
     "read_model": "intake.model",
+    "read_result": "result_reading",
     "simulate": "simulation",
     "survey": "surveying",
     "truth_of": "simulation",
+    "write_folder": "render.files",
 }
 
 

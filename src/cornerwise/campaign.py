@@ -12,7 +12,7 @@ from numpy.typing import NDArray
 from .errors import Origin
 from .intervals import Adjustment
 from .mutations import Cycle, CycleRequest, Mutation
-from .units import EnergyUnit, convert_energy
+from .units import EnergyNumber, EnergyUnit, convert_energy
 
 FloatArray = NDArray[np.float64]
 
@@ -120,8 +120,8 @@ class Settings:
     confidence: float = 0.95
     replicates: int = 10_000
     seed: int = 1
-    threshold: float | None = None  # energy_unit; None: 1 kcal/mol
-    shortcut_tolerance: float | None = None  # energy_unit; None: 0.5 kcal/mol
+    threshold: EnergyNumber | None = None  # energy_unit; None: 1 kcal/mol
+    shortcut_tolerance: EnergyNumber | None = None  # energy_unit; None: 0.5 kcal/mol
     charge_margin: float = 0.10  # fraction of the wild type's total charge
     voltage_offset_mv: float = 0.0  # standard uncertainty of an offset common to all curves
     reference_voltage_mv: float = 0.0  # voltage at which energies are given

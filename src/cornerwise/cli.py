@@ -17,7 +17,7 @@ from typer.core import TyperGroup
 from .errors import CornerwiseError, DataRefused, UsageError
 
 if TYPE_CHECKING:
-    from .result import Result
+    pass
 
 _PATIENCE_S = 1.0
 
@@ -93,18 +93,6 @@ def _listed(files: Iterable[str]) -> str:
     return ", ".join(
         [name for name in names if "/" not in name] + [f"{n} files in {d}" for d, n in below.items()]
     )
-
-
-def _rendered(result: Result, *, figures: bool) -> dict[str, str | bytes]:
-    """Everything that ``--out`` writes of a result."""
-    from .render.files import result_files
-
-    files: dict[str, str | bytes] = {**result_files(result, cycle_figures=figures or None)}
-    if figures:
-        from .render.figures.files import figure_files
-
-        files |= figure_files(result, _progress())
-    return files
 
 
 def _version(asked: bool) -> None:
@@ -223,7 +211,7 @@ def couple(
     path: _Campaign,
     out: Annotated[
         Path | None,
-        typer.Option(metavar="DIR", help="Write result.json, the CSV tables and report.html into DIR."),
+        typer.Option(metavar="DIR", help="Write result.json and everything made of it into DIR."),
     ] = None,
     figures: Annotated[
         bool, typer.Option("--figures", help="With --out: draw all figures too, SVG, PDF and PNG.")
@@ -233,8 +221,8 @@ def couple(
 ) -> None:
     """Compute the interaction energies of all cycles.
 
-    Prints the coupling table; with --out also writes result.json, the CSV tables and a report in one HTML
-    file, and with --figures the figures at journal widths.
+    Prints the coupling table; with --out also writes result.json, the CSV tables, a report in one HTML
+    file and tables for a manuscript, and with --figures the figures at journal widths.
 
     \b
     For example:
@@ -243,7 +231,7 @@ def couple(
       cornerwise couple trial.xlsx --json > result.json
     """  # noqa: D301
     from . import couple as run
-    from . import read
+    from . import output_files, read
     from .render.terminal import print_result
 
     if figures and out is None:
@@ -251,11 +239,59 @@ def couple(
     _expect_room(out, force=force)
     result = run(read(path), _progress())
     if out is not None:  # before the table is printed: the reader of a pipe may go away
-        _write(_rendered(result, figures=figures), out, force=force)
+        _write(output_files(result, figures=figures, progress=_progress()), out, force=force)
     if as_json:
         print(result.to_json(), end="")
     else:
         print_result(result, sys.stdout)
+
+
+@app.command()
+def render(  # noqa: PLR0913 - one parameter an option
+    path: Annotated[Path, typer.Argument(metavar="RESULT.json", help="A result.json that couple wrote.")],
+    out: Annotated[Path, typer.Option(metavar="DIR", help="Folder to write into.")],
+    unit: Annotated[
+        str | None, typer.Option(metavar="UNIT", help="Energies in kcal/mol, kJ/mol, kT or meV.")
+    ] = None,
+    columns: Annotated[
+        str, typer.Option(metavar="A,B,C", help="Columns of the coupling table, in this order.")
+    ] = "",
+    construct_columns: Annotated[
+        str, typer.Option(metavar="A,B,C", help="Columns of the construct table, in this order.")
+    ] = "",
+    group: Annotated[
+        str, typer.Option(metavar="HOW", help="Group the rows of the tables: none, pair or construct.")
+    ] = "none",
+    digits: Annotated[
+        str, typer.Option(metavar="HOW", help="Digits of an uncertainty: two, or one-or-two.")
+    ] = "two",
+    figures: Annotated[
+        bool, typer.Option("--figures", help="Draw all figures too, SVG, PDF and PNG.")
+    ] = False,
+    force: _Force = False,
+) -> None:
+    """Write again what couple --out wrote, without computing.
+
+    Takes other columns, groups, digits or units for the tables; result.json stays as it was computed.
+
+    \b
+    For example:
+      cornerwise render results/result.json --out again
+      cornerwise render results/result.json --out si --unit kJ/mol
+      cornerwise render results/result.json --out si --columns cycle,interaction
+    """  # noqa: D301
+    from . import TableOptions, output_files, read_result
+
+    _expect_room(out, force=force)
+    options = TableOptions(
+        columns=_named(columns), construct_columns=_named(construct_columns), group=group, digits=digits
+    )
+    files = output_files(read_result(path), tables=options, unit=unit, figures=figures, progress=_progress())
+    _write(files, out, force=force)
+
+
+def _named(columns: str) -> list[str]:
+    return [name.strip() for name in columns.split(",") if name.strip()]
 
 
 @app.command()

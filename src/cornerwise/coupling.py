@@ -62,8 +62,19 @@ def _units_notes(
     )
 
 
-def _ranking_notes(interactions: Sequence[InteractionRow]) -> tuple[str, ...]:
-    """A warning that the top of a ranking is too good to be true, where shrunken estimates tell."""
+def ranking_notes(interactions: Sequence[InteractionRow]) -> tuple[str, ...]:
+    """A warning that the top of a ranking is too good to be true, where shrunken estimates tell.
+
+    Parameters
+    ----------
+    interactions : sequence of InteractionRow
+        Every cycle.
+
+    Returns
+    -------
+    tuple of str
+        One sentence or none.
+    """
     first = [row for row in interactions if row.rank == 1]
     ranked = sum(row.rank is not None for row in interactions)
     if not first or first[0].interaction is None or first[0].shrunken is None:
@@ -125,7 +136,7 @@ def couple(campaign: Campaign, progress: Progress | None = None) -> Result:
         notes=(
             *_notes(measured, settings),
             *_units_notes(interactions, list(rows.values())),
-            *_ranking_notes(interactions),
+            *ranking_notes(interactions),
         ),
         inputs=campaign.inputs,
         versions=_versions(),

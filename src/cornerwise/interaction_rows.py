@@ -58,12 +58,33 @@ def _nonadditive(interaction: Interaction, limits: Interval, per_e0_mv: float, u
     if interaction.charge is None or not limits.excludes(0.0):
         return ()
     j, name = interaction.charge.value, interaction.cycle.name
-    message = (
-        f"the total charges around {name} do not add up (J = {j:+.2f} e0, interval {limits.low:.2f} to "
-        f"{limits.high:.2f}): its interaction energy changes by {-10 * per_e0_mv * j:+.2g} {unit} for every "
+    message = charges_that_do_not_add_up(name, j, limits, -10 * per_e0_mv * j, unit)
+    return (Flag(code="charge-nonadditive", subject=name, message=message, value=j, limit=0.0),)
+
+
+def charges_that_do_not_add_up(
+    cycle: str, j_e0: float, limits: Interval, change_per_10_mv: float, unit: str
+) -> str:
+    """Sentence of the flag ``charge-nonadditive``.
+
+    Parameters
+    ----------
+    cycle : str
+        Its name.
+    j_e0 : float
+        Charge interaction, e0.
+    limits : Interval
+        Of the charge interaction.
+    change_per_10_mv : float
+        Of the interaction energy, in `unit`.
+    unit : str
+        Energy unit.
+    """
+    return (
+        f"the total charges around {cycle} do not add up (J = {j_e0:+.2f} e0, interval {limits.low:.2f} to "
+        f"{limits.high:.2f}): its interaction energy changes by {change_per_10_mv:+.2g} {unit} for every "
         "+10 mV and a common voltage error does not cancel; state the voltage beside the energy"
     )
-    return (Flag(code="charge-nonadditive", subject=name, message=message, value=j, limit=0.0),)
 
 
 def _charge_trace(one: Estimate, corners: Corners) -> tuple[CornerCharge, ...]:

@@ -13,6 +13,7 @@ from .flags import Flag
 from .median import CellReading, read_construct
 from .quantities import Quantity, Sample, Summary
 
+SET_ASIDE = "set aside by the user: "  # how the reason of such a cell begins
 FEWEST_CELLS = 4
 # Corners measured over ranges that differ by more than this are flagged: 20 mV is two of the usual steps.
 RANGE_DIFFERENCE_MV = 20.0
@@ -95,7 +96,7 @@ def _readings(
     for curve in curves:
         if curve.cell in set_aside:
             (alone,) = read_construct([curve], correct_sloping_plateaus=correct)
-            reason = f"set aside by the user: {set_aside[curve.cell]}"
+            reason = f"{SET_ASIDE}{set_aside[curve.cell]}"
             readings.append(replace(_marked(alone), used=False, reason=reason))
     return tuple(sorted(readings, key=lambda reading: reading.cell))
 

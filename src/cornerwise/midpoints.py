@@ -72,11 +72,7 @@ def _misleads(
     limit = settings.energy_tolerance
     if not abs(difference) > limit:
         return ()
-    message = (
-        f"the midpoint of {label} (q = 0.5) lies {shift:+.1f} mV from its median voltage, {difference:+.2g} "
-        f"{settings.energy_unit} as an energy and more than the tolerance of {limit:.2g}: its curve is not "
-        "symmetric; do not compare midpoints"
-    )
+    message = misleading_midpoint(label, shift, difference, limit, settings.energy_unit)
     return (
         Flag(
             code="midpoint-misleads",
@@ -86,4 +82,25 @@ def _misleads(
             value=difference,
             limit=limit,
         ),
+    )
+
+
+def misleading_midpoint(label: str, shift_mv: float, difference: float, limit: float, unit: str) -> str:
+    """Sentence of the flag ``midpoint-misleads``.
+
+    Parameters
+    ----------
+    label : str
+        The construct.
+    shift_mv : float
+        Midpoint less median voltage, mV.
+    difference, limit : float
+        What the shift is worth as an energy, and the tolerance, in `unit`.
+    unit : str
+        Energy unit.
+    """
+    return (
+        f"the midpoint of {label} (q = 0.5) lies {shift_mv:+.1f} mV from its median voltage, "
+        f"{difference:+.2g} {unit} as an energy and more than the tolerance of {limit:.2g}: its curve is not "
+        "symmetric; do not compare midpoints"
     )

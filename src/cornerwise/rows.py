@@ -8,6 +8,7 @@ from typing import ClassVar
 from .batches import Units
 from .mutations import OppositeCharges
 from .tables import Value, flat_values
+from .units import EnergyNumber
 from .verdicts import ChargeVerdict, Favours, InteractionVerdict, ShortcutVerdict
 
 
@@ -47,9 +48,9 @@ class ProfilePoint:
     """Interaction energy at one voltage, in the row's unit."""
 
     voltage_mv: float
-    interaction: float
-    low: float | None
-    high: float | None
+    interaction: EnergyNumber
+    low: EnergyNumber | None
+    high: EnergyNumber | None
 
 
 @dataclass(frozen=True, kw_only=True, slots=True)
@@ -59,8 +60,8 @@ class Edge:
     start: str  # construct without the mutation
     end: str  # construct with it
     mutation: str
-    difference: float | None  # dG(end) - dG(start), in the row's unit
-    std_uncertainty: float | None  # what both corners share counted once
+    difference: EnergyNumber | None  # dG(end) - dG(start), in the row's unit
+    std_uncertainty: EnergyNumber | None  # what both corners share counted once
 
 
 @dataclass(frozen=True, kw_only=True, slots=True)
@@ -80,22 +81,22 @@ class InteractionRow:
     mutations: tuple[str, ...]
     wild_type: str
     corners: tuple[tuple[str, int], ...]  # label and sign
-    interaction: float | None
+    interaction: EnergyNumber | None
     energy_unit: str
-    std_uncertainty: float | None
+    std_uncertainty: EnergyNumber | None
     dof: float | None
-    low: float | None
-    high: float | None
-    boot_low: float | None
-    boot_high: float | None
-    monte_carlo_low: float | None  # from Student's t distributions of the inputs, where asked for
-    monte_carlo_high: float | None
+    low: EnergyNumber | None
+    high: EnergyNumber | None
+    boot_low: EnergyNumber | None
+    boot_high: EnergyNumber | None
+    monte_carlo_low: EnergyNumber | None  # from Student's t distributions of the inputs, where asked for
+    monte_carlo_high: EnergyNumber | None
     p_value: float | None
     p_adjusted: float | None
-    shortcut: float | None
-    shortcut_bias: float | None
-    shortcut_bias_low: float | None
-    shortcut_bias_high: float | None
+    shortcut: EnergyNumber | None
+    shortcut_bias: EnergyNumber | None
+    shortcut_bias_low: EnergyNumber | None
+    shortcut_bias_high: EnergyNumber | None
     shortcut_verdict: ShortcutVerdict
     charge_interaction_e0: float | None
     charge_interaction_low: float | None
@@ -105,22 +106,22 @@ class InteractionRow:
     rank: int | None
     rank_low: int | None
     rank_high: int | None
-    strength_low: float | None  # lower limit of the absolute size; 0 where the interval includes 0
+    strength_low: EnergyNumber | None  # lower limit of the absolute size; 0 where the interval includes 0
     first_probability: float | None  # of being among the first, as many as the settings say
-    shrunken: float | None  # the interaction less what chance is likely to have added
-    simultaneous_low: float | None  # of the interval that holds all cycles at once, where asked for
-    simultaneous_high: float | None
+    shrunken: EnergyNumber | None  # the interaction less what chance is likely to have added
+    simultaneous_low: EnergyNumber | None  # of the interval that holds all cycles at once, where asked for
+    simultaneous_high: EnergyNumber | None
     opposite_charges: OppositeCharges | None  # of the native pair
     distance_angstrom: float | None  # between the pair's side chains, where stated
     flags: tuple[str, ...]
     corner_charges: tuple[CornerCharge, ...]  # of the mutants
     passing_margin: float | None  # smallest charge margin that all mutants pass
-    passing_tolerance: float | None  # smallest tolerance that holds the bias's interval
+    passing_tolerance: EnergyNumber | None  # smallest tolerance that holds the bias's interval
     charge_cells_needed: int | None  # charge values a construct for a verdict on every mutant
-    change_per_10_mv: float | None  # of the interaction
-    change_per_10_mv_low: float | None
-    change_per_10_mv_high: float | None
-    offset_contribution: float | None  # standard uncertainty from the stated voltage offset
+    change_per_10_mv: EnergyNumber | None  # of the interaction
+    change_per_10_mv_low: EnergyNumber | None
+    change_per_10_mv_high: EnergyNumber | None
+    offset_contribution: EnergyNumber | None  # standard uncertainty from the stated voltage offset
     breakdown: tuple[Breakdown, ...]  # where a charge is assumed and the verdict says more than unresolved
     profile: tuple[ProfilePoint, ...]  # where the charges do not add up
     units: tuple[Units, ...]  # what was counted in each family of cells: cells, or batches, and why
@@ -143,15 +144,15 @@ class RankRow:
 
     rank: int
     cycle: str
-    interaction: float | None
+    interaction: EnergyNumber | None
     energy_unit: str
-    low: float | None
-    high: float | None
-    strength_low: float | None
+    low: EnergyNumber | None
+    high: EnergyNumber | None
+    strength_low: EnergyNumber | None
     rank_low: int | None
     rank_high: int | None
     first_probability: float | None
-    shrunken: float | None
+    shrunken: EnergyNumber | None
     p_adjusted: float | None
     interaction_verdict: InteractionVerdict
     opposite_charges: OppositeCharges | None
@@ -175,12 +176,12 @@ class BackgroundRow:
     mutations: tuple[str, ...]  # that interact
     background: tuple[str, ...]  # that every corner carries; empty for the wild type
     order: int
-    interaction: float | None
+    interaction: EnergyNumber | None
     energy_unit: str
-    std_uncertainty: float | None
+    std_uncertainty: EnergyNumber | None
     dof: float | None
-    low: float | None
-    high: float | None
+    low: EnergyNumber | None
+    high: EnergyNumber | None
     p_value: float | None  # not adjusted
 
     def cells(self) -> tuple[Value, ...]:
@@ -207,12 +208,12 @@ class ConstructRow:
     charge_sem_e0: float | None
     charge_n: int | None
     charge_source: str
-    energy: float | None
+    energy: EnergyNumber | None
     energy_unit: str
-    std_uncertainty: float | None
+    std_uncertainty: EnergyNumber | None
     dof: float | None
-    low: float | None
-    high: float | None
+    low: EnergyNumber | None
+    high: EnergyNumber | None
     charge_ratio: float | None
     charge_ratio_low: float | None
     charge_ratio_high: float | None
@@ -220,10 +221,10 @@ class ConstructRow:
     charge_passing_margin: float | None  # smallest margin within which the charge counts as equal
     charge_cells_needed: int | None  # values on mutant and wild type each for a verdict at this scatter
     midpoint_mv: float | None  # mean over cells of the voltage where q = 0.5
-    midpoint_energy: float | None  # the same charge times the midpoint
+    midpoint_energy: EnergyNumber | None  # the same charge times the midpoint
     sigmoid_midpoint_mv: float | None  # of one sigmoid fitted to each cell
     slope_charge_e0: float | None  # apparent charge from that sigmoid's slope
-    sigmoid_energy: float | None  # apparent charge times that midpoint
+    sigmoid_energy: EnergyNumber | None  # apparent charge times that midpoint
     flags: tuple[str, ...]
     units: tuple[Units, ...]  # what its energy's uncertainty counts in each family of cells
     curve: DrawnCurve | None  # averaged over the cells that are used; None without curves
@@ -245,11 +246,11 @@ class SubunitRow:
 
     cycle: str
     subunits: int
-    interaction_per_channel: float | None
-    interaction_per_subunit: float | None
-    std_uncertainty_per_subunit: float | None
-    low_per_subunit: float | None
-    high_per_subunit: float | None
+    interaction_per_channel: EnergyNumber | None
+    interaction_per_subunit: EnergyNumber | None
+    std_uncertainty_per_subunit: EnergyNumber | None
+    low_per_subunit: EnergyNumber | None
+    high_per_subunit: EnergyNumber | None
     energy_unit: str
 
     def cells(self) -> tuple[Value, ...]:
@@ -268,13 +269,13 @@ class MidpointRow:
 
     construct: str
     median_mv: float | None
-    energy: float | None
+    energy: EnergyNumber | None
     energy_unit: str
     midpoint_mv: float | None
-    midpoint_energy: float | None
+    midpoint_energy: EnergyNumber | None
     sigmoid_midpoint_mv: float | None
     slope_charge_e0: float | None
-    sigmoid_energy: float | None
+    sigmoid_energy: EnergyNumber | None
 
     def cells(self) -> tuple[Value, ...]:
         """Values in the order of `columns`."""
@@ -318,7 +319,7 @@ class BudgetRow:
 
     cycle: str
     source: str
-    contribution: float | None
+    contribution: EnergyNumber | None
     share: float | None
 
     def cells(self) -> tuple[Value, ...]:

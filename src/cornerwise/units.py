@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from typing import Literal, get_args
+from typing import Annotated, Literal, get_args
 
 from scipy import constants
 
@@ -11,6 +11,9 @@ EnergyUnit = Literal["kcal/mol", "kJ/mol", "kT", "meV"]
 ChargeUnit = Literal["fC", "pC", "nC"]
 
 ENERGY_UNITS: tuple[EnergyUnit, ...] = get_args(EnergyUnit)
+
+ENERGY = "energy"
+EnergyNumber = Annotated[float, ENERGY]  # a field in the campaign's unit: what changes when the unit does
 
 FARADAY_C_PER_MOL = constants.value("Faraday constant")
 JOULE_PER_CALORIE = constants.calorie_th

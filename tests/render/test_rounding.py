@@ -12,7 +12,9 @@ from cornerwise.render import rounding
         (1.23456, 0.0994, "1.235 ± 0.099"),
         (-44.29, 1.24, "-44.3 ± 1.2"),
         (1234.5, 9.96, "1234 ± 10"),
-        (1234.6, 99.96, "1235 ± 100"),
+        (1234.6, 99.96, "1230 ± 100"),
+        (-52.4, 194.9, "-50 ± 190"),
+        (-4.9, 194.9, "0 ± 190"),
         (3.14159, None, "3.142"),
         (3.14159, 0.0, "3.142"),
         (None, 0.5, ""),
@@ -30,3 +32,36 @@ def test_interval_has_the_decimals_of_the_uncertainty() -> None:
 def test_halves_are_never_rounded_twice() -> None:
     # 0.2449 rounds to 0.24; by way of 0.245 it would become 0.25.
     assert rounding.number(0.2449, 2) == "0.24"
+
+
+# Worked examples of the Particle Data Group's rule (Review of Particle Physics, introduction, section on
+# rounding), from memory: 0.827 ± 0.119 and 0.827 ± 0.367; the others follow from its words.
+@pytest.mark.parametrize(
+    ("value", "uncertainty", "expected"),
+    [
+        (0.827, 0.119, "0.83 ± 0.12"),
+        (0.827, 0.367, "0.8 ± 0.4"),
+        (0.827, 0.1, "0.83 ± 0.10"),
+        (0.827, 0.354, "0.83 ± 0.35"),
+        (0.827, 0.355, "0.8 ± 0.4"),
+        (0.827, 0.949, "0.8 ± 0.9"),
+        (0.827, 0.951, "0.8 ± 1.0"),
+        (0.827, 0.0962, "0.83 ± 0.10"),
+        (827.0, 119.0, "830 ± 120"),
+        (827.0, 367.0, "800 ± 400"),
+        (827.0, 962.0, "800 ± 1000"),
+        (0.827, None, "0.827"),
+        (0.827, 0.0, "0.827"),
+    ],
+)
+def test_one_or_two_digits(value: float, uncertainty: float | None, expected: str) -> None:
+    rule = rounding.decimals_of_one_or_two_digits
+    assert rounding.with_uncertainty(value, uncertainty, decimals=rule) == expected
+
+
+@pytest.mark.parametrize(
+    ("p", "expected"),
+    [(None, ""), (3e-9, "< 0.0001"), (1.04e-4, "0.0001"), (0.0123, "0.012"), (0.0996, "0.1"), (1.0, "1.00")],
+)
+def test_p_values(p: float | None, expected: str) -> None:
+    assert rounding.p_words(p) == expected

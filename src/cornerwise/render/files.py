@@ -4,11 +4,18 @@ from __future__ import annotations
 
 import shutil
 import tempfile
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping
 from pathlib import Path
+from typing import TYPE_CHECKING
 
 from ..errors import UsageError
 from ..result import Result, Row, Table
+from ..unit_change import in_unit
+
+if TYPE_CHECKING:
+    from .manuscript.options import TableOptions
+
+Progress = Callable[[str, int, int], None]
 
 
 def check_destination(folder: Path, *, force: bool) -> None:
@@ -33,7 +40,7 @@ def _csv(table: Table[Row]) -> str:
 
 
 def result_files(result: Result, *, cycle_figures: bool | None = None) -> dict[str, str]:
-    """Name and text of every file of a result but the figures; those are `figures.files.figure_files`.
+    """Name and text of a result's data files and of its report.
 
     Parameters
     ----------
@@ -59,6 +66,52 @@ def result_files(result: Result, *, cycle_figures: bool | None = None) -> dict[s
         **{name: _csv(table) for name, table in some.items() if len(table)},
         "report.html": report_html(result, cycle_figures=cycle_figures),
     }
+
+
+def output_files(
+    result: Result,
+    *,
+    tables: TableOptions | None = None,
+    unit: str | None = None,
+    figures: bool = False,
+    progress: Progress | None = None,
+) -> dict[str, str | bytes]:
+    """Every file that ``--out`` writes, from a result alone.
+
+    Parameters
+    ----------
+    result : Result
+        What `cornerwise.couple` or `cornerwise.read_result` returned.
+    tables : TableOptions, optional
+        Columns, grouping and digits of the manuscript's tables.
+    unit : {"kcal/mol", "kJ/mol", "kT", "meV"}, optional
+        Energy unit of every file but ``result.json``, which stays as it was computed; None for the result's.
+    figures : bool, optional
+        Draw all figures too, and every cycle's in the report.
+    progress : callable, optional
+        Called with a step's name, how much of it is done and how much there is.
+
+    Returns
+    -------
+    dict of str to str or bytes
+        Path below the folder to contents, for `write_folder`; the same bytes for the same result and
+        choices.
+
+    Raises
+    ------
+    UsageError
+        If a column or the unit is unknown.
+    """
+    from .manuscript.files import table_files
+
+    shown = result if unit is None else in_unit(result, unit)
+    files: dict[str, str | bytes] = {**table_files(shown, tables)}
+    files = {**result_files(shown, cycle_figures=figures or None), "result.json": result.to_json(), **files}
+    if figures:
+        from .figures.files import figure_files
+
+        files |= figure_files(shown, progress)
+    return files
 
 
 def write_folder(files: Mapping[str, str | bytes], folder: Path, *, force: bool = False) -> None:

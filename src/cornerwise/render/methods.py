@@ -3,9 +3,10 @@
 from __future__ import annotations
 
 from collections import Counter
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 
 from ..campaign import StatedCharge
+from ..intervals import Adjustment
 from ..result import Result
 from ..units import energy_per_e0_mv
 from .legend import FORMULA, percent, sign_sentences
@@ -116,10 +117,11 @@ def _data(result: Result, cited: _Cited) -> str:
             f"Median voltages of {counted(len(summarised), 'construct')} entered as mean, standard error and "
             "number of cells."
         )
-    return " ".join([*sentences, _charge(result)])
+    return " ".join([*sentences, charge_sentence(result)])
 
 
-def _charge(result: Result) -> str:
+def charge_sentence(result: Result) -> str:
+    """Whose total charge the energies were formed with."""
     charge = result.settings.charge
     if isinstance(charge, StatedCharge):
         stated = with_uncertainty(charge.value_e0, charge.sem_e0)
@@ -188,10 +190,10 @@ def _uncertainty(result: Result, cited: _Cited) -> str:
             "Verdicts go by intervals from a Monte Carlo propagation of Student's t distributions "
             f"{cited('monte carlo')}. "
         )
-    return f"{text}{_batches(result)}{_many(result, cited)}"
+    return f"{text}{batch_sentence(result)}{_many(result, cited)}"
 
 
-def _batches(result: Result) -> str:
+def batch_sentence(result: Result) -> str:
     """How many cycles count batches rather than cells."""
     ruled = {
         "within batches": "constructs that share their batches were compared within batches",
@@ -206,15 +208,18 @@ def _batches(result: Result) -> str:
     return f"{sentence[0].upper()}{sentence[1:]}. " if sentence else ""
 
 
+# Name of a method of adjusting p values, and the reference it has.
+ADJUSTMENTS: Mapping[Adjustment, tuple[str, str]] = {
+    "holm": ("Holm's method", "holm"),
+    "benjamini-hochberg": ("the method of Benjamini and Hochberg", "discovery"),
+}
+
+
 def _many(result: Result, cited: _Cited) -> str:
     settings, number = result.settings, len(result.interactions)
     if number < 2:
         return "The p value is two-sided."
-    method = {
-        "holm": ("Holm's method", "holm"),
-        "benjamini-hochberg": ("the method of Benjamini and Hochberg", "discovery"),
-    }
-    name, key = method[settings.adjustment]
+    name, key = ADJUSTMENTS[settings.adjustment]
     order = "absolute size" if settings.rank_by == "estimate" else "the lower limit of the absolute size"
     return (
         f"Two-sided p values were adjusted for {counted(number, 'cycle')} by {name} {cited(key)}. Cycles are "

@@ -2,11 +2,14 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Sequence
+import string
+from collections.abc import Hashable, Iterable, Sequence
 from typing import TypeVar
 
+from ..flags import FLAG_CODES
 from ..result import InteractionRow
 
+KeyT = TypeVar("KeyT", bound=Hashable)
 ItemT = TypeVar("ItemT")
 
 
@@ -15,9 +18,15 @@ def by_strength(rows: Sequence[InteractionRow]) -> list[InteractionRow]:
     return sorted(rows, key=lambda row: (row.rank is None, row.rank or 0))
 
 
-def grouped(pairs: Iterable[tuple[str, ItemT]]) -> dict[str, list[ItemT]]:
+def grouped(pairs: Iterable[tuple[KeyT, ItemT]]) -> dict[KeyT, list[ItemT]]:
     """Items by key, both in the order they come in."""
-    groups: dict[str, list[ItemT]] = {}
+    groups: dict[KeyT, list[ItemT]] = {}
     for key, item in pairs:
         groups.setdefault(key, []).append(item)
     return groups
+
+
+def flag_marks(codes: Iterable[str]) -> dict[str, str]:
+    """A letter for every code that occurs, in the fixed order of the codes."""
+    present = set(codes)
+    return dict(zip((code for code in FLAG_CODES if code in present), string.ascii_lowercase, strict=False))

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import re
-import string
 from collections.abc import Iterator, Sequence
 from contextlib import contextmanager
 from typing import IO
@@ -12,7 +11,7 @@ from rich.console import Console
 from rich.table import Table as Grid
 from rich.text import Text
 
-from ..flags import FLAG_CODES, Flag
+from ..flags import Flag
 from ..result import Result
 from ..surveying import Survey, SurveyRow
 from .legend import (
@@ -24,7 +23,7 @@ from .legend import (
     sign_sentences,
     unit_phrase,
 )
-from .ordering import by_strength
+from .ordering import by_strength, flag_marks
 from .rounding import span, with_uncertainty
 
 _VERDICT_STYLE = {
@@ -88,13 +87,6 @@ def broken(name: str, width: int) -> str:
             lines.append("")
         lines[-1] += part
     return "\n".join(lines)
-
-
-def _marks(flags: Sequence[str]) -> dict[str, str]:
-    """A letter for every code that occurs, in the fixed order of the codes."""
-    letters = [*string.ascii_lowercase]
-    present = [code for code in FLAG_CODES if code in set(flags)]
-    return dict(zip(present, letters, strict=False))
 
 
 def _verdict(word: str) -> Text:
@@ -190,7 +182,7 @@ def print_result(result: Result, stream: IO[str]) -> None:
 
 
 def _show_result(result: Result, screen: Console) -> None:
-    marks = _marks([code for row in result.interactions for code in row.flags])
+    marks = flag_marks([code for row in result.interactions for code in row.flags])
     relevant = _flags_of_cycles(result)
     if result.settings.title:
         screen.print(Text(result.settings.title, style="bold"))
@@ -267,7 +259,7 @@ def _show_cells(screen: Console, survey: Survey, marks: dict[str, str]) -> None:
 
 
 def _show_survey(survey: Survey, screen: Console) -> None:
-    marks = _marks([flag.code for flag in survey.flags])
+    marks = flag_marks([flag.code for flag in survey.flags])
     grid = plain_grid(
         [("construct", False), ("cells", True), ("Vm (mV)", True), ("Q (e0)", True), ("flags", False)]
     )

@@ -14,8 +14,7 @@ from cornerwise.coupling import couple
 from cornerwise.render.explanation import explain
 from cornerwise.render.methods import methods_paragraphs
 from cornerwise.render.report.page import RESEARCH_ONLY, report_html
-from cornerwise.render.report.views import typeset
-from cornerwise.render.rounding import span, with_uncertainty
+from cornerwise.render.rounding import span, typeset, with_uncertainty
 from cornerwise.result import Result
 
 

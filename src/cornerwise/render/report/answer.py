@@ -9,7 +9,8 @@ from ...flags import FLAG_CODES
 from ...result import InteractionRow, Result
 from ..legend import percent
 from ..methods import counted
-from .views import CycleView, typeset
+from ..rounding import typeset
+from .views import CycleView
 
 _MOST = 12  # cycles named in one line
 

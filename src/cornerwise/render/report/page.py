@@ -2,11 +2,7 @@
 
 from __future__ import annotations
 
-import base64
-import hashlib
-from importlib.resources import files
-
-from jinja2 import Environment, PackageLoader, StrictUndefined
+from jinja2 import Environment
 from markupsafe import Markup
 
 from ...result import Result
@@ -15,9 +11,12 @@ from ..figures.style import SINGLE_COLUMN_MM
 from ..figures.vector import svg_inline
 from ..legend import CAUTION, FORMULA, percent, setting_values, sign_sentences, unit_phrase
 from ..methods import figure_legends, methods_paragraphs
+from ..pages import asset, environment, policy
+from ..rounding import typeset
 from .answer import answer
-from .views import FIGURE_TITLES, CycleView, CycleViews, cell_views, construct_view, typeset
+from .views import FIGURE_TITLES, CycleView, CycleViews, cell_views, construct_view
 
+_PACKAGE = "cornerwise.render.report"
 MOST_DRAWN_CYCLES = 60  # beyond it a cycle's figures are left out unless they are asked for
 _MOST_IN_ANSWER = 24  # cycles whose figure still fits beside the answer
 _OVERVIEW_TITLES = {
@@ -49,13 +48,13 @@ def report_html(result: Result, *, cycle_figures: bool | None = None) -> str:
     """
     drawn = len(result.interactions) <= MOST_DRAWN_CYCLES if cycle_figures is None else cycle_figures
     cycles = CycleViews(result, with_figures=drawn).all()
-    style, script = _asset("style.css"), _asset("behaviour.js")
+    style, script = asset(_PACKAGE, "style.css"), asset(_PACKAGE, "behaviour.js")
     paragraphs, references = methods_paragraphs(result)
     overview = _overview(result)
     few = len(result.interactions) <= _MOST_IN_ANSWER
     first = next((sheets[0] for kind, _, sheets in overview if few and kind == "interactions"), None)
     return (
-        _environment()
+        _templates()
         .get_template("report.html")
         .render(
             result=result,
@@ -80,7 +79,7 @@ def report_html(result: Result, *, cycle_figures: bool | None = None) -> str:
             research_only=RESEARCH_ONLY,
             style=Markup(style),
             script=Markup(script),
-            policy=_policy(style, script),
+            policy=policy(style, script),
         )
     )
 
@@ -98,32 +97,10 @@ def _legends(
     ]
 
 
-def _environment() -> Environment:
-    environment = Environment(
-        loader=PackageLoader("cornerwise.render.report"),
-        autoescape=True,
-        undefined=StrictUndefined,
-        trim_blocks=True,
-        lstrip_blocks=True,
-    )
-    environment.filters["typeset"] = typeset
-    return environment
-
-
-def _asset(name: str) -> str:
-    return (files(__package__) / "templates" / name).read_text(encoding="utf-8")
-
-
-def _policy(style: str, script: str) -> str:
-    """Content security policy: this style, this script, no request to anywhere."""
-
-    def digest(text: str) -> str:
-        return base64.b64encode(hashlib.sha256(text.encode("utf-8")).digest()).decode("ascii")
-
-    return (
-        f"default-src 'none'; style-src 'sha256-{digest(style)}'; script-src 'sha256-{digest(script)}'; "
-        "base-uri 'none'; form-action 'none'"
-    )
+def _templates() -> Environment:
+    templates = environment(_PACKAGE)
+    templates.filters["typeset"] = typeset
+    return templates
 
 
 def _overview(result: Result) -> list[tuple[str, str, list[Markup]]]:

@@ -14,7 +14,7 @@ from ..figures.files import CycleFigures
 from ..figures.style import SINGLE_COLUMN_MM
 from ..figures.vector import svg_inline
 from ..ordering import by_strength, grouped
-from ..rounding import decimals_for, number, span, with_uncertainty
+from ..rounding import decimals_for, number, p_words, span, typeset, with_uncertainty
 from .strips import Strips
 
 FIGURE_TITLES = {
@@ -23,21 +23,6 @@ FIGURE_TITLES = {
     "voltage": "At other voltages",
     "budget": "Where the uncertainty comes from",
 }
-
-
-def typeset(text: str) -> str:
-    """Numbers for reading: a true minus sign before a digit and between terms."""
-    return "".join(
-        "−" if sign == "-" and _is_minus(before, after) else sign
-        for before, sign, after in zip(" " + text, text, text[1:] + " ", strict=False)
-    )
-
-
-def _is_minus(before: str, after: str) -> bool:
-    """Whether a hyphen between these two characters is a sign or an operator."""
-    if before == " " and after == " ":
-        return True
-    return after.isdigit() and not (before.isalnum() or before in ")-")
 
 
 @dataclass(frozen=True, kw_only=True, slots=True)
@@ -107,15 +92,6 @@ def _plateaus(cell: CellRow) -> str:
         return ""
     decimals = decimals_for(abs(cell.high_plateau - cell.low_plateau), digits=4)
     return typeset(f"{number(cell.low_plateau, decimals)} to {number(cell.high_plateau, decimals)}")
-
-
-def p_words(p: float | None) -> str:
-    """P value for a table: two digits, very small ones as a limit."""
-    if p is None:
-        return ""
-    if p < 1e-4:
-        return "< 0.0001"
-    return f"{p:.2g}" if p < 0.1 else f"{p:.2f}"
 
 
 def rank_words(row: InteractionRow) -> str:

@@ -1,0 +1,1 @@
+"""Tables for a manuscript: one document model, a writer a format."""

@@ -1,0 +1,188 @@
+"""The supplementary table: every construct's median voltage, total charge and activation free energy."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+from ...result import ConstructRow, Result
+from ..methods import counted as number_of
+from ..ordering import by_strength, flag_marks, grouped
+from .cells import Rounding, counted, flag_letters, freedom, worded
+from .document import Cell, ManuscriptTable
+from .flag_words import flag_notes
+from .notes import construct_notes
+from .options import TableOptions
+from .recipes import ENERGY, LEVEL, Recipe, Shared, chosen, filled_groups
+from .words import Words, words
+
+_Row = ConstructRow
+USUAL = (
+    "construct", "cells", "median", "charge", "charge_cells", "charge_source", "energy", "interval",
+    "charge_ratio", "charge_verdict", "flags",
+)  # fmt: skip
+
+
+def _source(row: _Row, _: Shared) -> Cell:
+    """How the charge was measured; a stated value's citation stands in the footnote."""
+    return Cell(
+        text=worded(row.charge_source.partition(":")[0]).text, values=worded(row.charge_source).values
+    )
+
+
+def _batches(row: _Row, _: Shared) -> Cell:
+    return counted(max((units.batches for units in row.units), default=0) or None)
+
+
+RECIPES: tuple[Recipe[_Row], ...] = (
+    Recipe(
+        key="construct", head="Construct", numeric=False,
+        parts=(("construct", "", "label of the construct"),),
+        fill=lambda row, _: worded(row.construct),
+    ),
+    Recipe(
+        key="mutations", head="Mutations", numeric=False,
+        parts=(("mutations", "", "mutations against the wild type, in residue order"),),
+        fill=lambda row, _: worded("/".join(row.mutations) or None),
+    ),
+    Recipe(
+        key="cells", head="*n*", parts=(("cells", "", "cells behind the median voltage"),),
+        fill=lambda row, _: counted(row.cells_used),
+    ),
+    Recipe(
+        key="batches", head="*N*", parts=(("batches", "", "batches (donors, days) the cells come from"),),
+        fill=_batches,
+    ),
+    Recipe(
+        key="median", head="*V*~m~", unit="mV",
+        parts=(
+            ("median_mV", "mV", "median voltage, mean over cells"),
+            ("median_sem_mV", "mV", "standard error of that mean"),
+        ),
+        fill=lambda row, shared: shared.rounding.measured(row.median_mv, row.median_sem_mv),
+    ),
+    Recipe(
+        key="midpoint", head="*V*~½~", unit="mV",
+        parts=(("midpoint_mV", "mV", "voltage where the scaled curve is 0.5, mean over cells"),),
+        fill=lambda row, shared: shared.rounding.alone(row.midpoint_mv, row.median_sem_mv),
+    ),
+    Recipe(
+        key="charge", head="*Q*", unit="*e*~0~",
+        parts=(
+            ("charge_e0", "e0", "total gating charge per channel that the energy is formed with"),
+            ("charge_sem_e0", "e0", "its standard uncertainty"),
+        ),
+        fill=lambda row, shared: shared.rounding.measured(row.charge_e0, row.charge_sem_e0),
+    ),
+    Recipe(
+        key="charge_cells", head="*n*~Q~", parts=(("charge_n", "", "values behind that charge"),),
+        fill=lambda row, _: counted(row.charge_n),
+    ),
+    Recipe(
+        key="charge_source", head="Source of *Q*", numeric=False,
+        parts=(("charge_source", "", "method, or whose charge was taken"),),
+        fill=_source,
+    ),
+    Recipe(
+        key="energy", head="Δ*G*", unit=ENERGY,
+        parts=(
+            ("energy", ENERGY, "activation free energy, per channel"),
+            ("std_uncertainty", ENERGY, "its standard uncertainty"),
+        ),
+        fill=lambda row, shared: shared.rounding.measured(row.energy, row.std_uncertainty),
+    ),
+    Recipe(
+        key="dof", head="*ν*",
+        parts=(("dof", "", "Welch-Satterthwaite degrees of freedom of that uncertainty"),),
+        fill=lambda row, _: freedom(row.dof),
+    ),
+    Recipe(
+        key="interval", head=LEVEL, unit=ENERGY,
+        parts=(
+            ("low", ENERGY, "lower limit of the interval of the energy"),
+            ("high", ENERGY, "upper limit of the interval of the energy"),
+        ),
+        fill=lambda row, shared: shared.rounding.interval((row.low, row.high), row.std_uncertainty),
+    ),
+    Recipe(
+        key="charge_ratio", head="*Q*/*Q*~wt~",
+        parts=(
+            ("charge_ratio", "", "total charge relative to the wild type's"),
+            ("charge_ratio_low", "", "lower limit of that ratio's interval"),
+            ("charge_ratio_high", "", "upper limit of that ratio's interval"),
+        ),
+        fill=lambda row, shared: shared.rounding.with_limits(
+            row.charge_ratio, (row.charge_ratio_low, row.charge_ratio_high)
+        ),
+    ),
+    Recipe(
+        key="charge_verdict", head="Charge", numeric=False,
+        parts=(("charge_verdict", "", "equal, changed, unresolved or assumed"),),
+        fill=lambda row, _: worded(row.charge_verdict),
+    ),
+    Recipe(
+        key="flags", head="Flags", numeric=False,
+        parts=(("flags", "", "doubts about the construct or its cells, in words"),),
+        fill=lambda row, shared: flag_letters(row.flags, shared.marks),
+    ),
+)  # fmt: skip
+
+
+def construct_table(result: Result, options: TableOptions) -> ManuscriptTable:
+    """Form the supplementary table of constructs.
+
+    Parameters
+    ----------
+    result : Result
+        In the unit the table shall have.
+    options : TableOptions
+        Columns, grouping and digits.
+
+    Raises
+    ------
+    UsageError
+        If a column is unknown.
+    """
+    recipes = chosen(RECIPES, options.construct_columns, USUAL, "construct table")
+    shared = Shared(
+        settings=result.settings,
+        rounding=Rounding(options.digits),
+        marks=flag_marks(code for row in result.constructs for code in row.flags),
+        constructs={row.construct: row for row in result.constructs},
+    )
+    keys = {recipe.key for recipe in recipes}
+    flags = flag_notes(result.flags, shared.marks, shared.constructs) if "flags" in keys else []
+    return ManuscriptTable(
+        name="constructs",
+        number="S1",
+        title=_title(result),
+        columns=tuple(recipe.column(result.settings) for recipe in recipes),
+        groups=filled_groups(recipes, _groups(result, shared, options.group), shared),
+        notes=(*construct_notes(result, keys), *flags),
+    )
+
+
+def _title(result: Result) -> Words:
+    return words(
+        "Median voltage, total gating charge and activation free energy of {count}.{about}",
+        count=number_of(len(result.constructs), "construct"),
+        about=f" {result.settings.title}." if result.settings.title else "",
+    )
+
+
+_BY_MUTATIONS = ("Wild type", "Single mutants", "Double mutants", "Triple mutants")
+
+
+def _groups(result: Result, shared: Shared, group: str) -> list[tuple[str, Sequence[_Row]]]:
+    if group == "pair":
+        return [
+            (row.cycle, [shared.constructs[label] for label, _ in row.corners])
+            for row in by_strength(result.interactions)
+        ]
+    if group == "construct":
+        return list(grouped((_number_of_mutations(row), row) for row in result.constructs).items())
+    return [("", tuple(result.constructs))]
+
+
+def _number_of_mutations(row: _Row) -> str:
+    number = len(row.mutations)
+    return _BY_MUTATIONS[number] if number < len(_BY_MUTATIONS) else f"Mutants of order {number}"

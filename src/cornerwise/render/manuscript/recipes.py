@@ -1,0 +1,80 @@
+"""How the columns of a table are made, and tables from the columns that were chosen."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Iterable, Mapping, Sequence
+from dataclasses import dataclass
+from typing import Generic, TypeVar
+
+from ...campaign import Settings
+from ...result import ConstructRow
+from ..legend import interval_words
+from .cells import Rounding
+from .document import Cell, Column, Group, Part
+from .options import check_choice
+from .words import words
+
+RowT = TypeVar("RowT")
+ENERGY, LEVEL = "{energy}", "{level}"  # stand for the energy unit and the level of the interval
+
+
+@dataclass(frozen=True, kw_only=True, slots=True)
+class Shared:
+    """What fields need to know beside their row."""
+
+    settings: Settings
+    rounding: Rounding
+    marks: Mapping[str, str]  # letter of each flag that occurs
+    constructs: Mapping[str, ConstructRow]
+
+
+@dataclass(frozen=True, kw_only=True, slots=True)
+class Recipe(Generic[RowT]):
+    """How one column is made from a row."""
+
+    key: str
+    head: str  # in the markup of `words`; ENERGY and LEVEL are filled in
+    unit: str = ""
+    parts: tuple[tuple[str, str, str], ...]  # name, unit and meaning of each value
+    numeric: bool = True
+    fill: Callable[[RowT, Shared], Cell]
+
+    def column(self, settings: Settings) -> Column:
+        """The column's head in a campaign's unit and level."""
+
+        def filled(text: str) -> str:
+            return text.replace(ENERGY, settings.energy_unit).replace(LEVEL, interval_words(settings))
+
+        return Column(
+            key=self.key,
+            head=words(filled(self.head)),
+            unit=words(filled(self.unit)) if self.unit else (),
+            parts=tuple(Part(name=n, unit=filled(u), meaning=filled(m)) for n, u, m in self.parts),
+            numeric=self.numeric,
+        )
+
+
+def chosen(
+    recipes: Sequence[Recipe[RowT]], keys: Sequence[str], usual: Sequence[str], table: str
+) -> list[Recipe[RowT]]:
+    """Recipes of the columns that were asked for, or of the usual ones.
+
+    Raises
+    ------
+    UsageError
+        If a key is unknown or `keys` has one twice.
+    """
+    known = {recipe.key: recipe for recipe in recipes}
+    for key in keys:
+        check_choice(f"column of the {table}", key, known)
+    return [known[key] for key in dict.fromkeys(keys or usual)]
+
+
+def filled_groups(
+    recipes: Sequence[Recipe[RowT]], groups: Iterable[tuple[str, Sequence[RowT]]], shared: Shared
+) -> tuple[Group, ...]:
+    """Groups of rows with their fields made."""
+    return tuple(
+        Group(head=head, rows=tuple(tuple(recipe.fill(row, shared) for recipe in recipes) for row in rows))
+        for head, rows in groups
+    )
