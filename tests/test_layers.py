@@ -23,14 +23,15 @@ FLOORS = [
     {"charge_judgement"},
     {"tables"},
     {"rows", "simulation"},
-    {"result"},
+    {"result", "columns"},
     {"result_reading"},
+    {"result_schema"},
     {"charge_trace"},
     {"construct_rows", "interaction_rows", "backgrounds"},
     {"coupling", "surveying"},
     {"unit_change"},
     {"intake", "render", "starter"},
-    {"cli"},
+    {"cli", "formats"},
     {"__main__"},
 ]
 FLOOR_OF = {room: floor for floor, rooms in enumerate(FLOORS) for room in rooms}

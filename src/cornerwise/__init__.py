@@ -13,6 +13,7 @@ if TYPE_CHECKING:
     from .campaign import Campaign
     from .coupling import couple
     from .errors import CornerwiseError, DataRefused, UsageError
+    from .formats import schemas
     from .intake import read
     from .intake.model import read_model
     from .render.explanation import explain
@@ -39,6 +40,7 @@ __all__ = [
     "read",
     "read_model",
     "read_result",
+    "schemas",
     "simulate",
     "survey",
     "truth_of",
@@ -60,6 +62,7 @@ _ROOM_OF = {
     "read": "intake",
     "read_model": "intake.model",
     "read_result": "result_reading",
+    "schemas": "formats",
     "simulate": "simulation",
     "survey": "surveying",
     "truth_of": "simulation",

@@ -17,13 +17,15 @@ from .result import SCHEMA, Result, checksum
 from .rows import BackgroundRow, BudgetRow, CellRow, ConstructRow, InteractionRow
 from .tables import Row, Table
 
-_TABLES: Mapping[str, type[Row]] = {
+TABLES: Mapping[str, type[Row]] = {
     "interactions": InteractionRow,
     "constructs": ConstructRow,
     "cells": CellRow,
     "budget": BudgetRow,
     "backgrounds": BackgroundRow,
 }
+_OTHERS = ("schema", "settings", "energy_threshold", "energy_tolerance", "background", "flags", "notes",
+           "inputs", "versions")  # fmt: skip
 _AGAIN = "compute the campaign again with cornerwise couple --out"
 
 
@@ -99,7 +101,7 @@ def _result(document: Mapping[str, Any]) -> Result:
     _check_parts(document)
     tables = {
         name: Table(kind, [_build(kind, row, f"{name} {i + 1}") for i, row in enumerate(document[name])])
-        for name, kind in _TABLES.items()
+        for name, kind in TABLES.items()
     }
     return Result(
         settings=_build(Settings, document["settings"], "settings"),
@@ -114,7 +116,11 @@ def _result(document: Mapping[str, Any]) -> Result:
 
 def _check_parts(document: Mapping[str, Any]) -> None:
     """Every part must be there, as a list or an object of texts."""
-    for name in ("background", "flags", "notes", "inputs", *_TABLES):
+    for name in (*(n for n in _OTHERS if n not in document), *(document.keys() - {*_OTHERS, *TABLES})):
+        raise _Misfit(name, document.get(name, "nothing"), "the parts of a result")
+    for name in ("energy_threshold", "energy_tolerance"):
+        _value(float, document[name], name)
+    for name in ("background", "flags", "notes", "inputs", *TABLES):
         if not isinstance(document.get(name), list):
             raise _Misfit(name, document.get(name, "nothing"), "a list")
     for name in ("background", "notes"):

@@ -84,7 +84,12 @@ _FIELD_OF_COLUMN = {
 
 def flat_values(row: Row) -> tuple[Value, ...]:
     """Values of a row in the order of its columns; lists become text."""
-    return tuple(_flat(column, getattr(row, _FIELD_OF_COLUMN.get(column, column))) for column in row.columns)
+    return tuple(_flat(column, getattr(row, field_of_column(column))) for column in row.columns)
+
+
+def field_of_column(column: str) -> str:
+    """Name of the row's field behind a column."""
+    return _FIELD_OF_COLUMN.get(column, column)
 
 
 def _flat(column: str, value: object) -> Value:

@@ -21,10 +21,22 @@ from .table import BoolArray, Table
 FEWEST_CHANNELS = 1
 RAW = "raw charge"
 RAW_UNITS: tuple[ChargeUnit, ...] = ("fC", "pC", "nC")
-CHARGE = Field(base="charge", units=("e0",), values=allowed.number(above=0, most=plausible.CHARGE_LIMIT_E0))
-RAW_CHARGE = Field(base="charge", key=RAW, units=RAW_UNITS, required=False, values=allowed.number(above=0))
-CHANNELS = Field(base="channels", required=False, values=allowed.number(least=FEWEST_CHANNELS))
-CHANNELS_SEM = Field(base="channels_sem", required=False, values=allowed.number(least=0))
+CHARGE = Field(
+    base="charge", units=("e0",), values=allowed.number(above=0, most=plausible.CHARGE_LIMIT_E0),
+    meaning="total charge of one channel",
+)  # fmt: skip
+RAW_CHARGE = Field(
+    base="charge", key=RAW, units=RAW_UNITS, required=False, values=allowed.number(above=0),
+    meaning="charge of the whole cell, which needs its channels",
+)  # fmt: skip
+CHANNELS = Field(
+    base="channels", required=False, values=allowed.number(least=FEWEST_CHANNELS),
+    meaning="number of channels in the cell",
+)  # fmt: skip
+CHANNELS_SEM = Field(
+    base="channels_sem", required=False, values=allowed.number(least=0),
+    meaning="standard uncertainty of the number of channels",
+)  # fmt: skip
 
 _EXPECTED = f"a total charge per channel above 0 and at most {plausible.CHARGE_LIMIT_E0:g} e0"
 

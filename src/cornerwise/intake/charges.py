@@ -44,13 +44,14 @@ from .table import BoolArray, Table, TextArray
 UNNAMED = "measured"
 CITED = "literature"
 
-_METHOD = Field(base="method", required=False, values=allowed.line())
+_METHOD = Field(base="method", required=False, values=allowed.line(), meaning="how it was measured")
 REPLICATE_FIELDS = (
     CONSTRUCT, CELL, BATCH, CHARGE, RAW_CHARGE, CHANNELS, CHANNELS_SEM, _METHOD,
 )  # fmt: skip
 SUMMARY_FIELDS = (
-    CONSTRUCT, CHARGE, Field(base="sem", units=("e0",), values=STANDARD_ERROR), COUNT, _METHOD,
-    Field(base="citation", required=False, values=allowed.line()),
+    CONSTRUCT, CHARGE,
+    Field(base="sem", units=("e0",), values=STANDARD_ERROR, meaning="its standard error"), COUNT, _METHOD,
+    Field(base="citation", required=False, values=allowed.line(), meaning="source of a published value"),
 )  # fmt: skip
 _OF_A_CELL = ("batch", RAW)  # columns that a row of a construct leaves empty
 _OF_A_CONSTRUCT = ("sem", "n", "citation")  # columns that a row of a cell leaves empty

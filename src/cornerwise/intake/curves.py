@@ -25,14 +25,18 @@ from .table import Table, TextArray
 from .voltages import VOLTAGE_VALUES, read_voltages
 
 PHASE = allowed.word("on", "off", "On", "Off", "ON", "OFF")
+CHARGE = Field(
+    base="charge", units=("", "fC", "pC", "nC", "e0"), values=allowed.number(),
+    meaning="charge moved, with a scale and an offset of the cell's own",
+)  # fmt: skip
 FIELDS = (
     CONSTRUCT,
     CELL,
     BATCH,
     VOLTAGE,
-    Field(base="charge", units=("", "fC", "pC", "nC", "e0"), values=allowed.number()),
-    Field(base="holding", units=("mV",), required=False, values=VOLTAGE_VALUES),
-    Field(base="phase", required=False, values=PHASE),
+    CHARGE,
+    Field(base="holding", units=("mV",), required=False, values=VOLTAGE_VALUES, meaning="holding voltage"),
+    Field(base="phase", required=False, values=PHASE, meaning="pulse phase that was integrated"),
 )
 
 

@@ -21,7 +21,7 @@ from .spelling import meant_keys
 EXCLUDE_KEYS = ("construct", "cell", "reason")
 MOST_LISTED = 12  # cells named where one is not known
 
-_EXPECTED = {
+EXPECTED = {
     "construct": "the label of a construct, in quotes",
     "cell": "the label of one of its cells, in quotes",
     "reason": "why the cell is set aside, in quotes and on one line",
@@ -72,7 +72,7 @@ def _exclusion(
         except ValueError:
             found = say(entry[key]) if key in entry else f"no {key}"
             findings.add(
-                document.origin("exclude", number, key), found=found, expected=_EXPECTED[key],
+                document.origin("exclude", number, key), found=found, expected=EXPECTED[key],
                 remedy=f'write {key} = "..." in this entry',
             )  # fmt: skip
     return Exclusion(**values) if len(values) == len(EXCLUDE_KEYS) else None

@@ -40,6 +40,7 @@ class Field:
     required: bool = True
     key: str = ""  # what it is asked for by, where that is not `base`
     values: allowed.Fragment = field(default_factory=allowed.label, hash=False)  # numbers in the first unit
+    meaning: str = ""  # for whoever reads the published schema
 
     @property
     def name(self) -> str:

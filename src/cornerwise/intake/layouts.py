@@ -17,7 +17,7 @@ from .header import Field, RawTable
 from .table import Table, TextArray, factorize
 from .voltages import VOLTAGE_VALUES, read_voltages
 
-VOLTAGE = Field(base="voltage", units=("mV", "V"), values=VOLTAGE_VALUES)
+VOLTAGE = Field(base="voltage", units=("mV", "V"), values=VOLTAGE_VALUES, meaning="membrane voltage")
 _CELL = Field(base="construct/cell", required=False)  # for the messages
 
 

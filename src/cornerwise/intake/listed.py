@@ -15,12 +15,15 @@ from ..mutations import (
     parse_label,
     parse_mutation,
 )
+from . import allowed
 from .findings import Findings, shown
-from .rules import say
+from .rules import say, visible_text
 from .settings import KEYS, Document
 from .spelling import meant_keys
 
 CYCLE_KEYS = ("name", "mutations")
+FEWEST_MUTATIONS = 2  # of a cycle
+WORDS = allowed.items(allowed.label())  # the mutations of a construct
 
 
 def listed_mutations(document: Document, findings: Findings) -> dict[str, Mutations]:
@@ -82,21 +85,25 @@ def _request(
         ),
     )
     entry = {meant[key]: value for key, value in entry.items() if key in meant}
-    name = entry.get("name")
-    if name is not None and (not isinstance(name, str) or not name.strip() or not name.isprintable()):
-        findings.add(origin, found=say(name), expected="a name in quotes", remedy="correct the name")
-        name = None
+    name = _name(entry["name"], origin, findings) if "name" in entry else None
     mutations = mutation_set(entry.get("mutations", []), origin, findings)
     if mutations is None:
         return None
-    if len(mutations) < 2:
+    if len(mutations) < FEWEST_MUTATIONS:
         findings.add(
             origin, found=f"{len(mutations) or 'no'} mutation{'s' * (len(mutations) != 1)}",
             expected="two or more mutations", remedy='write mutations = ["E181A", "R212Q"] with your own',
         )  # fmt: skip
         return None
-    name = name.strip() if isinstance(name, str) else None
     return CycleRequest(mutations=in_residue_order(mutations), name=name, origin=origin)
+
+
+def _name(value: object, origin: Origin, findings: Findings) -> str | None:
+    try:
+        return visible_text(value)
+    except ValueError:
+        findings.add(origin, found=say(value), expected="a name in quotes", remedy="correct the name")
+        return None
 
 
 def _refuse_twins(requests: list[CycleRequest], findings: Findings) -> None:

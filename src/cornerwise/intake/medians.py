@@ -18,8 +18,8 @@ VOLTS_BELOW = 0.5  # medians that are all smaller are volts in a column of milli
 
 FIELDS = (
     CONSTRUCT,
-    Field(base="median", units=("mV",), values=VOLTAGE_VALUES),
-    Field(base="sem", units=("mV",), values=STANDARD_ERROR),
+    Field(base="median", units=("mV",), values=VOLTAGE_VALUES, meaning="mean median voltage"),
+    Field(base="sem", units=("mV",), values=STANDARD_ERROR, meaning="its standard error"),
     COUNT,
 )
 

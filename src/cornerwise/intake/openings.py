@@ -25,12 +25,13 @@ from .voltages import read_voltages
 
 METHOD = "limiting slope"  # as the charge it gives is called
 PROBABILITY = allowed.number(least=0, most=1)
+OPEN_PROBABILITY = Field(base="open_probability", values=PROBABILITY, meaning="open probability")
 FIELDS = (
     CONSTRUCT,
     CELL,
     BATCH,
     VOLTAGE,
-    Field(base="open_probability", values=PROBABILITY),
+    OPEN_PROBABILITY,
 )
 
 _EXPECTED = "open probabilities from 0 to 1"

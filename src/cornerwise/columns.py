@@ -1,0 +1,248 @@
+"""What every column of every table that comes out holds: its type, its unit and its meaning.
+
+The one place where this is said; the published Table Schemas and ``docs/outputs.md`` are made of it.
+"""
+
+from __future__ import annotations
+
+import types
+from collections.abc import Mapping
+from dataclasses import dataclass
+from typing import Any, Literal, Union, get_args, get_origin, get_type_hints
+
+from .rows import (
+    BackgroundRow,
+    BudgetRow,
+    CellRow,
+    ConstructRow,
+    InteractionRow,
+    MidpointRow,
+    RankRow,
+    SubunitRow,
+)
+from .tables import Row, field_of_column
+
+ENERGY = "energy_unit"  # stands for the unit that the row names
+ColumnType = Literal["string", "boolean", "integer", "number"]
+_TYPES: Mapping[Any, ColumnType] = {str: "string", bool: "boolean", int: "integer", float: "number"}
+
+_Meaning = tuple[str, str]  # unit and meaning of a column; what several tables have comes first
+_CYCLE: _Meaning = ("", "name of the cycle: its mutations, or the name that campaign.toml gives it")
+_CONSTRUCT: _Meaning = ("", "label of the construct, as in the tables that were read")
+_UNIT: _Meaning = ("", "unit of the energies in this row, per channel")
+_DOF: _Meaning = ("1", "Welch-Satterthwaite degrees of freedom of std_uncertainty")
+_MEDIAN: _Meaning = ("mV", "median voltage, the mean over cells")
+_INTERACTION: _Meaning = (ENERGY, "interaction energy, the signed sum of the corners' energies")
+_LOW: _Meaning = (ENERGY, "lower limit of the interval that verdicts go by")
+_HIGH: _Meaning = (ENERGY, "upper limit of the interval that verdicts go by")
+_P_ADJUSTED: _Meaning = ("1", "p value adjusted for the number of cycles")
+_VERDICT: _Meaning = ("", "what the interaction's interval and adjusted p value come to")
+_FLAGS: _Meaning = ("", "codes of the doubts about this row, separated by spaces")
+_RANK: _Meaning = ("1", "place in the order of strength, 1 the strongest")
+_RANK_LOW: _Meaning = ("1", "best rank that the data allow")
+_RANK_HIGH: _Meaning = ("1", "worst rank that the data allow")
+_MIDPOINT: _Meaning = ("mV", "voltage where the scaled curve is one half, the mean over cells")
+
+_INTERACTIONS: Mapping[str, _Meaning] = {
+    "cycle": _CYCLE,
+    "order": ("1", "number of mutations of the cycle: 2 a pair, 3 a triple"),
+    "mutations": ("", "mutations of the cycle in residue order, separated by slashes"),
+    "wild_type": ("", "label of the corner without any of them"),
+    "interaction": _INTERACTION,
+    "energy_unit": _UNIT,
+    "std_uncertainty": (ENERGY, "standard uncertainty of the interaction"),
+    "dof": _DOF,
+    "low": _LOW,
+    "high": _HIGH,
+    "boot_low": (ENERGY, "lower limit of the bootstrap interval"),
+    "boot_high": (ENERGY, "upper limit of the bootstrap interval"),
+    "p_value": ("1", "two-sided p value of an interaction of 0, from Student's t"),
+    "p_adjusted": _P_ADJUSTED,
+    "shortcut": (
+        ENERGY,
+        "interaction from median voltages and the wild type's charge alone",
+    ),
+    "shortcut_bias": (ENERGY, "interaction less shortcut"),
+    "shortcut_bias_low": (ENERGY, "lower limit of the interval of the bias"),
+    "shortcut_bias_high": (ENERGY, "upper limit of the interval of the bias"),
+    "shortcut_verdict": ("", "whether the shortcut may be used"),
+    "charge_interaction_e0": ("e0", "signed sum of the corners' total charges; 0 where charges add up"),
+    "charge_interaction_low": ("e0", "lower limit of its interval"),
+    "charge_interaction_high": ("e0", "upper limit of its interval"),
+    "interaction_verdict": _VERDICT,
+    "favours": ("", "state that the native interaction favours"),
+    "rank": _RANK,
+    "rank_low": _RANK_LOW,
+    "rank_high": _RANK_HIGH,
+    "flags": _FLAGS,
+}
+
+_RANKING: Mapping[str, _Meaning] = {
+    "rank": _RANK,
+    "cycle": _CYCLE,
+    "interaction": _INTERACTION,
+    "energy_unit": _UNIT,
+    "low": _LOW,
+    "high": _HIGH,
+    "strength_low": (
+        ENERGY,
+        "lower limit of the absolute size; 0 where the interval includes 0",
+    ),
+    "rank_low": _RANK_LOW,
+    "rank_high": _RANK_HIGH,
+    "first_probability": ("1", "probability of being among the first, as many as the key first says"),
+    "shrunken": (ENERGY, "interaction less what chance is likely to have added to it"),
+    "p_adjusted": _P_ADJUSTED,
+    "interaction_verdict": _VERDICT,
+    "opposite_charges": ("", "whether the native pair carries opposite charges"),
+    "distance_A": ("Å", "distance of the pair's side chains, where it is known"),
+}
+
+_BACKGROUNDS: Mapping[str, _Meaning] = {
+    "cycle": ("", "name of the cycle of order 3 or above"),
+    "mutations": ("", "mutations that interact, separated by slashes"),
+    "background": ("", "mutations that every corner carries, separated by slashes; empty for the wild type"),
+    "order": ("1", "number of mutations that interact"),
+    "interaction": (ENERGY, "their interaction energy in this background"),
+    "energy_unit": _UNIT,
+    "std_uncertainty": (ENERGY, "standard uncertainty of the interaction"),
+    "dof": _DOF,
+    "low": (ENERGY, "lower limit of its propagated interval"),
+    "high": (ENERGY, "upper limit of its propagated interval"),
+    "p_value": ("1", "two-sided p value of an interaction of 0, not adjusted"),
+}
+
+_CONSTRUCTS: Mapping[str, _Meaning] = {
+    "construct": _CONSTRUCT,
+    "mutations": ("", "mutations against the wild type in residue order, separated by slashes"),
+    "cells": ("1", "number of cells whose curves are used, or n of a median that was given"),
+    "median_mV": _MEDIAN,
+    "median_sem_mV": ("mV", "standard error of the median voltage"),
+    "charge_e0": ("e0", "total charge per channel that its energy is formed with"),
+    "charge_sem_e0": ("e0", "standard uncertainty of that charge"),
+    "charge_n": ("1", "number of values behind that charge"),
+    "charge_source": ("", "where that charge is from"),
+    "energy": (
+        ENERGY,
+        "activation free energy at the reference voltage; negative favours activation",
+    ),
+    "energy_unit": _UNIT,
+    "std_uncertainty": (ENERGY, "standard uncertainty of the energy"),
+    "dof": _DOF,
+    "low": (ENERGY, "lower limit of its propagated interval"),
+    "high": (ENERGY, "upper limit of its propagated interval"),
+    "charge_ratio": ("1", "its own charge over the wild type's"),
+    "charge_ratio_low": ("1", "lower limit of the interval of the ratio"),
+    "charge_ratio_high": ("1", "upper limit of the interval of the ratio"),
+    "charge_verdict": ("", "whether its charge equals the wild type's; empty for the wild type"),
+    "flags": _FLAGS,
+}
+
+_CELLS: Mapping[str, _Meaning] = {
+    "construct": _CONSTRUCT,
+    "cell": ("", "label of the cell"),
+    "batch": ("", "donor or day, where it is stated"),
+    "median_mV": ("mV", "median voltage of this cell"),
+    "midpoint_mV": ("mV", "voltage where its scaled curve is one half"),
+    "low_plateau": ("as recorded", "charge at rest, on the cell's own scale"),
+    "high_plateau": ("as recorded", "charge when activated, on the cell's own scale"),
+    "points": ("1", "number of points of the curve"),
+    "used": ("", "whether the cell counts; false where it was set aside"),
+    "flags": _FLAGS,
+}
+
+_MIDPOINTS: Mapping[str, _Meaning] = {
+    "construct": _CONSTRUCT,
+    "median_mV": _MEDIAN,
+    "energy": (ENERGY, "activation free energy from the median voltage"),
+    "energy_unit": _UNIT,
+    "midpoint_mV": _MIDPOINT,
+    "midpoint_energy": (ENERGY, "the same total charge times the midpoint"),
+    "sigmoid_midpoint_mV": ("mV", "midpoint of one sigmoid fitted to each cell, the mean over cells"),
+    "slope_charge_e0": ("e0", "apparent charge from the slope of that sigmoid"),
+    "sigmoid_energy": (ENERGY, "that apparent charge times that midpoint"),
+}
+
+_BUDGET: Mapping[str, _Meaning] = {
+    "cycle": _CYCLE,
+    "source": ("", "measurement, or other source of error"),
+    "contribution": ("that of the cycle", "standard uncertainty of the interaction from this source alone"),
+    "share": ("1", "its part of the squared standard uncertainty; all of a cycle add up to 1"),
+}
+
+_PER_SUBUNIT: Mapping[str, _Meaning] = {
+    "cycle": _CYCLE,
+    "subunits": ("1", "number of subunits that carry the mutation"),
+    "interaction_per_channel": (ENERGY, "interaction energy, as in interactions.csv"),
+    "interaction_per_subunit": (ENERGY, "the same divided by the number of subunits"),
+    "std_uncertainty_per_subunit": (ENERGY, "its standard uncertainty"),
+    "low_per_subunit": (ENERGY, "lower limit of its interval"),
+    "high_per_subunit": (ENERGY, "upper limit of its interval"),
+    "energy_unit": ("", "unit of the energies in this row"),
+}
+
+
+@dataclass(frozen=True, kw_only=True, slots=True)
+class Column:
+    """One column of a table that comes out."""
+
+    name: str
+    type: ColumnType
+    words: tuple[str, ...]  # the few it may hold; empty where there is no such list
+    needed: bool  # False where it may be empty
+    unit: str  # `ENERGY` for that of the row, "1" for plain numbers, empty for words
+    meaning: str
+
+
+@dataclass(frozen=True, kw_only=True, slots=True)
+class OutputTable:
+    """One table that comes out, a CSV file of ``--out``."""
+
+    title: str
+    kind: type[Row]
+    meanings: Mapping[str, _Meaning]
+
+    @property
+    def columns(self) -> tuple[Column, ...]:
+        """Its columns in the order of the file."""
+        hints = get_type_hints(self.kind)
+        return tuple(
+            _column(name, hints[field_of_column(name)], *self.meanings[name]) for name in self.kind.columns
+        )
+
+
+OUTPUT_TABLES: Mapping[str, OutputTable] = {
+    name: OutputTable(title=title, kind=kind, meanings=meanings)
+    for name, title, kind, meanings in (
+        ("interactions", "a row a cycle, by order and then in residue order", InteractionRow, _INTERACTIONS),
+        ("ranking", "a row a cycle that has an uncertainty, the strongest first", RankRow, _RANKING),
+        (
+            "backgrounds",
+            "a row an interaction inside a cycle of higher order",
+            BackgroundRow,
+            _BACKGROUNDS,
+        ),
+        ("constructs", "a row a construct, the wild type first", ConstructRow, _CONSTRUCTS),
+        ("cells", "a row a cell's curve", CellRow, _CELLS),
+        (
+            "midpoints",
+            "a row a construct with curves; what the literature quotes",
+            MidpointRow,
+            _MIDPOINTS,
+        ),
+        ("budget", "a row a source of error of a cycle", BudgetRow, _BUDGET),
+        ("per_subunit", "a row a cycle of a protein of several subunits", SubunitRow, _PER_SUBUNIT),
+    )
+}
+
+
+def _column(name: str, hint: Any, unit: str, meaning: str) -> Column:
+    members = get_args(hint) if get_origin(hint) in (Union, types.UnionType) else (hint,)
+    kinds = [one for one in members if one is not types.NoneType]
+    words = tuple(word for kind in kinds if get_origin(kind) is Literal for word in get_args(kind))
+    is_text = bool(words) or any(get_origin(kind) is tuple for kind in kinds)
+    return Column(
+        name=name, type=_TYPES[str] if is_text else _TYPES[kinds[0]], words=words,
+        needed=len(kinds) == len(members) and not any(get_origin(kind) is tuple for kind in kinds),
+        unit=unit, meaning=meaning,
+    )  # fmt: skip
