@@ -80,6 +80,45 @@ def test_simulate_lists_every_problem_and_writes_nothing(tmp_path: Path) -> None
     assert not (tmp_path / "made").exists()
 
 
+def test_plan_in_words_as_json_and_as_files(tmp_path: Path) -> None:
+    _run("new", tmp_path / "trial")
+    told = _run("plan", tmp_path / "trial", "--half-width", "0.5", "--recordings", "12")
+    assert told.exit_code == 0
+    assert "Fewest further cells for a half-width of 0.5 kcal/mol" in told.stdout
+    assert "Best split of 12 recordings" in told.stdout
+    assert max(map(len, _run("plan", tmp_path / "trial").stdout.splitlines()[:8])) <= 80
+    out = tmp_path / "out"
+    done = _run("plan", tmp_path / "trial", "--out", out, "--json", "--cells", "9,12")
+    document = json.loads(done.stdout)
+    assert document["schema"] == "cornerwise-plan/1"
+    assert {row["cycle"] for row in document["outlooks"]} == {"D171N/K232Q"}
+    assert (out / "plan.json").read_text(encoding="utf-8") == done.stdout
+    assert {path.name for path in out.iterdir()} == {"plan.json", "plan.csv", "needs.csv", "figures"}
+    assert len(list((out / "figures").iterdir())) == 6
+    again = tmp_path / "again"
+    assert _run("plan", tmp_path / "trial", "--out", again, "--cells", "9,12").exit_code == 0
+    for file in (path for path in out.rglob("*") if path.is_file()):
+        assert file.read_bytes() == (again / file.relative_to(out)).read_bytes()
+
+
+def test_plan_without_a_pilot() -> None:
+    assumed = ["--median", "-40,-33,-47,-36", "--median-sd", "2.5", "--charge", "13", "--charge-sd", "0.6"]
+    done = _run("plan", *assumed, "--known-from", "5", "--pairs", "2", "--charge-verdict", "equal")
+    assert done.exit_code == 0
+    assert "A2/B2" in done.stdout
+    assert "the verdict equal on a charge with 80 % probability" in done.stdout
+    for words, told in (
+        ([], "assume constructs with --median, --median-sd, --charge"),
+        (["--median", "much", "--median-sd", "2", "--charge", "13"], "takes numbers separated by commas"),
+        ([*assumed, "--cells", "4.5"], "whole numbers"),
+        ([PUBLISHED, "--median", "-40"], "leave out"),
+        ([PUBLISHED, "--cycle", "A1G/B2H"], "no cycle is called"),
+    ):
+        refused = _run("plan", *words)
+        assert refused.exit_code == 2
+        assert told in refused.stderr
+
+
 def test_new_keeps_what_is_there(tmp_path: Path) -> None:
     (tmp_path / "mine.txt").write_text("kept")
     done = _run("new", tmp_path)
@@ -234,7 +273,7 @@ def test_path_that_does_not_exist_is_refused() -> None:
     assert "no-such-folder" in done.stderr
 
 
-@pytest.mark.parametrize("command", [[], ["new"], ["check"], ["couple"], ["render"]])
+@pytest.mark.parametrize("command", [[], ["new"], ["check"], ["couple"], ["render"], ["plan"]])
 def test_help_shows_examples_at_80_columns(command: list[str]) -> None:
     done = _run(*command, "--help")
     assert done.exit_code == 0
@@ -290,7 +329,7 @@ def test_files_are_written_even_if_the_reader_of_a_pipe_goes_away(tmp_path: Path
 
 
 def test_work_that_takes_long_is_reported_on_stderr(monkeypatch: pytest.MonkeyPatch) -> None:
-    monkeypatch.setattr("cornerwise.cli._PATIENCE_S", 0.0)
+    monkeypatch.setattr("cornerwise.console._PATIENCE_S", 0.0)
     done = _run("couple", PUBLISHED)
     assert "cornerwise: interactions, 1 of 1" in done.stderr
     assert "1 of 1" not in done.stdout

@@ -8,9 +8,10 @@ import cornerwise
 
 def test_public_names_are_frozen() -> None:
     assert sorted(cornerwise.__all__) == [
-        "Campaign", "CornerwiseError", "DataRefused", "Result", "Survey", "TableOptions", "UsageError",
-        "couple", "explain", "in_unit", "output_files", "read", "read_model", "read_result", "schemas",
-        "simulate", "survey", "truth_of", "write_folder",
+        "Assumptions", "Campaign", "CornerwiseError", "DataRefused", "Plan", "PlanRequest", "Result",
+        "Survey", "TableOptions", "UsageError", "couple", "explain", "in_unit", "output_files", "plan",
+        "plan_assumed", "read", "read_model", "read_result", "schemas", "simulate", "survey", "truth_of",
+        "write_folder",
     ]  # fmt: skip
     for name in cornerwise.__all__:
         assert getattr(cornerwise, name) is not None

@@ -16,6 +16,9 @@ if TYPE_CHECKING:
     from .formats import schemas
     from .intake import read
     from .intake.model import read_model
+    from .planning.assumed import Assumptions
+    from .planning.plan import Plan, plan, plan_assumed
+    from .planning.request import PlanRequest
     from .render.explanation import explain
     from .render.files import output_files, write_folder
     from .render.manuscript.options import TableOptions
@@ -26,9 +29,12 @@ if TYPE_CHECKING:
     from .unit_change import in_unit
 
 __all__ = [
+    "Assumptions",
     "Campaign",
     "CornerwiseError",
     "DataRefused",
+    "Plan",
+    "PlanRequest",
     "Result",
     "Survey",
     "TableOptions",
@@ -37,6 +43,8 @@ __all__ = [
     "explain",
     "in_unit",
     "output_files",
+    "plan",
+    "plan_assumed",
     "read",
     "read_model",
     "read_result",
@@ -48,9 +56,12 @@ __all__ = [
 ]
 
 _ROOM_OF = {
+    "Assumptions": "planning.assumed",
     "Campaign": "campaign",
     "CornerwiseError": "errors",
     "DataRefused": "errors",
+    "Plan": "planning.plan",
+    "PlanRequest": "planning.request",
     "Result": "result",
     "Survey": "surveying",
     "TableOptions": "render.manuscript.options",
@@ -59,6 +70,8 @@ _ROOM_OF = {
     "explain": "render.explanation",
     "in_unit": "unit_change",
     "output_files": "render.files",
+    "plan": "planning.plan",
+    "plan_assumed": "planning.plan",
     "read": "intake",
     "read_model": "intake.model",
     "read_result": "result_reading",

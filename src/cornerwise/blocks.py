@@ -31,6 +31,7 @@ class BatchMeans:
         batch = np.array(cells.batches)
         columns = [np.mean(cells.values[:, batch == name], axis=1) for name in names]
         self.components = cells.components
+        self.cells, self.batches = len(batch), len(names)
         self.name = f"{cells.name} in {len(names)} batches"
         self._means = CellSource(name=self.name, components=self.components, values=np.column_stack(columns))
         self._shift: FloatArray = np.mean(self._means.values, axis=1) - np.mean(cells.values, axis=1)
@@ -121,7 +122,7 @@ class Blocks:
         """Whether anything is left to estimate the scatter within batches from."""
         return float(self._dof.sum()) > 1 - _ROUNDING
 
-    def _gradients(self, gradient: Sequence[float]) -> list[list[float]]:
+    def by_corner(self, gradient: Sequence[float]) -> list[list[float]]:
         """Sensitivities to the components of each construct."""
         rest = iter(gradient)
         return [[next(rest) for _ in corner.components] for corner in self.corners]
@@ -130,20 +131,20 @@ class Blocks:
         """Value of every cell without the sign of its construct, shape (n_cells,)."""
         per_corner = [
             np.sum(np.asarray(own)[:, np.newaxis] * corner.values, axis=0) / sign
-            for own, corner, sign in zip(self._gradients(gradient), self.corners, self.signs, strict=True)
+            for own, corner, sign in zip(self.by_corner(gradient), self.corners, self.signs, strict=True)
         ]
         values: FloatArray = np.concatenate(per_corner)
         return values
 
-    def _whole(self, gradient: Sequence[float]) -> bool:
+    def whole(self, gradient: Sequence[float]) -> bool:
         """Whether every construct takes part, so that batch effects can cancel."""
-        return all(any(own) for own in self._gradients(gradient))
+        return all(any(own) for own in self.by_corner(gradient))
 
-    def _alone(self, gradient: Sequence[float]) -> list[tuple[Source, list[float]]]:
+    def alone(self, gradient: Sequence[float]) -> list[tuple[Source, list[float]]]:
         """The constructs that take part, each by itself."""
         return [
             (BatchMeans(corner) if len(set(corner.batches)) > 1 else corner, own)
-            for corner, own in zip(self.corners, self._gradients(gradient), strict=True)
+            for corner, own in zip(self.corners, self.by_corner(gradient), strict=True)
             if any(own)
         ]
 
@@ -157,8 +158,8 @@ class Blocks:
 
     def parts(self, gradient: Sequence[float]) -> tuple[Part, ...]:
         """One part for each construct."""
-        if not self._whole(gradient):
-            return tuple(part for source, own in self._alone(gradient) for part in source.parts(own))
+        if not self.whole(gradient):
+            return tuple(part for source, own in self.alone(gradient) for part in source.parts(own))
         variances, dof = self._scatter(self.residual_maker @ self._values(gradient))
         squared_weights = self._by_construct(self.weights**2)
         return tuple(
@@ -181,8 +182,8 @@ class Blocks:
         Residuals carry the factor sqrt(n_k / nu_k), so that their spread is the variance of `parts`.
         """
         total: FloatArray = np.zeros(replicates)
-        if not self._whole(gradient):
-            for source, own in self._alone(gradient):
+        if not self.whole(gradient):
+            for source, own in self.alone(gradient):
                 total += source.deviations_drawn(own, stream, replicates)
             return total
         for k, corner in enumerate(self.corners):
@@ -202,10 +203,10 @@ class Blocks:
 
     def footprint(self, gradient: Sequence[float]) -> dict[Component, FloatArray]:
         """One error a cell, with the sign of its construct."""
-        if not self._whole(gradient):
+        if not self.whole(gradient):
             return {
                 c: errors
-                for source, own in self._alone(gradient)
+                for source, own in self.alone(gradient)
                 for c, errors in source.footprint(own).items()
             }
         scale = self.signs * np.sqrt(self._by_construct(self.weights**2) / self._counts)

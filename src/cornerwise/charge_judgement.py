@@ -15,9 +15,10 @@ from .intervals import (
     t_p_value,
     welch_satterthwaite,
 )
+from .ledger import Ledger
 from .measurements import Measurement
 from .quantities import Quantity
-from .sources import log_ratio
+from .sources import Derived, log_ratio
 from .verdicts import ChargeVerdict, charge_verdict
 
 MOST_CELLS = 200
@@ -83,6 +84,30 @@ def cells_for_verdict(
     return None
 
 
+def compared_charges(label: str, book: EnergyBook, wild_type: str) -> tuple[Derived, Ledger] | None:
+    """Logarithm of a mutant's total charge over the wild type's, with the sources it is compared by.
+
+    Parameters
+    ----------
+    label : str
+        The mutant.
+    book : EnergyBook
+        Charges of the campaign as functions of the sources of error.
+    wild_type : str
+        Label of the wild type.
+
+    Returns
+    -------
+    Derived, Ledger or None
+        None where one of the two was never measured.
+    """
+    own, reference = book.energies[label].own_charge, book.energies[wild_type].own_charge
+    if own is None or reference is None:
+        return None
+    ledger, _ = regroup(book.ledger, [(label, 1.0), (wild_type, -1.0)], book.shared_batches)
+    return ledger.adjusted(log_ratio(own, reference)), ledger
+
+
 def judge_charge(
     label: str, measured: Mapping[str, Measurement], book: EnergyBook, settings: Settings
 ) -> ChargeJudgement:
@@ -105,13 +130,11 @@ def judge_charge(
     For samples of 3 to 12 with scatters of 4 to 12 % it covers as Fieller's interval does (both 95 to 97 %
     at equal sizes, 93 % for 3 against 12), is always finite, and judges a ratio and its inverse alike.
     """
-    own = book.energies[label].own_charge
-    reference = book.energies[settings.wild_type].own_charge
+    compared = compared_charges(label, book, settings.wild_type)
     charge, wild_type = measured[label].charge_e0, measured[settings.wild_type].charge_e0
-    if own is None or reference is None or charge is None or wild_type is None:
+    if compared is None or charge is None or wild_type is None:
         return ASSUMED
-    ledger, _ = regroup(book.ledger, [(label, 1.0), (settings.wild_type, -1.0)], book.shared_batches)
-    logarithm = ledger.adjusted(log_ratio(own, reference))
+    logarithm, ledger = compared
     spread = ledger.spread(logarithm)
     ratio, u = math.exp(logarithm.value), math.sqrt(spread.variance)
     difference = ratio_interval(ratio, u, spread.dof, settings.confidence)

@@ -4,22 +4,16 @@ from __future__ import annotations
 
 import os
 import sys
-import time
 import traceback
-from collections import Counter
-from collections.abc import Callable, Iterable, Mapping
 from pathlib import Path
-from typing import TYPE_CHECKING, Annotated
+from typing import Annotated
 
 import typer
 from typer.core import TyperGroup
 
-from .errors import CornerwiseError, DataRefused, UsageError
-
-if TYPE_CHECKING:
-    pass
-
-_PATIENCE_S = 1.0
+from .console import CampaignPath, Force, Json, expect_room, progress, report, write
+from .errors import CornerwiseError, UsageError
+from .plan_command import plan
 
 
 class _Boundary(TyperGroup):
@@ -29,7 +23,7 @@ class _Boundary(TyperGroup):
         try:
             return super().invoke(ctx)  # type: ignore[arg-type]
         except CornerwiseError as error:
-            _report(error)
+            report(error)
             raise SystemExit(error.exit_code) from None
         except BrokenPipeError:  # the reader of a pipe went away; nothing is wrong
             os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
@@ -43,56 +37,6 @@ app = typer.Typer(
     rich_markup_mode=None,
     context_settings={"help_option_names": ["-h", "--help"]},
 )
-
-_Campaign = Annotated[Path, typer.Argument(metavar="PATH", help="Campaign folder, or one .xlsx workbook.")]
-_Json = Annotated[bool, typer.Option("--json", help="Print JSON on stdout instead of a table.")]
-_Force = Annotated[bool, typer.Option("--force", help="Replace DIR as a whole if it exists.")]
-
-
-def _report(error: CornerwiseError) -> None:
-    if isinstance(error, DataRefused):
-        from .render.problems import print_problems
-
-        print_problems(error, sys.stderr)
-    else:
-        print(f"cornerwise: {error}", file=sys.stderr)
-
-
-def _progress() -> Callable[[str, int, int], None]:
-    """Report to stderr once the work has taken longer than a second, and then each further second."""
-    last = time.monotonic()
-
-    def report(step: str, done: int, total: int) -> None:
-        nonlocal last
-        if time.monotonic() - last >= _PATIENCE_S:
-            last = time.monotonic()
-            print(f"cornerwise: {step}, {done} of {total}", file=sys.stderr, flush=True)
-
-    return report
-
-
-def _expect_room(folder: Path | None, *, force: bool) -> None:
-    """Refuse a destination before the work is done rather than after."""
-    from .render.files import check_destination
-
-    if folder is not None:
-        check_destination(folder, force=force)
-
-
-def _write(files: Mapping[str, str | bytes], folder: Path, *, force: bool) -> None:
-    from .render.files import write_folder
-
-    write_folder(files, folder, force=force)
-    print(f"cornerwise: wrote {_listed(files)} into {folder}", file=sys.stderr)
-
-
-def _listed(files: Iterable[str]) -> str:
-    """Names of files, those in a folder only counted."""
-    names = list(files)
-    below = Counter(name.partition("/")[0] for name in names if "/" in name)
-    return ", ".join(
-        [name for name in names if "/" not in name] + [f"{n} files in {d}" for d, n in below.items()]
-    )
 
 
 def _version(asked: bool) -> None:
@@ -116,6 +60,7 @@ def _cornerwise(
       cornerwise new trial                    a filled-in campaign to start from
       cornerwise check trial                  read and judge the data
       cornerwise couple trial --out results   the coupling table and its files
+      cornerwise plan trial                   what to record next
       cornerwise simulate model.toml --out it  a campaign with a known truth
 
     \b
@@ -144,8 +89,8 @@ def new(
 def simulate(
     model_file: Annotated[Path, typer.Argument(metavar="MODEL.toml", help="Model file.")],
     out: Annotated[Path, typer.Option(metavar="DIR", help="Write the campaign into DIR.")],
-    force: _Force = False,
-    as_json: _Json = False,
+    force: Force = False,
+    as_json: Json = False,
 ) -> None:
     """Draw a campaign with a known truth from a gating model.
 
@@ -162,10 +107,10 @@ def simulate(
     from .render.simulated import campaign_files
     from .render.truth import print_truth
 
-    _expect_room(out, force=force)
+    expect_room(out, force=force)
     model = read_model(model_file)
     truth = truth_of(model)
-    _write(campaign_files(draw(model), truth, model), out, force=force)
+    write(campaign_files(draw(model), truth, model), out, force=force)
     if as_json:
         print(truth_json(truth), end="")
     else:
@@ -174,13 +119,13 @@ def simulate(
 
 @app.command()
 def check(
-    path: _Campaign,
+    path: CampaignPath,
     figures: Annotated[
         Path | None,
         typer.Option(metavar="DIR", help="Draw every construct's curves, SVG, PDF and PNG, into DIR."),
     ] = None,
-    force: _Force = False,
-    as_json: _Json = False,
+    force: Force = False,
+    as_json: Json = False,
 ) -> None:
     """Read and judge the data; compute no energy.
 
@@ -194,12 +139,12 @@ def check(
     from .render.machine import survey_json
     from .render.terminal import print_survey
 
-    _expect_room(figures, force=force)
-    found = survey(read(path), _progress())
+    expect_room(figures, force=force)
+    found = survey(read(path), progress())
     if figures is not None:  # before the table is printed: the reader of a pipe may go away
         from .render.figures.files import curve_files
 
-        _write(curve_files(found), figures, force=force)
+        write(curve_files(found), figures, force=force)
     if as_json:
         print(survey_json(found), end="")
     else:
@@ -208,7 +153,7 @@ def check(
 
 @app.command()
 def couple(
-    path: _Campaign,
+    path: CampaignPath,
     out: Annotated[
         Path | None,
         typer.Option(metavar="DIR", help="Write result.json and everything made of it into DIR."),
@@ -216,8 +161,8 @@ def couple(
     figures: Annotated[
         bool, typer.Option("--figures", help="With --out: draw all figures too, SVG, PDF and PNG.")
     ] = False,
-    force: _Force = False,
-    as_json: _Json = False,
+    force: Force = False,
+    as_json: Json = False,
 ) -> None:
     """Compute the interaction energies of all cycles.
 
@@ -236,10 +181,10 @@ def couple(
 
     if figures and out is None:
         raise UsageError("--figures needs a folder to draw into; give --out DIR")
-    _expect_room(out, force=force)
-    result = run(read(path), _progress())
+    expect_room(out, force=force)
+    result = run(read(path), progress())
     if out is not None:  # before the table is printed: the reader of a pipe may go away
-        _write(output_files(result, figures=figures, progress=_progress()), out, force=force)
+        write(output_files(result, figures=figures, progress=progress()), out, force=force)
     if as_json:
         print(result.to_json(), end="")
     else:
@@ -268,7 +213,7 @@ def render(  # noqa: PLR0913 - one parameter an option
     figures: Annotated[
         bool, typer.Option("--figures", help="Draw all figures too, SVG, PDF and PNG.")
     ] = False,
-    force: _Force = False,
+    force: Force = False,
 ) -> None:
     """Write again what couple --out wrote, without computing.
 
@@ -282,12 +227,12 @@ def render(  # noqa: PLR0913 - one parameter an option
     """  # noqa: D301
     from . import TableOptions, output_files, read_result
 
-    _expect_room(out, force=force)
+    expect_room(out, force=force)
     options = TableOptions(
         columns=_named(columns), construct_columns=_named(construct_columns), group=group, digits=digits
     )
-    files = output_files(read_result(path), tables=options, unit=unit, figures=figures, progress=_progress())
-    _write(files, out, force=force)
+    files = output_files(read_result(path), tables=options, unit=unit, figures=figures, progress=progress())
+    write(files, out, force=force)
 
 
 def _named(columns: str) -> list[str]:
@@ -296,7 +241,7 @@ def _named(columns: str) -> list[str]:
 
 @app.command()
 def rank(
-    path: _Campaign,
+    path: CampaignPath,
     by_lower_limit: Annotated[
         bool,
         typer.Option("--by-lower-limit", help="Order by the lower limit of the size, not by the estimate."),
@@ -305,7 +250,7 @@ def rank(
         int | None,
         typer.Option(min=1, metavar="K", help="Give the probability of being among the first K."),
     ] = None,
-    as_json: _Json = False,
+    as_json: Json = False,
 ) -> None:
     """Rank the cycles by strength, with the ranks the data allow.
 
@@ -320,16 +265,19 @@ def rank(
     from .render.machine import ranking_json
     from .render.ranking import print_ranking
 
-    result = run(ranked_by(read(path), lower_limit=by_lower_limit, first=first), _progress())
+    result = run(ranked_by(read(path), lower_limit=by_lower_limit, first=first), progress())
     if as_json:
         print(ranking_json(result), end="")
     else:
         print_ranking(result, sys.stdout)
 
 
+app.command()(plan)
+
+
 @app.command()
 def explain(
-    path: _Campaign,
+    path: CampaignPath,
     cycle: Annotated[str, typer.Argument(metavar="CYCLE", help="Name of a cycle in the coupling table.")],
 ) -> None:
     """Say in words how one cycle was judged.
@@ -345,7 +293,7 @@ def explain(
     from . import read
     from .render.terminal import print_paragraphs
 
-    print_paragraphs(put_in_words(run(read(path), _progress()), cycle), sys.stdout)
+    print_paragraphs(put_in_words(run(read(path), progress()), cycle), sys.stdout)
 
 
 def main() -> None:

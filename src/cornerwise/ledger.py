@@ -86,7 +86,7 @@ class Ledger:
         place = self._place.get(component)
         return None if place is None else self.sources[place[0]]
 
-    def _gradients(self, derived: Derived) -> Iterator[tuple[Source, list[float]]]:
+    def gradients(self, derived: Derived) -> Iterator[tuple[Source, list[float]]]:
         """Sources that a quantity depends on, with its sensitivities to their components."""
         gradients: dict[int, list[float]] = {}
         for component, sensitivity in derived.sensitivities.items():
@@ -97,7 +97,7 @@ class Ledger:
 
     def parts(self, derived: Derived) -> list[Part]:
         """What each source adds to the squared standard uncertainty of `derived`."""
-        return [part for source, gradient in self._gradients(derived) for part in source.parts(gradient)]
+        return [part for source, gradient in self.gradients(derived) for part in source.parts(gradient)]
 
     def spread(self, derived: Derived) -> Spread:
         """Squared standard uncertainty and Welch-Satterthwaite degrees of freedom of `derived`."""
@@ -107,7 +107,7 @@ class Ledger:
 
     def adjusted(self, derived: Derived) -> Derived:
         """The quantity as its sources estimate it, where that is not from plain means of cells."""
-        shift = math.fsum(source.shift(gradient) for source, gradient in self._gradients(derived))
+        shift = math.fsum(source.shift(gradient) for source, gradient in self.gradients(derived))
         return replace(derived, value=derived.value + shift) if shift else derived
 
     def budget(self, derived: Derived) -> tuple[Contribution, ...]:
@@ -141,7 +141,7 @@ class Ledger:
         """Independent errors in `derived`; see `Source.footprint`."""
         return {
             component: errors
-            for source, gradient in self._gradients(derived)
+            for source, gradient in self.gradients(derived)
             for component, errors in source.footprint(gradient).items()
         }
 
@@ -154,6 +154,6 @@ class Ledger:
                 normal = rng.standard_normal(self.replicates)
                 total += math.sqrt(variance) * normal * t_factors(dof, rng, self.replicates)
             return total
-        for source, gradient in self._gradients(derived):
+        for source, gradient in self.gradients(derived):
             total += source.deviations_drawn(gradient, self._stream, self.replicates)
         return total

@@ -81,6 +81,8 @@ _FIELD_OF_COLUMN = {
     "distance_A": "distance_angstrom",
 }
 
+_SEPARATORS = {"mutations": "/", "background": "/", "shares": "; "}  # a space for the others
+
 
 def flat_values(row: Row) -> tuple[Value, ...]:
     """Values of a row in the order of its columns; lists become text."""
@@ -94,6 +96,6 @@ def field_of_column(column: str) -> str:
 
 def _flat(column: str, value: object) -> Value:
     if isinstance(value, tuple):
-        return ("/" if column in ("mutations", "background") else " ").join(map(str, value))
+        return _SEPARATORS.get(column, " ").join(map(str, value))
     assert value is None or isinstance(value, str | int | float | bool)
     return value

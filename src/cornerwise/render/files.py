@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import csv
+import io
 import shutil
 import tempfile
 from collections.abc import Callable, Mapping
@@ -34,9 +36,14 @@ def check_destination(folder: Path, *, force: bool) -> None:
         raise UsageError(f"{folder.absolute().parent} is not a folder; make it first")
 
 
-def _csv(table: Table[Row]) -> str:
+def csv_text(table: Table[Row]) -> str:
+    """Text of a CSV file."""
     # The shortest digits that give the same float back; integers and text as they are; nothing for None.
-    return table.to_frame().astype(object).to_csv(index=False, lineterminator="\n")
+    stream = io.StringIO()
+    writer = csv.writer(stream, lineterminator="\n")
+    writer.writerow(table.columns)
+    writer.writerows(row.cells() for row in table)
+    return stream.getvalue()
 
 
 def result_files(result: Result, *, cycle_figures: bool | None = None) -> dict[str, str]:
@@ -57,13 +64,13 @@ def result_files(result: Result, *, cycle_figures: bool | None = None) -> dict[s
     }
     return {
         "result.json": result.to_json(),
-        "interactions.csv": _csv(result.interactions),
-        "constructs.csv": _csv(result.constructs),
-        "cells.csv": _csv(result.cells),
-        "midpoints.csv": _csv(result.midpoints),
-        "budget.csv": _csv(result.budget),
-        "ranking.csv": _csv(result.ranking),
-        **{name: _csv(table) for name, table in some.items() if len(table)},
+        "interactions.csv": csv_text(result.interactions),
+        "constructs.csv": csv_text(result.constructs),
+        "cells.csv": csv_text(result.cells),
+        "midpoints.csv": csv_text(result.midpoints),
+        "budget.csv": csv_text(result.budget),
+        "ranking.csv": csv_text(result.ranking),
+        **{name: csv_text(table) for name, table in some.items() if len(table)},
         "report.html": report_html(result, cycle_figures=cycle_figures),
     }
 

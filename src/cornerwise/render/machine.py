@@ -5,6 +5,7 @@ from __future__ import annotations
 import dataclasses
 import json
 
+from ..planning.plan import Plan
 from ..result import Result
 from ..simulation import Truth
 from ..surveying import Survey
@@ -12,6 +13,7 @@ from ..surveying import Survey
 SURVEY_SCHEMA = "cornerwise-survey/1"
 TRUTH_SCHEMA = "cornerwise-truth/1"
 RANKING_SCHEMA = "cornerwise-ranking/1"
+PLAN_SCHEMA = "cornerwise-plan/1"
 
 
 def survey_json(found: Survey) -> str:
@@ -46,5 +48,23 @@ def ranking_json(result: Result) -> str:
         "settings": dataclasses.asdict(result.settings),
         "ranking": [dataclasses.asdict(row) for row in result.ranking],
         "notes": result.notes,
+    }
+    return json.dumps(document, indent=1, ensure_ascii=False, allow_nan=False) + "\n"
+
+
+def plan_json(plan: Plan) -> str:
+    """Text of a plan as JSON, full precision."""
+    document = {
+        "schema": PLAN_SCHEMA,
+        "title": plan.title,
+        "energy_unit": plan.energy_unit,
+        "confidence": plan.confidence,
+        "true_interaction": plan.true_interaction,
+        "request": dataclasses.asdict(plan.request),
+        "outlooks": [dataclasses.asdict(row) for row in plan.outlooks],
+        "needs": [dataclasses.asdict(row) for row in plan.needs],
+        "splits": [dataclasses.asdict(row) for row in plan.splits],
+        "split": None if plan.split is None else dataclasses.asdict(plan.split),
+        "notes": plan.notes,
     }
     return json.dumps(document, indent=1, ensure_ascii=False, allow_nan=False) + "\n"

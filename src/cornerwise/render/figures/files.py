@@ -63,7 +63,7 @@ def curve_files(survey: Survey) -> dict[str, bytes]:
         for row in survey.constructs
     ]
     sheets = {f"curves-{number}": sheet for number, sheet in enumerate(curve_sheets(shown), start=1)}
-    return _files(sheets, None, None)
+    return drawn_files(sheets)
 
 
 class CycleFigures:
@@ -162,11 +162,21 @@ def figure_files(
         ``figures/interactions-85mm.svg``, ..., and a folder a cycle such as
         ``figures/E154Q-R223Q/shape-180mm.pdf``.
     """
-    return _files(_named(result), progress, workers)
+    return drawn_files(_named(result), progress, workers)
 
 
-def _files(sheets: Mapping[str, Sheet], progress: Progress | None, workers: int | None) -> dict[str, bytes]:
-    """Files of named sheets, drawn by several processes when there are many."""
+def drawn_files(
+    sheets: Mapping[str, Sheet], progress: Progress | None = None, workers: int | None = None
+) -> dict[str, bytes]:
+    """Files of named sheets, drawn by several processes when there are many.
+
+    Parameters
+    ----------
+    sheets : mapping of str to Sheet
+        Sheets by the path of their files without the ending.
+    progress, workers : optional
+        As for `figure_files`.
+    """
     many = workers if workers is not None else os.cpu_count() or 1
     with TemporaryDirectory(ignore_cleanup_errors=True) as folder:
         font = Path(folder) / "letters.ttf"

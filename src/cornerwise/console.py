@@ -1,0 +1,68 @@
+"""What the commands share: kinds of argument, messages and progress on stderr, folders that are written."""
+
+from __future__ import annotations
+
+import sys
+import time
+from collections import Counter
+from collections.abc import Callable, Iterable, Mapping
+from pathlib import Path
+from typing import Annotated
+
+import typer
+
+from .errors import CornerwiseError, DataRefused
+
+_PATIENCE_S = 1.0
+
+CampaignPath = Annotated[Path, typer.Argument(metavar="PATH", help="Campaign folder, or one .xlsx workbook.")]
+Json = Annotated[bool, typer.Option("--json", help="Print JSON on stdout instead of a table.")]
+Force = Annotated[bool, typer.Option("--force", help="Replace DIR as a whole if it exists.")]
+
+
+def report(error: CornerwiseError) -> None:
+    """Say on stderr what went wrong."""
+    if isinstance(error, DataRefused):
+        from .render.problems import print_problems
+
+        print_problems(error, sys.stderr)
+    else:
+        print(f"cornerwise: {error}", file=sys.stderr)
+
+
+def progress() -> Callable[[str, int, int], None]:
+    """Report to stderr once the work has taken longer than a second, and then each further second."""
+    last = time.monotonic()
+
+    def told(step: str, done: int, total: int) -> None:
+        nonlocal last
+        if time.monotonic() - last >= _PATIENCE_S:
+            last = time.monotonic()
+            print(f"cornerwise: {step}, {done} of {total}", file=sys.stderr, flush=True)
+
+    return told
+
+
+def expect_room(folder: Path | None, *, force: bool) -> None:
+    """Refuse a destination before the work is done rather than after."""
+    from .render.files import check_destination
+
+    if folder is not None:
+        check_destination(folder, force=force)
+
+
+def write(files: Mapping[str, str | bytes], folder: Path, *, force: bool) -> None:
+    """Write files of ``--out`` and say so on stderr."""
+    from .render.files import write_folder
+
+    write_folder(files, folder, force=force)
+    print(f"cornerwise: wrote {_listed(files)} into {folder}", file=sys.stderr)
+
+
+def _listed(files: Iterable[str]) -> str:
+    """Names of files, those in a folder only counted."""
+    names = list(files)
+    below = Counter(name.partition("/")[0] for name in names if "/" in name)
+    return ", ".join(
+        [name for name in names if "/" not in name] + [f"{n} files in {d}" for d, n in below.items()]
+    )
