@@ -1,4 +1,4 @@
-"""Time and size of report and figures for many cycles, in units of importing numpy and pandas.
+"""Time and size of report, tables and figures for many cycles, in units of importing numpy and pandas.
 
 Run from the project's root: ``python tests/bench/report_speed.py [CYCLES] [--figures]``. The
 campaign is invented: one wild type, every pair of a set of residues, eight cells a construct.
@@ -9,7 +9,7 @@ import os
 import subprocess
 import sys
 import time
-from collections.abc import Callable
+from collections.abc import Callable, Mapping
 from pathlib import Path
 
 sys.path.insert(0, str(Path(__file__).parents[1]))
@@ -19,7 +19,8 @@ from builders import campaign, construct
 
 from cornerwise.coupling import couple
 from cornerwise.render.figures.files import figure_files
-from cornerwise.render.files import result_files
+from cornerwise.render.files import output_files, result_files
+from cornerwise.render.manuscript.files import table_files
 from cornerwise.render.report.page import report_html
 from cornerwise.result import Result
 
@@ -52,6 +53,10 @@ def timed(work: Callable[[], object]) -> tuple[float, object]:
     return time.perf_counter() - start, given
 
 
+def _together(files: Mapping[str, str | bytes]) -> bytes:
+    return b"".join(one if isinstance(one, bytes) else one.encode() for one in files.values())
+
+
 def main(cycles: int, *, figures: bool) -> None:
     """Print one line a step."""
     yardstick = min(
@@ -64,6 +69,8 @@ def main(cycles: int, *, figures: bool) -> None:
         "report without cycle figures": lambda: report_html(result, cycle_figures=False),
         "report with cycle figures": lambda: report_html(result, cycle_figures=True),
         "report, result.json and CSV": lambda: "".join(result_files(result).values()),
+        "tables of a manuscript": lambda: _together(table_files(result)),
+        "all of --out": lambda: _together(output_files(result)),
     }
     if figures:
         steps["all figures, one process"] = lambda: b"".join(figure_files(result, workers=1).values())

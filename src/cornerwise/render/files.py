@@ -112,8 +112,10 @@ def output_files(
     from .manuscript.files import table_files
 
     shown = result if unit is None else in_unit(result, unit)
-    files: dict[str, str | bytes] = {**table_files(shown, tables)}
-    files = {**result_files(shown, cycle_figures=figures or None), "result.json": result.to_json(), **files}
+    in_tables = table_files(shown, tables)  # first: an unknown column is refused before much is done
+    files: dict[str, str | bytes] = {**result_files(shown, cycle_figures=figures or None), **in_tables}
+    if shown is not result:
+        files["result.json"] = result.to_json()
     if figures:
         from .figures.files import figure_files
 

@@ -13,10 +13,12 @@ from openpyxl import load_workbook
 from openpyxl.worksheet.worksheet import Worksheet
 
 import cornerwise
+from cornerwise.render.figures.lettering import width_of
 from cornerwise.render.manuscript import markdown
+from cornerwise.render.manuscript.couplings import RECIPES, coupling_table
 from cornerwise.render.manuscript.document import ManuscriptTable
 from cornerwise.render.manuscript.files import manuscript_tables, table_files
-from cornerwise.render.manuscript.layout import layout, room
+from cornerwise.render.manuscript.layout import layout
 from cornerwise.render.manuscript.options import TableOptions
 from cornerwise.render.manuscript.words import plain
 from cornerwise.result import Result
@@ -135,8 +137,18 @@ def test_a_group_is_one_field_across_in_word(result: Result) -> None:
 def test_widths_fill_the_page(tables: tuple) -> None:
     for table in tables:
         found = layout(table)
-        assert sum(found.stretched()) == pytest.approx(room(landscape=found.landscape))
-        assert sum(found.widths_mm) <= room(landscape=found.landscape) + 1e-9
+        assert sum(found.stretched()) == pytest.approx(found.page_mm[0] - 40.0)
+        assert sum(found.widths_mm) <= found.page_mm[0] - 40.0
+
+
+def test_a_table_of_all_columns_has_a_page_as_wide_as_it_needs(result: Result) -> None:
+    table = coupling_table(result, TableOptions(columns=[recipe.key for recipe in RECIPES]))
+    found = layout(table)
+    assert 297.0 < found.page_mm[0] <= 558.0
+    for place, width in enumerate(found.widths_mm):
+        texts = [row[place].text for _, row in table.rows()]
+        if table.columns[place].numeric:
+            assert max(width_of(text, found.size_pt) for text in texts) < width
 
 
 # Workbook

@@ -10,7 +10,7 @@ from ..ordering import by_strength, flag_marks, grouped
 from .cells import Rounding, counted, flag_letters, freedom, worded
 from .document import Cell, ManuscriptTable
 from .flag_words import flag_notes
-from .notes import construct_notes
+from .notes import construct_notes, dash_note
 from .options import TableOptions
 from .recipes import ENERGY, LEVEL, Recipe, Shared, chosen, filled_groups
 from .words import Words, words
@@ -150,14 +150,15 @@ def construct_table(result: Result, options: TableOptions) -> ManuscriptTable:
         constructs={row.construct: row for row in result.constructs},
     )
     keys = {recipe.key for recipe in recipes}
+    groups = filled_groups(recipes, _groups(result, shared, options.group), shared)
     flags = flag_notes(result.flags, shared.marks, shared.constructs) if "flags" in keys else []
     return ManuscriptTable(
         name="constructs",
         number="S1",
         title=_title(result),
         columns=tuple(recipe.column(result.settings) for recipe in recipes),
-        groups=filled_groups(recipes, _groups(result, shared, options.group), shared),
-        notes=(*construct_notes(result, keys), *flags),
+        groups=groups,
+        notes=(*construct_notes(result, keys), *dash_note(groups), *flags),
     )
 
 

@@ -21,7 +21,7 @@ from .cells import (
 )  # fmt: skip
 from .document import MISSING, Cell, ManuscriptTable
 from .flag_words import flag_notes
-from .notes import coupling_notes
+from .notes import coupling_notes, dash_note
 from .options import TableOptions
 from .recipes import ENERGY, LEVEL, Recipe, Shared, chosen, filled_groups
 from .words import Words, words
@@ -231,6 +231,7 @@ def coupling_table(result: Result, options: TableOptions) -> ManuscriptTable:
         constructs={row.construct: row for row in result.constructs},
     )
     keys = {recipe.key for recipe in recipes}
+    groups = filled_groups(recipes, _groups(rows, options.group), shared)
     about = [name for row in rows for name in (row.cycle, *(label for label, _ in row.corners))]
     flags = flag_notes(result.flags, shared.marks, about) if "flags" in keys else []
     return ManuscriptTable(
@@ -238,18 +239,20 @@ def coupling_table(result: Result, options: TableOptions) -> ManuscriptTable:
         number="1",
         title=_title(result, options.group),
         columns=tuple(recipe.column(result.settings) for recipe in recipes),
-        groups=filled_groups(recipes, _groups(rows, options.group), shared),
-        notes=(*coupling_notes(result, keys), *flags),
+        groups=groups,
+        notes=(*coupling_notes(result, keys), *dash_note(groups), *flags),
     )
 
 
+_ORDERS = {"none": ", strongest first", "pair": ", by the residues", "construct": ", by single mutant"}
+
+
 def _title(result: Result, group: str) -> Words:
-    order = {"none": "strongest first", "pair": "by the residues", "construct": "by single mutant"}[group]
     about = f" {result.settings.title}." if result.settings.title else ""
     return words(
-        "Interaction (coupling) energies *I* of {count}, {order}.{about}",
+        "Interaction (coupling) energies *I* of {count}{order}.{about}",
         count=number_of(len(result.interactions), "mutant cycle"),
-        order=order,
+        order=_ORDERS[group] if len(result.interactions) > 1 else "",
         about=about,
     )
 

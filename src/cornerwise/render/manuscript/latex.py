@@ -45,7 +45,7 @@ _LIGATURES = re.compile("(?<=-)(?=-)|(?<=,)(?=,)|(?<=')(?=')")
 _BREAKS_AFTER = frozenset("/+:;,_-.= ")
 _PREAMBLE = r"""% Compiles as it stands: pdflatex, twice for the widths of the columns.
 % To use the table alone, take the packages below and what stands between the two lines of dashes.
-\documentclass[a4paper,10pt]{article}
+\documentclass[10pt]{article}
 \usepackage[utf8]{inputenc}
 \usepackage{textcomp}
 \IfFileExists{lmodern.sty}{\usepackage[T1]{fontenc}\usepackage{lmodern}}{}
@@ -102,9 +102,10 @@ def latex_text(table: ManuscriptTable) -> str:
         Goes on over as many pages as it needs, its head on each; landscape where it is wide.
     """
     set_out = layout(table)
-    orientation = ",landscape" if set_out.landscape else ""
+    width, height = set_out.page_mm
+    paper = f"paperwidth={width:.0f}mm,paperheight={height:.0f}mm,margin={MARGIN_MM:g}mm"
     lines = [
-        _PREAMBLE + rf"\usepackage[margin={MARGIN_MM:g}mm{orientation}]{{geometry}}",
+        _PREAMBLE + rf"\usepackage[{paper}]{{geometry}}",
         r"\begin{document}",
         r"% " + 70 * "-",
         rf"\setcounter{{table}}{{{int(table.number.lstrip('S')) - 1}}}",

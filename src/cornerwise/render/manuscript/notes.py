@@ -11,7 +11,7 @@ from ..legend import CAUTION, interval_words, percent, sign_sentences
 from ..methods import ADJUSTMENTS, batch_sentence, charge_sentence, counted
 from ..ordering import grouped
 from .cells import printable
-from .document import MISSING, Note
+from .document import MISSING, Group, Note
 from .words import Words, joined, words
 
 _LISTED_CELLS = 4  # of one construct and reason; more are counted
@@ -209,13 +209,22 @@ def _batches(result: Result) -> Words:
 
 
 def _common(result: Result) -> list[Words]:
-    """What holds for both tables: whose charge, what was set aside, what a dash means."""
-    notes = [words("{text}", text=charge_sentence(result))]
+    """What holds for both tables: whose charge, in which background, what was set aside."""
+    before, unit, after = charge_sentence(result).partition(" e0 per channel")
+    charge = words(f"{{before}}{' *e*~0~ per channel' if unit else ''}{{after}}", before=before, after=after)
+    notes = [charge]
     if result.background:
         notes.append(words("Background of every construct: {text}.", text="/".join(result.background)))
     if len(result.cells):
         notes.append(words("{text}", text=_excluded(result)))
-    return [*notes, words(f"{MISSING}, does not apply or is not available.")]
+    return notes
+
+
+def dash_note(groups: Sequence[Group]) -> list[Note]:
+    """What a dash means, where one stands in the table."""
+    if not any(cell.text == MISSING for group in groups for row in group.rows for cell in row):
+        return []
+    return [Note(mark="", text=words(f"{MISSING}, does not apply or is not available."))]
 
 
 def _excluded(result: Result) -> str:

@@ -9,6 +9,7 @@ from .document import ManuscriptTable
 from .words import Words, plain
 
 _PACKAGE = "cornerwise.render.manuscript"
+_SHORT = 24  # letters of a text that stays on one line
 _ELEMENTS = {"plain": "", "italic": "i", "bold": "b", "subscript": "sub", "superscript": "sup"}
 
 
@@ -18,7 +19,7 @@ def html_text(table: ManuscriptTable) -> str:
     templates = environment(_PACKAGE)
     templates.filters["inked"] = _inked
     return templates.get_template("table.html").render(
-        table=table, title=plain(table.title), style=Markup(style), policy=policy(style)
+        table=table, title=plain(table.title), style=Markup(style), policy=policy(style), short=_SHORT
     )
 
 

@@ -8,7 +8,7 @@ from html import escape
 from typing import TYPE_CHECKING
 
 from .document import Cell, Column, ManuscriptTable
-from .layout import MARGIN_MM, PADDING_MM, PAGE_MM, Layout, layout
+from .layout import MARGIN_MM, PADDING_MM, Layout, layout
 from .packing import timeless
 from .words import Run, Words, plain
 
@@ -61,9 +61,8 @@ def _set_page(document: Document, set_out: Layout) -> None:
     from docx.shared import Mm
 
     section = document.sections[0]
-    narrow, wide = map(Mm, PAGE_MM)
     section.orientation = WD_ORIENT.LANDSCAPE if set_out.landscape else WD_ORIENT.PORTRAIT
-    section.page_width, section.page_height = (wide, narrow) if set_out.landscape else (narrow, wide)
+    section.page_width, section.page_height = map(Mm, set_out.page_mm)
     section.left_margin = section.right_margin = Mm(MARGIN_MM)
     section.top_margin = section.bottom_margin = Mm(MARGIN_MM)
 
