@@ -7,12 +7,12 @@ import subprocess
 from pathlib import Path
 
 import pytest
+from manuscript_example import hostile_tables_campaign
 
 import cornerwise
 from cornerwise.render.manuscript.files import manuscript_tables
 from cornerwise.render.manuscript.latex import escaped, latex_text
 from cornerwise.render.manuscript.options import TableOptions
-from manuscript_example import hostile_tables_campaign
 
 CYCLES = Path(__file__).parents[3] / "cycles"
 MISSING = None if shutil.which("pdflatex") else "no pdflatex on the path"

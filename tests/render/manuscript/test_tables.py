@@ -5,6 +5,7 @@ from dataclasses import replace
 from pathlib import Path
 
 import pytest
+from manuscript_example import ASIDE, CYCLES, LABELS, hostile_tables_campaign
 
 import cornerwise
 from cornerwise.errors import UsageError
@@ -19,7 +20,6 @@ from cornerwise.render.manuscript.options import TableOptions
 from cornerwise.render.manuscript.words import Run, plain, words
 from cornerwise.result import Result
 from cornerwise.unit_change import in_unit
-from manuscript_example import ASIDE, CYCLES, LABELS, hostile_tables_campaign
 
 CYCLES_FOLDER = Path(__file__).parents[3] / "cycles"
 ALL_COUPLING = [recipe.key for recipe in COUPLING_RECIPES]

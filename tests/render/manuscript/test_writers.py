@@ -9,6 +9,7 @@ from html.parser import HTMLParser
 
 import pytest
 from docx import Document
+from manuscript_example import CYCLES, LABELS, LATEX, hostile_tables_campaign
 from openpyxl import load_workbook
 from openpyxl.worksheet.worksheet import Worksheet
 
@@ -22,7 +23,6 @@ from cornerwise.render.manuscript.layout import layout
 from cornerwise.render.manuscript.options import TableOptions
 from cornerwise.render.manuscript.words import plain
 from cornerwise.result import Result
-from manuscript_example import CYCLES, LABELS, LATEX, hostile_tables_campaign
 
 WIDE = TableOptions(
     columns=["cycle", "interaction", "interval", "bootstrap", "p_value", "p_adjusted", "favours", "verdict",

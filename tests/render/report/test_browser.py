@@ -1,41 +1,19 @@
 """The report in a browser: it sorts, filters and opens, by mouse and keyboard, and calls nobody."""
 
-import os
 import re
-import shutil
 from collections.abc import Iterator
 
 import pytest
+from browsing import launched, require_browser, violations, watched
 from report_example import hostile_campaign
 
 from cornerwise.coupling import couple
 from cornerwise.render.report.page import report_html
 from cornerwise.result import Result
 
-_OPTIONS = [
-    "--headless", "--no-sandbox", "--disable-gpu", "--disable-quic", "--no-first-run",
-    "--disable-background-networking", "--disable-component-update", "--disable-sync",
-]  # fmt: skip
+require_browser("the report has")
 
-
-def _missing() -> str | None:
-    """Why there is no browser to test with."""
-    try:
-        import axe_playwright_python
-        import playwright
-    except ImportError as error:
-        return str(error)
-    del axe_playwright_python, playwright
-    return None if shutil.which("chromium") else "no chromium on the path"
-
-
-MISSING = _missing()
-if MISSING and os.environ.get("CORNERWISE_CI") != "1":
-    pytest.skip(f"the report is not tried in a browser: {MISSING}", allow_module_level=True)
-assert MISSING is None, f"the report has to be tried in a browser here: {MISSING}"
-
-from axe_playwright_python.sync_playwright import Axe  # noqa: E402
-from playwright.sync_api import Browser, Page, sync_playwright  # noqa: E402
+from playwright.sync_api import Browser, Page  # noqa: E402
 
 
 @pytest.fixture(scope="module")
@@ -52,27 +30,16 @@ def address(result: Result, tmp_path_factory: pytest.TempPathFactory) -> str:
 
 @pytest.fixture(scope="module")
 def browser() -> Iterator[Browser]:
-    with sync_playwright() as driver:
-        browser = driver.chromium.launch(executable_path=shutil.which("chromium"), args=_OPTIONS)
+    with launched() as browser:
         yield browser
-        browser.close()
 
 
 @pytest.fixture
 def opened(browser: Browser, address: str, request: pytest.FixtureRequest) -> Iterator[Page]:
     """The report; the test fails if the page complains, calls out or asks the user anything."""
     options = {"viewport": {"width": 1280, "height": 900}, **getattr(request, "param", {})}
-    context = browser.new_context(**options)
-    page = context.new_page()
-    complaints: list[str] = []
-    page.on("console", lambda message: complaints.append(message.text))
-    page.on("pageerror", lambda error: complaints.append(str(error)))
-    page.on("dialog", lambda dialog: complaints.append(dialog.message))
-    page.on("request", lambda sent: complaints.append(sent.url) if sent.url != address else None)
-    page.goto(address)
-    yield page
-    context.close()
-    assert complaints == []
+    with watched(browser, address, **options) as page:
+        yield page
 
 
 def _shown(page: Page) -> list[str]:
@@ -179,9 +146,7 @@ def test_nothing_makes_the_page_scroll_sideways(opened: Page) -> None:
 )
 def test_accessibility(opened: Page) -> None:
     opened.get_by_role("button", name="Open all").click()
-    violations = Axe().run(opened).response["violations"]
-    found = {one["id"]: [node["html"][:200] for node in one["nodes"][:3]] for one in violations}
-    assert found == {}
+    assert violations(opened) == {}
 
 
 @pytest.mark.parametrize("opened", [{"java_script_enabled": False}], indirect=True)
