@@ -17,7 +17,6 @@ require_browser("the tables have")
 
 from playwright.sync_api import Browser  # noqa: E402
 
-
 LINES = """all => all.map((one) => {
     const range = document.createRange();
     range.selectNodeContents(one);
