@@ -32,7 +32,7 @@ _CONSTRUCT: _Meaning = ("", "label of the construct, as in the tables that were 
 _UNIT: _Meaning = ("", "unit of the energies in this row, per channel")
 _DOF: _Meaning = ("1", "Welch-Satterthwaite degrees of freedom of std_uncertainty")
 _MEDIAN: _Meaning = ("mV", "median voltage, the mean over cells")
-_INTERACTION: _Meaning = (ENERGY, "interaction energy, the signed sum of the corners' energies")
+_INTERACTION: _Meaning = (ENERGY, "interaction energy I, the signed sum of the corners' energies")
 _LOW: _Meaning = (ENERGY, "lower limit of the interval that verdicts go by")
 _HIGH: _Meaning = (ENERGY, "upper limit of the interval that verdicts go by")
 _P_ADJUSTED: _Meaning = ("1", "p value adjusted for the number of cycles")
@@ -66,11 +66,11 @@ _INTERACTIONS: Mapping[str, _Meaning] = {
     "shortcut_bias_low": (ENERGY, "lower limit of the interval of the bias"),
     "shortcut_bias_high": (ENERGY, "upper limit of the interval of the bias"),
     "shortcut_verdict": ("", "whether the shortcut may be used"),
-    "charge_interaction_e0": ("e0", "signed sum of the corners' total charges; 0 where charges add up"),
+    "charge_interaction_e0": ("e0", "charge interaction J, the signed sum of the corners' total charges"),
     "charge_interaction_low": ("e0", "lower limit of its interval"),
     "charge_interaction_high": ("e0", "upper limit of its interval"),
     "interaction_verdict": _VERDICT,
-    "favours": ("", "state that the native interaction favours"),
+    "favours": ("", "state that the native interaction favours, where its sign is established"),
     "rank": _RANK,
     "rank_low": _RANK_LOW,
     "rank_high": _RANK_HIGH,
@@ -121,7 +121,7 @@ _CONSTRUCTS: Mapping[str, _Meaning] = {
     "charge_e0": ("e0", "total charge per channel that its energy is formed with"),
     "charge_sem_e0": ("e0", "standard uncertainty of that charge"),
     "charge_n": ("1", "number of values behind that charge"),
-    "charge_source": ("", "where that charge is from"),
+    "charge_source": ("", "its method, or whose it is: the wild type's, or a stated one with its citation"),
     "energy": (
         ENERGY,
         "activation free energy at the reference voltage; negative favours activation",
@@ -192,6 +192,11 @@ class Column:
     needed: bool  # False where it may be empty
     unit: str  # `ENERGY` for that of the row, "1" for plain numbers, empty for words
     meaning: str
+
+    @property
+    def explained(self) -> str:
+        """The meaning, and the words that it can be."""
+        return f"{self.meaning}: {', '.join(self.words)}" if self.words else self.meaning
 
 
 @dataclass(frozen=True, kw_only=True, slots=True)

@@ -12,7 +12,7 @@ from .document import Cell, ManuscriptTable
 from .flag_words import flag_notes
 from .notes import construct_notes, dash_note
 from .options import TableOptions
-from .recipes import ENERGY, LEVEL, Recipe, Shared, chosen, filled_groups
+from .recipes import ENERGY, LEVEL, Recipe, Shared, chosen, csv_columns, filled_groups
 from .words import Words, words
 
 _Row = ConstructRow
@@ -36,16 +36,16 @@ def _batches(row: _Row, _: Shared) -> Cell:
 RECIPES: tuple[Recipe[_Row], ...] = (
     Recipe(
         key="construct", head="Construct", numeric=False,
-        parts=(("construct", "", "label of the construct"),),
+        parts=csv_columns("constructs", "construct"),
         fill=lambda row, _: worded(row.construct),
     ),
     Recipe(
         key="mutations", head="Mutations", numeric=False,
-        parts=(("mutations", "", "mutations against the wild type, in residue order"),),
+        parts=csv_columns("constructs", "mutations"),
         fill=lambda row, _: worded("/".join(row.mutations) or None),
     ),
     Recipe(
-        key="cells", head="*n*", parts=(("cells", "", "cells behind the median voltage"),),
+        key="cells", head="*n*", parts=csv_columns("constructs", "cells"),
         fill=lambda row, _: counted(row.cells_used),
     ),
     Recipe(
@@ -54,69 +54,53 @@ RECIPES: tuple[Recipe[_Row], ...] = (
     ),
     Recipe(
         key="median", head="*V*~m~", unit="mV",
-        parts=(
-            ("median_mV", "mV", "median voltage, mean over cells"),
-            ("median_sem_mV", "mV", "standard error of that mean"),
-        ),
+        parts=csv_columns("constructs", "median_mV", "median_sem_mV"),
         fill=lambda row, shared: shared.rounding.measured(row.median_mv, row.median_sem_mv),
     ),
     Recipe(
         key="midpoint", head="*V*~½~", unit="mV",
-        parts=(("midpoint_mV", "mV", "voltage where the scaled curve is 0.5, mean over cells"),),
+        parts=csv_columns("midpoints", "midpoint_mV"),
         fill=lambda row, shared: shared.rounding.alone(row.midpoint_mv, row.median_sem_mv),
     ),
     Recipe(
         key="charge", head="*Q*", unit="*e*~0~",
-        parts=(
-            ("charge_e0", "e0", "total gating charge per channel that the energy is formed with"),
-            ("charge_sem_e0", "e0", "its standard uncertainty"),
-        ),
+        parts=csv_columns("constructs", "charge_e0", "charge_sem_e0"),
         fill=lambda row, shared: shared.rounding.measured(row.charge_e0, row.charge_sem_e0),
     ),
     Recipe(
-        key="charge_cells", head="*n*~Q~", parts=(("charge_n", "", "values behind that charge"),),
+        key="charge_cells", head="*n*~Q~", parts=csv_columns("constructs", "charge_n"),
         fill=lambda row, _: counted(row.charge_n),
     ),
     Recipe(
         key="charge_source", head="Source of *Q*", numeric=False,
-        parts=(("charge_source", "", "method, or whose charge was taken"),),
+        parts=csv_columns("constructs", "charge_source"),
         fill=_source,
     ),
     Recipe(
         key="energy", head="Δ*G*", unit=ENERGY,
-        parts=(
-            ("energy", ENERGY, "activation free energy, per channel"),
-            ("std_uncertainty", ENERGY, "its standard uncertainty"),
-        ),
+        parts=csv_columns("constructs", "energy", "std_uncertainty"),
         fill=lambda row, shared: shared.rounding.measured(row.energy, row.std_uncertainty),
     ),
     Recipe(
         key="dof", head="*ν*",
-        parts=(("dof", "", "Welch-Satterthwaite degrees of freedom of that uncertainty"),),
+        parts=csv_columns("constructs", "dof"),
         fill=lambda row, _: freedom(row.dof),
     ),
     Recipe(
         key="interval", head=LEVEL, unit=ENERGY,
-        parts=(
-            ("low", ENERGY, "lower limit of the interval of the energy"),
-            ("high", ENERGY, "upper limit of the interval of the energy"),
-        ),
+        parts=csv_columns("constructs", "low", "high"),
         fill=lambda row, shared: shared.rounding.interval((row.low, row.high), row.std_uncertainty),
     ),
     Recipe(
         key="charge_ratio", head="*Q*/*Q*~wt~",
-        parts=(
-            ("charge_ratio", "", "total charge relative to the wild type's"),
-            ("charge_ratio_low", "", "lower limit of that ratio's interval"),
-            ("charge_ratio_high", "", "upper limit of that ratio's interval"),
-        ),
+        parts=csv_columns("constructs", "charge_ratio", "charge_ratio_low", "charge_ratio_high"),
         fill=lambda row, shared: shared.rounding.with_limits(
             row.charge_ratio, (row.charge_ratio_low, row.charge_ratio_high)
         ),
     ),
     Recipe(
         key="charge_verdict", head="Charge", numeric=False,
-        parts=(("charge_verdict", "", "equal, changed, unresolved or assumed"),),
+        parts=csv_columns("constructs", "charge_verdict"),
         fill=lambda row, _: worded(row.charge_verdict),
     ),
     Recipe(

@@ -23,7 +23,7 @@ from .document import MISSING, Cell, ManuscriptTable
 from .flag_words import flag_notes
 from .notes import coupling_notes, dash_note
 from .options import TableOptions
-from .recipes import ENERGY, LEVEL, Recipe, Shared, chosen, filled_groups
+from .recipes import ENERGY, LEVEL, Recipe, Shared, chosen, csv_columns, filled_groups
 from .words import Words, words
 
 _Row = InteractionRow
@@ -73,47 +73,44 @@ def _rank(row: _Row, _: Shared) -> Cell:
 RECIPES: tuple[Recipe[_Row], ...] = (
     Recipe(
         key="cycle", head="Cycle", numeric=False,
-        parts=(("cycle", "", "name of the cycle, usually its mutations"),),
+        parts=csv_columns("interactions", "cycle"),
         fill=lambda row, _: worded(row.cycle),
     ),
     Recipe(
-        key="order", head="Order", parts=(("order", "", "number of mutations of the cycle"),),
+        key="order", head="Order", parts=csv_columns("interactions", "order"),
         fill=lambda row, _: counted(row.order),
     ),
     Recipe(
         key="mutations", head="Mutations", numeric=False,
-        parts=(("mutations", "", "mutations of the cycle, in residue order"),),
+        parts=csv_columns("interactions", "mutations"),
         fill=lambda row, _: worded("/".join(row.mutations)),
     ),
     Recipe(
         key="native_pair", head="Native pair", numeric=False,
-        parts=(("opposite_charges", "", "whether the native residues of the pair carry opposite charges"),),
+        parts=csv_columns("ranking", "opposite_charges"),
         fill=lambda row, _: worded(row.opposite_charges),
     ),
     Recipe(
         key="distance", head="Distance", unit="Å",
-        parts=(("distance_A", "Å", "distance of the pair's side chains in a structure"),),
+        parts=csv_columns("ranking", "distance_A"),
         fill=lambda row, _: to_decimals(row.distance_angstrom, 1),
     ),
     Recipe(
         key="interaction", head="*I* ± *u*", unit=ENERGY,
-        parts=(
-            ("interaction", ENERGY, "interaction energy I of the cycle, per channel"),
-            ("std_uncertainty", ENERGY, "standard uncertainty u of I"),
-        ),
+        parts=csv_columns("interactions", "interaction", "std_uncertainty"),
         fill=lambda row, shared: shared.rounding.measured(row.interaction, row.std_uncertainty),
     ),
     Recipe(
-        key="dof", head="*ν*", parts=(("dof", "", "Welch-Satterthwaite degrees of freedom of u"),),
+        key="dof", head="*ν*", parts=csv_columns("interactions", "dof"),
         fill=lambda row, _: freedom(row.dof),
     ),
     Recipe(
-        key="interval", head=LEVEL, unit=ENERGY, parts=_limits("", "the interval of I"),
+        key="interval", head=LEVEL, unit=ENERGY, parts=csv_columns("interactions", "low", "high"),
         fill=_interval(lambda row: (row.low, row.high)),
     ),
     Recipe(
         key="bootstrap", head="Bootstrap interval", unit=ENERGY,
-        parts=_limits("boot_", "the bootstrap interval of I"),
+        parts=csv_columns("interactions", "boot_low", "boot_high"),
         fill=_interval(lambda row: (row.boot_low, row.boot_high)),
     ),
     Recipe(
@@ -122,64 +119,55 @@ RECIPES: tuple[Recipe[_Row], ...] = (
         fill=_interval(lambda row: (row.simultaneous_low, row.simultaneous_high)),
     ),
     Recipe(
-        key="p_value", head="*p*", parts=(("p_value", "", "two-sided p value of I = 0"),),
+        key="p_value", head="*p*", parts=csv_columns("interactions", "p_value"),
         fill=lambda row, _: probability(row.p_value),
     ),
     Recipe(
         key="p_adjusted", head="*p*~adj~",
-        parts=(("p_adjusted", "", "p value adjusted for the number of cycles"),),
+        parts=csv_columns("interactions", "p_adjusted"),
         fill=lambda row, _: probability(row.p_adjusted),
     ),
     Recipe(
         key="favours", head="Favours", numeric=False,
-        parts=(("favours", "", "state that the native interaction favours, where its sign is established"),),
+        parts=csv_columns("interactions", "favours"),
         fill=lambda row, _: worded(row.favours),
     ),
     Recipe(
         key="verdict", head="Verdict", numeric=False,
-        parts=(("interaction_verdict", "", "coupled, detected, uncoupled or unresolved"),),
+        parts=csv_columns("interactions", "interaction_verdict"),
         fill=lambda row, _: worded(row.interaction_verdict),
     ),
     Recipe(
         key="rank", head="Rank",
-        parts=(
-            ("rank", "", "rank by strength, 1 the strongest"),
-            ("rank_low", "", "smallest rank that the data allow"),
-            ("rank_high", "", "largest rank that the data allow"),
-        ),
+        parts=csv_columns("interactions", "rank", "rank_low", "rank_high"),
         fill=_rank,
     ),
     Recipe(
         key="shrunken", head="Shrunken *I*", unit=ENERGY,
-        parts=(("shrunken", ENERGY, "I less what chance is likely to have added"),),
+        parts=csv_columns("ranking", "shrunken"),
         fill=_alone(lambda row: row.shrunken),
     ),
     Recipe(
         key="shortcut", head="From *V*~m~ alone", unit=ENERGY,
-        parts=(("shortcut", ENERGY, "the same sum with the wild type's charge in every corner"),),
+        parts=csv_columns("interactions", "shortcut"),
         fill=_alone(lambda row: row.shortcut),
     ),
     Recipe(
         key="shortcut_bias", head="Shortcut's error", unit=ENERGY,
-        parts=(
-            ("shortcut_bias", ENERGY, "I less the shortcut"),
-            *_limits("shortcut_bias_", "that error's interval"),
-        ),
+        parts=csv_columns("interactions", "shortcut_bias", "shortcut_bias_low", "shortcut_bias_high"),
         fill=lambda row, shared: shared.rounding.with_limits(
             row.shortcut_bias, (row.shortcut_bias_low, row.shortcut_bias_high)
         ),
     ),
     Recipe(
         key="shortcut_verdict", head="Shortcut", numeric=False,
-        parts=(("shortcut_verdict", "", "valid, invalid, unresolved or untested"),),
+        parts=csv_columns("interactions", "shortcut_verdict"),
         fill=lambda row, _: worded(row.shortcut_verdict),
     ),
     Recipe(
         key="charge_interaction", head="*J*", unit="*e*~0~",
-        parts=(
-            ("charge_interaction_e0", "e0", "charge interaction, the sum of s Q over the corners"),
-            ("charge_interaction_low", "e0", "lower limit of the interval of J"),
-            ("charge_interaction_high", "e0", "upper limit of the interval of J"),
+        parts=csv_columns(
+            "interactions", "charge_interaction_e0", "charge_interaction_low", "charge_interaction_high"
         ),
         fill=lambda row, shared: shared.rounding.with_limits(
             row.charge_interaction_e0, (row.charge_interaction_low, row.charge_interaction_high)

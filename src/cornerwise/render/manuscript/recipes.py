@@ -7,6 +7,8 @@ from dataclasses import dataclass
 from typing import Generic, TypeVar
 
 from ...campaign import Settings
+from ...columns import ENERGY as OF_THE_ROW
+from ...columns import OUTPUT_TABLES
 from ...result import ConstructRow
 from ..legend import interval_words
 from .cells import Rounding
@@ -16,6 +18,17 @@ from .words import words
 
 RowT = TypeVar("RowT")
 ENERGY, LEVEL = "{energy}", "{level}"  # stand for the energy unit and the level of the interval
+
+
+_UNITS = {OF_THE_ROW: ENERGY, "1": ""}
+
+
+def csv_columns(table: str, *names: str) -> tuple[tuple[str, str, str], ...]:
+    """Name, unit and meaning of values that are columns of a CSV file too, as they are told there."""
+    columns = {column.name: column for column in OUTPUT_TABLES[table].columns}
+    return tuple(
+        (name, _UNITS.get(columns[name].unit, columns[name].unit), columns[name].explained) for name in names
+    )
 
 
 @dataclass(frozen=True, kw_only=True, slots=True)
