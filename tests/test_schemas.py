@@ -26,7 +26,11 @@ from cornerwise.errors import DataRefused
 from cornerwise.intake import exclusions, listed
 from cornerwise.intake.findings import Findings
 from cornerwise.intake.settings import KEYS, RULES, SECTIONS, Document, read_settings
+from cornerwise.planning.assumed import Assumptions
+from cornerwise.planning.plan import plan_assumed
+from cornerwise.planning.request import PlanRequest
 from cornerwise.render.files import result_files
+from cornerwise.render.plan_files import plan_files
 from cornerwise.result import Result, checksum
 from cornerwise.result_reading import read_result
 
@@ -276,10 +280,12 @@ def _faults(path: Path, name: str) -> list[Any]:
 
 def test_tables_that_come_out_fit(shipped: list[Result], triple: Result, tmp_path: Path) -> None:
     seen = set()
-    for result in (*shipped, triple):
-        for name, text in result_files(result).items():
+    assumed = Assumptions(median_mv=(-40.0,), median_sd_mv=(2.5,), charge_e0=(13.0,), charge_sd_e0=(0.6,))
+    asked = PlanRequest(cells=(4, 8), half_width=1.0, recordings=60)
+    for files in (*map(result_files, (*shipped, triple)), plan_files(plan_assumed(assumed, asked))):
+        for name, text in files.items():
             if name.endswith(".csv"):
-                (tmp_path / name).write_text(text, encoding="utf-8")
+                (tmp_path / name).write_text(str(text), encoding="utf-8")
                 seen.add(name)
                 assert _faults(tmp_path / name, f"output/{name.removesuffix('.csv')}") == []
     assert seen == {f"{name}.csv" for name in OUTPUT_TABLES}

@@ -10,6 +10,7 @@ from collections.abc import Mapping
 from dataclasses import dataclass
 from typing import Any, Literal, Union, get_args, get_origin, get_type_hints
 
+from .plan_rows import NeedRow, OutlookRow, SplitRow
 from .rows import (
     BackgroundRow,
     BudgetRow,
@@ -181,6 +182,48 @@ _PER_SUBUNIT: Mapping[str, _Meaning] = {
     "energy_unit": ("", "unit of the energies in this row"),
 }
 
+_PLAN: Mapping[str, _Meaning] = {
+    "cycle": _CYCLE,
+    "order": ("1", "number of mutations of the cycle"),
+    "cells_each": ("1", "cells of every kind on every construct; empty for those there are"),
+    "half_width": (ENERGY, "expected half-width of the interval, every scatter being what it seems"),
+    "half_width_low": (ENERGY, "1 half-width in 10 lies below this"),
+    "half_width_high": (ENERGY, "1 half-width in 10 lies above this"),
+    "power": ("1", "probability that an interaction of true_interaction is detected"),
+    "power_low": ("1", "1 power in 10 lies below this, the scatters being as uncertain as they are"),
+    "power_high": ("1", "1 power in 10 lies above this"),
+    "assurance": ("1", "power averaged over what the scatters may be"),
+    "true_interaction": (ENERGY, "interaction energy against which power counts"),
+    "confidence": ("1", "level of the interval"),
+    "energy_unit": _UNIT,
+}
+
+_NEEDS: Mapping[str, _Meaning] = {
+    "subject": ("", "a cycle, a mutant whose charge is judged, or all"),
+    "goal": ("", "what shall be reached"),
+    "wanted": ("that of the goal", "half-width in the campaign's energy unit, or a probability"),
+    "further": (
+        "1",
+        "fewest further cells, every scatter being what it seems; empty where no number would do",
+    ),
+    "further_low": ("1", "number that would do with luck, in 1 of 10 cases"),
+    "further_high": ("1", "number that is enough in 9 of 10 cases"),
+    "expected": ("that of the goal", "half-width or probability with that number"),
+    "shares": ("", "how many cells of which kind and construct, separated by semicolons"),
+    "reason": ("", "why no number would do"),
+}
+
+_SPLIT: Mapping[str, _Meaning] = {
+    "construct": _CONSTRUCT,
+    "kind": ("", "what is recorded of a cell"),
+    "cells_now": ("1", "cells there are"),
+    "further": ("1", "further cells in the best split"),
+    "further_equal_split": ("1", "further cells if all constructs had the same number"),
+    "cycles": ("1", "number of cycles that these cells count for"),
+}
+
+_MAY_BE_EMPTY = ("reason",)  # a text without a word
+
 
 @dataclass(frozen=True, kw_only=True, slots=True)
 class Column:
@@ -201,7 +244,7 @@ class Column:
 
 @dataclass(frozen=True, kw_only=True, slots=True)
 class OutputTable:
-    """One table that comes out, a CSV file of ``--out``."""
+    """One table that comes out, a CSV file."""
 
     title: str
     kind: type[Row]
@@ -237,6 +280,9 @@ OUTPUT_TABLES: Mapping[str, OutputTable] = {
         ),
         ("budget", "a row a source of error of a cycle", BudgetRow, _BUDGET),
         ("per_subunit", "a row a cycle of a protein of several subunits", SubunitRow, _PER_SUBUNIT),
+        ("plan", "a row a cycle and number of cells: what to expect", OutlookRow, _PLAN),
+        ("needs", "a row a goal: fewest further cells", NeedRow, _NEEDS),
+        ("split", "a row a construct and kind of cell: the best split of further cells", SplitRow, _SPLIT),
     )
 }
 
@@ -245,9 +291,12 @@ def _column(name: str, hint: Any, unit: str, meaning: str) -> Column:
     members = get_args(hint) if get_origin(hint) in (Union, types.UnionType) else (hint,)
     kinds = [one for one in members if one is not types.NoneType]
     words = tuple(word for kind in kinds if get_origin(kind) is Literal for word in get_args(kind))
-    is_text = bool(words) or any(get_origin(kind) is tuple for kind in kinds)
+    is_list = any(get_origin(kind) is tuple for kind in kinds)
     return Column(
-        name=name, type=_TYPES[str] if is_text else _TYPES[kinds[0]], words=words,
-        needed=len(kinds) == len(members) and not any(get_origin(kind) is tuple for kind in kinds),
-        unit=unit, meaning=meaning,
-    )  # fmt: skip
+        name=name,
+        type="string" if words or is_list else _TYPES[kinds[0]],
+        words=words,
+        needed=len(kinds) == len(members) and not is_list and name not in _MAY_BE_EMPTY,
+        unit=unit,
+        meaning=meaning,
+    )
