@@ -40,7 +40,7 @@ FLOOR_OF = {room: floor for floor, rooms in enumerate(FLOORS) for room in rooms}
 
 ALLOWED = {
     "pandas": {"intake", "result", "tables"},  # the result only for to_frame, on demand
-    "openpyxl": {"intake", "render"},
+    "openpyxl": {"render"},
     "docx": {"render"},
     "rich": {"render"},
     "typer": {"cli", "console", "plan_command"},

@@ -6,6 +6,19 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 
 
+def visible(text: str) -> str:
+    r"""Text without anything a terminal would obey: what cannot be seen is spelt out.
+
+    Examples
+    --------
+    >>> visible("seal\x07 lost")
+    'seal\\x07 lost'
+    """
+    if text.isprintable():
+        return text
+    return "".join(c if c.isprintable() else c.encode("unicode_escape").decode("ascii") for c in text)
+
+
 @dataclass(frozen=True, kw_only=True, slots=True)
 class Origin:
     """Where in the user's files a value was read.

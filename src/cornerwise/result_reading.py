@@ -11,7 +11,7 @@ from pathlib import Path
 from typing import Any, Literal, NoReturn, Union, get_args, get_origin, get_type_hints
 
 from .campaign import InputFile, Settings
-from .errors import DataRefused, Origin, Problem
+from .errors import DataRefused, Origin, Problem, visible
 from .flags import Flag
 from .result import SCHEMA, Result, checksum
 from .rows import BackgroundRow, BudgetRow, CellRow, ConstructRow, InteractionRow
@@ -26,6 +26,7 @@ TABLES: Mapping[str, type[Row]] = {
 }
 _OTHERS = ("schema", "settings", "energy_threshold", "energy_tolerance", "background", "flags", "notes",
            "inputs", "versions")  # fmt: skip
+MOST_BYTES = 100_000_000
 _AGAIN = "compute the campaign again with cornerwise couple --out"
 
 
@@ -38,8 +39,8 @@ class _Misfit(Exception):
 
 
 def _refuse(file: str, found: str, expected: str, place: str = "") -> NoReturn:
-    origin = Origin(file=file, column=place or None)
-    raise DataRefused([Problem(origin=origin, found=found, expected=expected, remedy=_AGAIN)])
+    origin = Origin(file=visible(file), column=visible(place)[:80] or None)
+    raise DataRefused([Problem(origin=origin, found=visible(found), expected=expected, remedy=_AGAIN)])
 
 
 def read_result(path: Path) -> Result:
@@ -63,15 +64,22 @@ def read_result(path: Path) -> Result:
     """
     file = str(path)
     try:
-        text = path.read_text(encoding="utf-8")
+        with path.open("rb") as stream:
+            data = stream.read(MOST_BYTES + 1)
+        text = data.decode("utf-8")
     except (OSError, UnicodeDecodeError) as error:
         _refuse(file, f"no readable file ({error})", "a result.json written by cornerwise")
+    if len(data) > MOST_BYTES:
+        _refuse(file, f"more than {MOST_BYTES / 1e6:.0f} MB", "a result.json written by cornerwise")
     document = _document(file, text)
     try:
         result = _result(document)
     except _Misfit as misfit:
         _refuse(file, repr(misfit.found)[:80], misfit.expected, misfit.place)
     _check_names(file, result)
+    for name in ("energy_threshold", "energy_tolerance"):
+        if document[name] != getattr(result.settings, name):
+            _refuse(file, f"{document[name]!r}"[:80], f"{getattr(result.settings, name)!r}", name)
     return result
 
 
@@ -90,9 +98,13 @@ def _document(file: str, text: str) -> dict[str, Any]:
     if not isinstance(document, dict) or "schema" not in document:
         _refuse(file, "no schema", f'"schema": "{SCHEMA}"')
     if document["schema"] != SCHEMA:
-        _refuse(file, f"schema {document['schema']!r}", f"schema {SCHEMA!r}", "schema")
+        _refuse(file, f"schema {document['schema']!r}"[:80], f"schema {SCHEMA!r}", "schema")
     stated = document.pop("checksum", None)
-    if stated != checksum(document):
+    try:
+        sound = stated == checksum(document)
+    except (ValueError, RecursionError):  # numbers beyond every bound
+        sound = False
+    if not sound:
         _refuse(file, "contents that do not match their checksum", "a file that was not edited", "checksum")
     return document
 
@@ -126,7 +138,7 @@ def _check_parts(document: Mapping[str, Any]) -> None:
     for name in ("background", "notes"):
         _several((str, ...), document[name], name)
     versions = document.get("versions")
-    if not isinstance(versions, dict) or not all(isinstance(one, str) for one in versions.values()):
+    if not isinstance(versions, dict) or not all(map(_is_text, (*versions, *versions.values()))):
         raise _Misfit("versions", versions, "names and versions")
 
 
@@ -189,14 +201,20 @@ def _several(hints: tuple[Any, ...], value: object, place: str) -> tuple[Any, ..
     return tuple(_value(hint, one, place) for hint, one in zip(hints, value, strict=True))
 
 
+def _is_text(value: object) -> bool:
+    return isinstance(value, str) and value.isprintable()
+
+
 def _is_number(value: object) -> bool:
-    return isinstance(value, int | float) and not isinstance(value, bool) and math.isfinite(value)
+    if isinstance(value, int):
+        return not isinstance(value, bool) and abs(value) < 2**63
+    return isinstance(value, float) and math.isfinite(value)
 
 
 _PLAIN: Mapping[Any, Callable[[object], bool]] = {
-    str: lambda value: isinstance(value, str),
+    str: _is_text,
     bool: lambda value: isinstance(value, bool),
-    int: lambda value: isinstance(value, int) and not isinstance(value, bool),
+    int: lambda value: isinstance(value, int) and _is_number(value),
     float: _is_number,
     types.NoneType: lambda value: value is None,
 }

@@ -141,4 +141,4 @@ def test_values_below_an_empty_header(tmp_path: Path) -> None:
 
 def test_too_many_rows(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
     monkeypatch.setattr(text, "MOST_ROWS", 20)
-    assert_refused(folder(tmp_path / "a"), file="curves.csv", match="34 rows; expected at most 20 rows")
+    assert_refused(folder(tmp_path / "a"), file="curves.csv", match="33 rows; expected at most 20 rows")

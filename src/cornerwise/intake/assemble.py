@@ -9,9 +9,11 @@ from ..mutations import Mutation
 from .checks import check
 from .cycles import cycles_of
 from .exclusions import check_exclusions
-from .findings import Findings
+from .findings import Findings, refuse_many
 from .labels import Genotypes, read_genotypes
 from .parts import Parts
+
+MOST_CONSTRUCTS = 5000
 
 
 def assemble(parts: Parts, findings: Findings) -> Campaign:
@@ -29,6 +31,9 @@ def assemble(parts: Parts, findings: Findings) -> Campaign:
     Campaign
         To be used only if there are no findings.
     """
+    if len(parts.seen) > MOST_CONSTRUCTS:
+        refuse_many(f"{len(parts.seen)} constructs", MOST_CONSTRUCTS, findings)
+        return Campaign(settings=parts.settings, constructs=(), cycles=())
     genotypes = read_genotypes(parts.seen, parts.settings.wild_type, parts.listed, findings)
     check(parts, genotypes.aliases, findings)
     known = parts.settings.wild_type in parts.seen

@@ -7,40 +7,23 @@ displayed otherwise (1 as 001, 100000 as 1E+05) is refused, since the label mean
 
 from __future__ import annotations
 
-import io
-import re
-import warnings
-import zipfile
-from collections.abc import Collection
+from collections.abc import Callable, Sequence
 from types import TracebackType
-from typing import Any
-from xml.etree.ElementTree import ParseError
-
-import openpyxl
-from openpyxl.utils import get_column_letter
+from typing import TypeVar
 
 from ..errors import Origin
 from .findings import Findings, shown
 from .header import RawTable
+from .package import DamagedBook, Package
+from .sheets import Displayed, Sheets, Unreadable, Value, column_letters
 from .table import SPREADSHEET_ERRORS
-from .text import MOST_ROWS, Record, refuse_empty, refuse_long, tabulate
+from .text import MOST_ROWS, Record, composed, refuse_empty, refuse_long, tabulate
 
 TEXT_COLUMNS = (
     "construct", "cell", "batch", "phase", "method", "citation", "name", "mutations", "reason"
 )  # fmt: skip
-MOST_UNPACKED_BYTES = 2_000_000_000
 
-_PLAIN_FORMATS = ("General", "0", "@")  # those that display a number as its digits
-_FORMULA = re.compile(rb"<f[ >/]")
-
-Values = tuple[Any, ...]
-
-
-class _NoValue:
-    """A formula without a stored value."""
-
-
-NO_VALUE = _NoValue()
+_Read = TypeVar("_Read")
 
 
 class Book:
@@ -55,28 +38,15 @@ class Book:
 
     Raises
     ------
-    ValueError
-        If the file is no workbook, with the reason.
+    DamagedBook
+        If the file is no workbook, with the reason; reading its rows may raise it too.
     """
 
     def __init__(self, data: bytes, file: str) -> None:
         self.file = file
-        self._data = data
-        try:
-            with zipfile.ZipFile(io.BytesIO(data)) as archive:
-                if sum(item.file_size for item in archive.infolist()) > MOST_UNPACKED_BYTES:
-                    raise ValueError("it unpacks to more than 2 GB")
-                self._has_formulas = any(
-                    _FORMULA.search(archive.read(item))
-                    for item in archive.namelist()
-                    if item.startswith("xl/worksheets/")
-                )
-            self._book = self._load(stored_values=True)
-        except zipfile.BadZipFile:
-            raise ValueError("it is damaged, protected by a password or of an older format") from None
-        except (KeyError, OSError, ParseError, TypeError, AttributeError) as error:
-            raise ValueError(f"it is damaged: {error}") from None
-        self._sheets: dict[str, list[tuple[int, Values]]] = {}
+        self._package = Package(data)
+        self._sheets = Sheets(self._package)
+        self._rows: dict[str, list[tuple[int, tuple[Value, ...]]]] = {}
 
     def __enter__(self) -> Book:
         return self
@@ -84,76 +54,31 @@ class Book:
     def __exit__(
         self, kind: type[BaseException] | None, error: BaseException | None, trace: TracebackType | None
     ) -> None:
-        self._book.close()
+        self._package.close()
 
     @property
     def titles(self) -> list[str]:
         """Titles of all sheets with cells, in the order of the workbook."""
-        return [sheet.title for sheet in self._book.worksheets]
+        return list(self._sheets.parts)
 
     def place(self, title: str) -> str:
         """Name a sheet as in the faults."""
         return f"{self.file}, sheet {title}"
 
-    def rows(self, title: str) -> list[tuple[int, Values]]:
-        """Row number and values of every row that holds any, empty cells at its end cut off."""
-        if title not in self._sheets:
-            sheet = self._book[title]
-            sheet.reset_dimensions()
-            unstored = self._unstored(title)
-            rows = []
-            for number, values in enumerate(sheet.iter_rows(values_only=True), start=1):
-                if unstored and number in unstored:
-                    values = tuple(NO_VALUE if i in unstored[number] else v for i, v in enumerate(values))
-                cut = len(values)
-                while cut and (values[cut - 1] is None or values[cut - 1] == ""):
-                    cut -= 1
-                if cut and not _is_comment(values[0]):
-                    rows.append((number, values[:cut]))
-            self._sheets[title] = rows
-        return self._sheets[title]
-
-    def formats(self, title: str, wanted: Collection[tuple[int, int]]) -> dict[tuple[int, int], str]:
-        """Number formats of cells, by row number and column index."""
-        if not wanted:
-            return {}
-        rows = {row for row, _ in wanted}
-        return {
-            (number, index): str(cells[index].number_format)
-            for number, cells in enumerate(self._book[title].iter_rows(), start=1)
-            if number in rows
-            for index in range(len(cells))
-            if (number, index) in wanted
-        }
-
-    def _unstored(self, title: str) -> dict[int, set[int]]:
-        """Column indices of formulas without a stored value, by row number."""
-        if not self._has_formulas:
-            return {}
-        book = self._load(stored_values=False)
-        formulas, stored = book[title], self._book[title]
-        formulas.reset_dimensions()
-        unstored: dict[int, set[int]] = {}
-        for number, (cells, values) in enumerate(
-            zip(formulas.iter_rows(), stored.iter_rows(values_only=True), strict=True), start=1
-        ):
-            for index, (cell, value) in enumerate(zip(cells, values, strict=True)):
-                if cell.data_type == "f" and value is None:
-                    unstored.setdefault(number, set()).add(index)
-        book.close()
-        return unstored
-
-    def _load(self, *, stored_values: bool) -> Any:
-        with warnings.catch_warnings():
-            warnings.simplefilter("ignore")  # about styles and extensions that do not concern values
-            return openpyxl.load_workbook(io.BytesIO(self._data), read_only=True, data_only=stored_values)
+    def rows(self, title: str) -> list[tuple[int, tuple[Value, ...]]]:
+        """Row number and values of every row that holds any, notes left out."""
+        if title not in self._rows:
+            rows = self._sheets.rows(title)
+            self._rows[title] = [(number, values) for number, values in rows if not _is_comment(values[0])]
+        return self._rows[title]
 
 
-def open_book(data: bytes, file: str, findings: Findings) -> Book | None:
-    """Open a workbook; None when that fails, which is a fault."""
+def from_book(data: bytes, file: str, findings: Findings, read: Callable[[Book], _Read]) -> _Read | None:
+    """What `read` makes of a workbook; None when it cannot be opened or is damaged, which is a fault."""
     try:
-        return Book(data, file)
-    except ValueError as error:
+        with Book(data, file) as book:
+            return read(book)
+    except DamagedBook as error:
         findings.add(
             Origin(file=file),
             found=f"a file that cannot be opened as a workbook; {error}",
@@ -184,13 +109,14 @@ def read_sheet(book: Book, title: str, findings: Findings) -> RawTable | None:
     if not rows or len(rows) > MOST_ROWS:
         refuse_long(file, len(rows), findings) if rows else refuse_empty(file, findings)
         return None
-    header = [str(value).strip() if isinstance(value, str) else "" for value in rows[0][1]]
+    header = _names(rows[0][1])
     labels = {index for index, name in enumerate(header) if name in TEXT_COLUMNS}
-    displayed = book.formats(title, _numbers_among_labels(rows[1:], labels))
     records: list[Record] = []
     lost: list[str] = []
     for number, values in rows:
-        texts = [cell_text(value, displayed.get((number, i), "General")) for i, value in enumerate(values)]
+        texts = [
+            cell_text(value, as_label=i in labels and number > rows[0][0]) for i, value in enumerate(values)
+        ]
         faulty = [
             i
             for i, text in enumerate(texts)
@@ -198,7 +124,7 @@ def read_sheet(book: Book, title: str, findings: Findings) -> RawTable | None:
         ]
         for index in faulty:
             name = header[index] if index < len(header) else ""
-            origin = Origin(file=file, row=number, column=name or get_column_letter(index + 1))
+            origin = Origin(file=file, row=number, column=name or column_letters(index + 1))
             refuse_cell(origin, texts[index], findings)
         if faulty:
             lost.append("\n".join(texts))
@@ -215,27 +141,23 @@ class Refusal(str):
     __slots__ = ()
 
 
-def cell_text(value: object, number_format: str) -> str:
+def cell_text(value: Value, *, as_label: bool = False) -> str:
     """Text of a cell, or a `Refusal`.
 
     Examples
     --------
-    >>> cell_text(1.0, "General")
+    >>> cell_text(1.0)
     '1'
     """
     if value is None:
         return ""
+    if isinstance(value, Unreadable):
+        return Refusal(value)
     if isinstance(value, str):
-        return Refusal(f"the spreadsheet error {value}") if value in SPREADSHEET_ERRORS else value
-    if isinstance(value, bool):
-        return Refusal(f"the truth value {str(value).upper()}")
-    if isinstance(value, int | float):
-        if number_format not in _PLAIN_FORMATS:
-            return Refusal(f"the number {value:g}, displayed in the format {number_format}")
-        return digits(value)
-    if value is NO_VALUE:
-        return Refusal("a formula without a stored value")
-    return Refusal(f"the date or time {value}")
+        return Refusal(f"the spreadsheet error {value}") if value in SPREADSHEET_ERRORS else composed(value)
+    if as_label and isinstance(value, Displayed):
+        return Refusal(f"the number {value:g}, displayed in the format {value.number_format}")
+    return digits(value)
 
 
 def digits(number: float) -> str:
@@ -247,15 +169,10 @@ def _is_comment(value: object) -> bool:
     return isinstance(value, str) and value.startswith("#") and value not in SPREADSHEET_ERRORS
 
 
-def _numbers_among_labels(rows: list[tuple[int, Values]], labels: Collection[int]) -> set[tuple[int, int]]:
-    return {
-        (number, index)
-        for number, values in rows
-        for index in labels
-        if index < len(values)
-        and isinstance(values[index], int | float)
-        and not isinstance(values[index], bool)
-    }
+def _names(header: Sequence[Value]) -> list[str]:
+    """Names in a header as far as they are texts."""
+    plain = (name if isinstance(name, str) and not isinstance(name, Unreadable) else "" for name in header)
+    return [name.strip() for name in plain]
 
 
 def refuse_cell(origin: Origin, text: str, findings: Findings) -> None:

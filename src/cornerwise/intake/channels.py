@@ -94,7 +94,8 @@ def charge_per_channel(table: Table, of_cells: BoolArray) -> tuple[FloatArray, F
     sem = _counts_sem(table, channels)
     charge = np.where(is_raw, np.nan, direct)
     if RAW in table:
-        unit = next(name for name in RAW_UNITS if name == table.unit(RAW))
+        # A header that is spelt wrong, and refused for that, may not say which unit it meant.
+        unit = next((name for name in RAW_UNITS if name == table.unit(RAW)), RAW_UNITS[0])
         with np.errstate(over="ignore"):  # what overflows is impossible, and refused as such
             charge = np.where(is_raw, raw * elementary_charges(unit) / channels, charge)
     charge = _possible(table, charge, is_raw)

@@ -2,12 +2,13 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Mapping, Sequence, Set
 
 from ..mutations import (
     HIGHEST_LISTED_ORDER,
     Cycle,
     CycleRequest,
+    Mutation,
     Mutations,
     complete_cycle,
     find_cycles,
@@ -40,7 +41,12 @@ def cycles_of(
     """
     labels = genotypes.labels
     if requests:
-        complete = [request for request in requests if _is_complete(request, genotypes, labels, findings)]
+        carried = {mutation for mutations in labels for mutation in mutations}
+        complete = [
+            request
+            for request in requests
+            if _all_carried(request, genotypes, carried, findings) and _is_complete(request, labels, findings)
+        ]
         return tuple(complete_cycle(request.mutations, labels, request.name) for request in complete)
     found = find_cycles(labels)
     if not found:
@@ -48,12 +54,14 @@ def cycles_of(
     return found
 
 
-def _is_complete(
-    request: CycleRequest, genotypes: Genotypes, labels: Mapping[Mutations, str], findings: Findings
+def _all_carried(
+    request: CycleRequest, genotypes: Genotypes, carried: Set[Mutation], findings: Findings
 ) -> bool:
-    carried = {mutation for mutations in labels for mutation in mutations}
+    """Whether every mutation of a cycle is carried by some construct and not by all; if not, a fault each."""
     shared = [mutation for mutation in request.mutations if mutation in genotypes.background]
-    unknown = [mutation for mutation in request.mutations if mutation not in (*carried, *shared)]
+    unknown = [
+        mutation for mutation in request.mutations if mutation not in carried and mutation not in shared
+    ]
     for mutation in shared:
         findings.add(
             request.origin,
@@ -69,8 +77,10 @@ def _is_complete(
             expected="mutations of the constructs in the tables",
             remedy=f"did you mean {close}?" if close else "correct it, or add the constructs that carry it",
         )
-    if shared or unknown:
-        return False
+    return not shared and not unknown
+
+
+def _is_complete(request: CycleRequest, labels: Mapping[Mutations, str], findings: Findings) -> bool:
     corners = 2 ** len(request.mutations)
     if len(request.mutations) > HIGHEST_LISTED_ORDER and corners > len(labels):
         missing = f"fewer than the {corners} constructs it needs"

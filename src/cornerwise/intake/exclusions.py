@@ -7,6 +7,7 @@ refused must be deleted instead.
 
 from __future__ import annotations
 
+from collections import defaultdict
 from collections.abc import Iterable, Mapping
 
 from ..campaign import Exclusion
@@ -90,8 +91,9 @@ def check_exclusions(parts: Parts, requested: Iterable[Cycle], findings: Finding
     findings : Findings
         Takes every fault.
     """
+    known = _known_cells(parts)
     for exclusion, origin in parts.exclusions.items():
-        _check_cell(parts, exclusion, origin, findings)
+        _check_cell(parts, known, exclusion, origin, findings)
     wild_type = parts.settings.wild_type
     needed = {wild_type: "the wild type"}
     for cycle in requested:
@@ -102,11 +104,21 @@ def check_exclusions(parts: Parts, requested: Iterable[Cycle], findings: Finding
             _refuse_no_charge(parts, wild_type, findings)
 
 
-def _check_cell(parts: Parts, exclusion: Exclusion, origin: Origin, findings: Findings) -> None:
+def _known_cells(parts: Parts) -> dict[str, set[str]]:
+    """Cells of each construct in any table."""
+    known: dict[str, set[str]] = defaultdict(set)
+    for table in (parts.curves, parts.charges, parts.openings):
+        for construct, cell in table.cells:
+            known[construct].add(cell)
+    return known
+
+
+def _check_cell(
+    parts: Parts, known: Mapping[str, set[str]], exclusion: Exclusion, origin: Origin, findings: Findings
+) -> None:
     tables = (parts.curves, parts.charges, parts.openings)
     construct, cell = exclusion.construct, exclusion.cell
-    known = {label for table in tables for label, _ in table.cells}
-    own = {name for table in tables for label, name in table.cells if label == construct}
+    own = known.get(construct, set())
     unread = any(not table.readable or construct in table.lost or cell in table.lost for table in tables)
     if unread or cell in own:
         return

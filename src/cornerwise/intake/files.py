@@ -3,18 +3,22 @@
 from __future__ import annotations
 
 import hashlib
+import os
 from collections import defaultdict
+from collections.abc import Iterator
 from pathlib import Path
 
 from ..campaign import InputFile
-from ..errors import Origin
+from ..errors import Origin, visible
 from .findings import Findings, listing, nearest, shown
 
 TABLES = ("curves", "medians", "charges", "openings")
 SUFFIXES = (".csv", ".tsv", ".xlsx")
 CAMPAIGN_FILE = "campaign.toml"
-MOST_BYTES = 200_000_000
+MOST_BYTES = 100_000_000
+MOST_SETTINGS_BYTES = 1_000_000  # of campaign.toml
 
+_LEFT_BEHIND = (".", "~$", "__MACOSX", "Thumbs.db", "desktop.ini")  # by other programs
 _IN_CAMPAIGN_FILE = ("exclude", "exclusions")  # a table of this name would change figures if it were read
 _TABLE_LIKE = (*SUFFIXES, ".xls", ".xlsm", ".xlsb", ".ods", ".tab", ".dat", ".txt")
 
@@ -25,10 +29,12 @@ def locate(folder: Path, findings: Findings) -> dict[str, Path]:
     Parameters
     ----------
     folder : Path
-        The campaign's folder. Upper and lower case in file names do not matter. Folders, hidden files and
-        files that are no tables are passed over, and so are tables whose names resemble none of the known.
+        The campaign's folder. Upper and lower case in file names do not matter. Folders, hidden files, what
+        other programs leave behind and files that are no tables are passed over, and so are tables whose
+        names resemble none of the known.
     findings : Findings
-        Takes a missing ``campaign.toml``, two files of one table, names that are nearly right.
+        Takes a missing ``campaign.toml``, two files of one table, names that are nearly right, known names
+        of what is no file, and links that lead out of the folder.
 
     Returns
     -------
@@ -36,7 +42,7 @@ def locate(folder: Path, findings: Findings) -> dict[str, Path]:
         ``campaign`` and the tables that are there.
     """
     try:
-        files = sorted(p for p in folder.iterdir() if p.is_file() and not p.name.startswith((".", "~$")))
+        files = sorted(_files_in(folder, findings))
     except OSError as error:
         findings.add(
             Origin(file=str(folder)),
@@ -54,14 +60,7 @@ def locate(folder: Path, findings: Findings) -> dict[str, Path]:
             known[stem].append(path)
         else:
             _judge_stray(path, findings)
-    for name, paths in known.items():
-        if len(paths) > 1:
-            findings.add(
-                Origin(file=paths[-1].name),
-                found=f"the files {' and '.join(path.name for path in paths)}",
-                expected=f"one file for {name}",
-                remedy="delete one, or move it out of the folder",
-            )
+    _refuse_several(known, findings)
     if "campaign" not in known:
         _refuse_missing_campaign(files, findings)
     if not {"curves", "medians"} & known.keys():
@@ -74,25 +73,75 @@ def locate(folder: Path, findings: Findings) -> dict[str, Path]:
     return {name: known[name][0] for name in ("campaign", *TABLES) if name in known}
 
 
+def _files_in(folder: Path, findings: Findings) -> Iterator[Path]:
+    """Files of a folder that are the user's own; one with a known name that cannot be read is a fault."""
+    for path in folder.iterdir():
+        if path.name.startswith(_LEFT_BEHIND):
+            continue
+        if path.is_symlink() and not _stays_below(folder, path):
+            _refuse_link(path, findings)
+        elif path.is_file():
+            yield path
+        elif _is_known(path):
+            findings.add(
+                Origin(file=path.name),
+                found="a folder, a device or a link that leads nowhere",
+                expected=f"a file {path.name}",
+                remedy="put the file there, or rename what is there",
+            )
+
+
+def _is_known(path: Path) -> bool:
+    known = path.stem.casefold() in TABLES and path.suffix.casefold() in SUFFIXES
+    return known or path.name.casefold() == CAMPAIGN_FILE
+
+
+def _stays_below(folder: Path, link: Path) -> bool:
+    """Whether a link leads to something inside the folder."""
+    return Path(os.path.realpath(link)).is_relative_to(os.path.realpath(folder))
+
+
+def _refuse_link(path: Path, findings: Findings) -> None:
+    if path.is_file() and _is_known(path):
+        findings.add(
+            Origin(file=path.name),
+            found="a link to a file outside the folder",
+            expected="the campaign's files inside its folder",
+            remedy="put a copy of the file there, so that the campaign is whole wherever it is kept",
+        )
+
+
+def _refuse_several(known: dict[str, list[Path]], findings: Findings) -> None:
+    for name, paths in known.items():
+        if len(paths) > 1:
+            findings.add(
+                Origin(file=paths[-1].name),
+                found=f"the files {' and '.join(path.name for path in paths)}",
+                expected=f"one file for {name}",
+                remedy="delete one, or move it out of the folder",
+            )
+
+
 def read_bytes(path: Path, findings: Findings) -> tuple[bytes, InputFile] | None:
     """Read a file and take its SHA-256; None when that fails, which is a fault."""
     origin = Origin(file=path.name)
+    most = MOST_SETTINGS_BYTES if path.name.casefold() == CAMPAIGN_FILE else MOST_BYTES
     try:
         size = path.stat().st_size
-        data = path.read_bytes() if size <= MOST_BYTES else b""
+        data = path.read_bytes() if size <= most else b""
     except OSError as error:
         findings.add(
             origin, found=f"a file that cannot be opened ({error.strerror})", expected="a readable file",
             remedy="check its permissions and whether another program holds it",
         )  # fmt: skip
         return None
-    if size > MOST_BYTES:
+    if size > most:
         findings.add(
-            origin, found=f"{size / 1e6:.0f} MB", expected=f"at most {MOST_BYTES / 1e6:.0f} MB",
+            origin, found=f"{size / 1e6:.1f} MB", expected=f"at most {most / 1e6:.0f} MB",
             remedy="keep one point per voltage step, not the recorded traces",
         )  # fmt: skip
         return None
-    return data, InputFile(name=path.name, sha256=hashlib.sha256(data).hexdigest())
+    return data, InputFile(name=visible(path.name), sha256=hashlib.sha256(data).hexdigest())
 
 
 def _judge_stray(path: Path, findings: Findings) -> None:

@@ -24,6 +24,7 @@ from .spelling import meant_keys
 CYCLE_KEYS = ("name", "mutations")
 FEWEST_MUTATIONS = 2  # of a cycle
 WORDS = allowed.items(allowed.label())  # the mutations of a construct
+MOST_MUTATIONS = 200  # of a construct
 
 
 def listed_mutations(document: Document, findings: Findings) -> dict[str, Mutations]:
@@ -132,6 +133,12 @@ def mutation_set(words: object, origin: Origin, findings: Findings) -> Mutations
         findings.add(
             origin, found=say(words), expected='a list of mutations such as ["E181A", "R212Q"]',
             remedy="write each mutation in quotes, inside square brackets",
+        )  # fmt: skip
+        return None
+    if len(words) > MOST_MUTATIONS:
+        findings.add(
+            origin, found=f"{len(words)} mutations", expected=f"at most {MOST_MUTATIONS}",
+            remedy="name those that differ between the constructs",
         )  # fmt: skip
         return None
     faults = [fault for word in words if (fault := _word_fault(word)) is not None]

@@ -17,7 +17,7 @@ from ..campaign import Campaign, InputFile
 from ..errors import DataRefused, Origin
 from . import text, workbook
 from .assemble import assemble
-from .book import open_book
+from .book import Book, from_book
 from .charges import ChargesRead, read_charges
 from .curves import CurvesRead, read_curves
 from .exclusions import read_exclusions
@@ -108,24 +108,20 @@ def _open_workbook(path: Path, findings: Findings) -> Source | None:
     contents = read_bytes(path, findings)
     if contents is None:
         return None
-    book = open_book(contents[0], path.name, findings)
-    if book is None:
-        return None
-    with book:
+
+    def source(book: Book) -> Source:
         document = workbook.read_document(book, findings)
         tables = workbook.read_tables(book, TABLES, findings)
-    return Source(document=document, tables=tables, inputs=(contents[1],))
+        return Source(document=document, tables=tables, inputs=(contents[1],))
+
+    return from_book(contents[0], path.name, findings, source)
 
 
 def _table(data: bytes, path: Path, name: str, findings: Findings) -> RawTable | None:
     if path.suffix.casefold() != ".xlsx":
         decoded = text.decode(data, path.name, findings)
         return None if decoded is None else text.split(decoded, path.name, findings)
-    book = open_book(data, path.name, findings)
-    if book is None:
-        return None
-    with book:
-        return workbook.read_single_table(book, name, findings)
+    return from_book(data, path.name, findings, lambda book: workbook.read_single_table(book, name, findings))
 
 
 def _campaign(source: Source | None, findings: Findings) -> Campaign | None:

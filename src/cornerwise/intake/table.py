@@ -19,6 +19,7 @@ TextArray = NDArray[np.object_]
 IntArray = NDArray[np.int64]
 BoolArray = NDArray[np.bool_]
 
+LONGEST_TEXT = 1000  # letters of a label or a citation
 SPREADSHEET_ERRORS = ("#N/A", "#NULL!", "#DIV/0!", "#VALUE!", "#REF!", "#NAME?", "#NUM!")
 
 
@@ -83,10 +84,12 @@ class Table:
             return np.full(len(self), "", dtype=object)
         codes, uniques = factorize(self.raw.columns[self.found[base]])
         stripped = np.array([text.strip() for text in uniques], dtype=object)
-        for code, text in enumerate(stripped):
-            if text in SPREADSHEET_ERRORS or not text.isprintable():
-                for index in np.flatnonzero(codes == code):
-                    self._refuse_word(int(index), base, text)
+        wrong = [
+            text in SPREADSHEET_ERRORS or not text.isprintable() or len(text) > LONGEST_TEXT
+            for text in stripped
+        ]
+        for index in np.flatnonzero(np.array(wrong, dtype=bool)[codes]):
+            self._refuse_word(int(index), base, stripped[codes[index]])
         return stripped[codes]
 
     def labels(self, base: str) -> TextArray:
@@ -175,7 +178,9 @@ class Table:
 
     def _refuse_word(self, index: int, base: str, text: str) -> None:
         found, remedy = f"the spreadsheet error {text}", "mend the formula or type the label"
-        if text not in SPREADSHEET_ERRORS:
+        if len(text) > LONGEST_TEXT:
+            found, remedy = f"{len(text)} letters", f"shorten it to {LONGEST_TEXT} letters at most"
+        elif text not in SPREADSHEET_ERRORS:
             codes = ", ".join(f"U+{ord(c):04X}" for c in text if not c.isprintable())
             found, remedy = f"{text!a} with an invisible character ({codes})", "type the label anew"
         self.refuse(index, base, found=found, expected="a label of visible characters", remedy=remedy)

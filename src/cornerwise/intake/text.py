@@ -4,13 +4,16 @@ Encodings: UTF-8 and UTF-16, with a byte-order mark or (told by the zero bytes) 
 no valid UTF-8 is read as cp1252. Delimiter: the comma, the semicolon or the tab, whichever turns the
 header into the most known column names. Lines that are empty, hold delimiters only, or begin with ``#``
 are passed over; a label that begins with ``#`` must stand in quotes. Rows are counted as in a text
-editor, from 1. A quoted field may not run over the end of its line.
+editor, from 1. A quoted field may not run over the end of its line. Letters that can be written in two ways,
+such as an e with its accent, are composed, so that a label is the same wherever it was typed.
 """
 
 from __future__ import annotations
 
 import codecs
 import csv
+import re
+import unicodedata
 from collections.abc import Sequence
 
 import numpy as np
@@ -18,10 +21,17 @@ import numpy as np
 from ..errors import Origin
 from .findings import Findings, shown
 from .header import RawTable
-from .table import SPREADSHEET_ERRORS
+from .table import LONGEST_TEXT, SPREADSHEET_ERRORS
 
 DELIMITERS = {",": "commas", ";": "semicolons", "\t": "tabs"}
-MOST_ROWS = 5_000_000
+MOST_ROWS = 1_000_000
+MOST_COLUMNS = 16_384
+MOST_FIELDS = 8_000_000  # of a table
+LONGEST_HEADER = 100_000  # letters in which column names are looked for
+
+_MOST_ACCENTS = 30
+_NOT_LATIN = re.compile("[\u0300-\U0010ffff]{31,}")  # the only runs in which that many accents can be
+_MOST_LOST = 1_000_000  # letters that are searched for labels
 
 Record = tuple[int, list[str]]  # row number and fields
 
@@ -68,7 +78,27 @@ def decode(data: bytes, file: str, findings: Findings) -> str | None:
             remedy="save the file as UTF-8 text",
         )
         return None
-    return text.replace("\r\n", "\n").replace("\r", "\n")
+    return composed(text.replace("\r\n", "\n").replace("\r", "\n"))
+
+
+def composed(text: str) -> str:
+    """Letters and their accents as one character each (Unicode normalisation form C).
+
+    Text with more than 30 accents on one letter stays as it is: no one writes it, and composing it takes long
+    (stream-safe text, Unicode Standard Annex 15).
+    """
+    if text.isascii() or any(_overloaded(run[0]) for run in _NOT_LATIN.finditer(text)):
+        return text
+    return unicodedata.normalize("NFC", text)
+
+
+def _overloaded(run: str) -> bool:
+    accents = 0
+    for letter in run:
+        accents = accents + 1 if unicodedata.combining(letter) else 0
+        if accents > _MOST_ACCENTS:
+            return True
+    return False
 
 
 def split(text: str, file: str, findings: Findings) -> RawTable | None:
@@ -88,12 +118,17 @@ def split(text: str, file: str, findings: Findings) -> RawTable | None:
     RawTable or None
         None if no header could be read. Rows that were refused are left out.
     """
-    lines = [_without_comment(line) for line in text.split("\n")]
-    if len(lines) > MOST_ROWS:
-        refuse_long(file, len(lines), findings)
+    rows = text.count("\n")
+    if rows > MOST_ROWS:
+        refuse_long(file, rows, findings)
         return None
+    lines = [_without_comment(line) for line in text.split("\n")]
     first = next((line for line in lines if line), "")
+    if refused_wide(file, max(map(first.count, DELIMITERS)) + 1, findings):
+        return None
     delimiter = sniff(first)
+    if refused_large(file, rows + text.count(delimiter), findings):
+        return None
     records, lost = _records(lines, delimiter, file, findings)
     if not records:
         if not lost:
@@ -115,7 +150,7 @@ def sniff(header: str) -> str:
     """
 
     def score(delimiter: str) -> tuple[int, int]:
-        fields = next(csv.reader([header], delimiter=delimiter), [])
+        fields = next(csv.reader([header[:LONGEST_HEADER]], delimiter=delimiter), [])
         known = [field for field in fields if field.strip().partition("_")[0].casefold() in _COLUMN_WORDS]
         return len(known), len(fields)
 
@@ -124,7 +159,7 @@ def sniff(header: str) -> str:
 
 def tabulate(
     records: list[Record], delimiter: str, file: str, findings: Findings, *, lost: Sequence[str] = ()
-) -> RawTable:
+) -> RawTable | None:
     """Put records, the header first, into columns; refuse uneven rows.
 
     Parameters
@@ -146,6 +181,13 @@ def tabulate(
         uneven = [(row, fields) for row, fields in records[1:] if len(fields) != len(header)]
         _refuse_uneven(uneven, len(header), delimiter, file, findings)
         lost = [*lost, *("\n".join(fields) for _, fields in uneven)]
+    if long := [name for name in header if len(name) > LONGEST_TEXT]:
+        origin = Origin(file=file, row=header_row, column=long[0])
+        findings.add(
+            origin, found=f"a header of {len(long[0])} letters", expected=f"at most {LONGEST_TEXT}",
+            remedy="shorten it",
+        )  # fmt: skip
+        return None
     columns = list(zip(*(fields for _, fields in even), strict=True)) or [()] * len(header)
     named = [i for i, name in enumerate(header) if name.strip() or any(map(str.strip, columns[i]))]
     return RawTable(
@@ -155,8 +197,22 @@ def tabulate(
         rows=np.array([row for row, _ in even], dtype=np.int64),
         columns=tuple(columns[index] for index in named),
         delimiter=delimiter,
-        lost="\n".join(lost),
+        lost=_searched(lost),
     )
+
+
+class _Anything(str):
+    """Text of which it would take too long to say what it does not hold."""
+
+    __slots__ = ()
+
+    def __contains__(self, key: object) -> bool:
+        return True
+
+
+def _searched(lost: Sequence[str]) -> str:
+    """What was lost, as a text in which labels are looked for."""
+    return _Anything("...") if sum(map(len, lost)) > _MOST_LOST else "\n".join(lost)
 
 
 def _without_comment(line: str) -> str:
@@ -219,6 +275,26 @@ def refuse_long(file: str, rows: int, findings: Findings) -> None:
         Origin(file=file), found=f"{rows} rows", expected=f"at most {MOST_ROWS} rows",
         remedy="keep one point per voltage step, not the recorded traces",
     )  # fmt: skip
+
+
+def refused_wide(file: str, columns: int, findings: Findings) -> bool:
+    """Whether a table has too many columns, which is a fault."""
+    if columns > MOST_COLUMNS:
+        findings.add(
+            Origin(file=file), found=f"{columns} columns", expected=f"at most {MOST_COLUMNS} columns",
+            remedy="use one row per point instead of one column per cell",
+        )  # fmt: skip
+    return columns > MOST_COLUMNS
+
+
+def refused_large(file: str, fields: int, findings: Findings) -> bool:
+    """Whether a table has too many fields, which is a fault."""
+    if fields > MOST_FIELDS:
+        findings.add(
+            Origin(file=file), found=f"{fields} fields", expected=f"at most {MOST_FIELDS} fields",
+            remedy="keep one point per voltage step, not the recorded traces",
+        )  # fmt: skip
+    return fields > MOST_FIELDS
 
 
 def _refuse_single_column(file: str, row: int, line: str, findings: Findings) -> None:

@@ -11,6 +11,9 @@ from .findings import Findings
 from .settings import Document
 from .toml_lines import lines_of_keys
 
+MOST_NAMES = 20  # joined by dots; the time a parser takes grows with their square
+
+_DOTTED = re.compile(rf"(?<![\w-])(?:[\w-]++\s*+\.\s*+){{{MOST_NAMES}}}")
 _LINE = re.compile(r"\(at line (\d+), column \d+\)")
 
 
@@ -19,17 +22,27 @@ def read_toml(data: bytes, name: str, findings: Findings) -> Document | None:
     decoded = text.decode(data, name, findings)
     if decoded is None:
         return None
+    if dotted := _DOTTED.search(decoded):
+        row = decoded.count("\n", 0, dotted.start()) + 1
+        _refuse(Origin(file=name, row=row), f"more than {MOST_NAMES} names joined by dots", findings)
+        return None
     try:
         values = tomllib.loads(decoded)
+        rows = {path: (name, line) for path, line in lines_of_keys(decoded).items()}
     except tomllib.TOMLDecodeError as error:
         message = str(error)
         line = _LINE.search(message)
         row = int(line[1]) if line else decoded.count("\n") + 1
-        found = f"a line that is no TOML ({_LINE.sub('', message).strip()})"
-        findings.add(
-            Origin(file=name, row=row), found=found, expected='lines such as wild_type = "WT"',
-            remedy="put text in quotes, write numbers with a decimal point and each key once",
-        )  # fmt: skip
+        _refuse(Origin(file=name, row=row), _LINE.sub("", message).strip(), findings)
         return None
-    rows = {path: (name, line) for path, line in lines_of_keys(decoded).items()}
+    except (ValueError, RecursionError):  # a number of thousands of digits, lists in lists without end
+        _refuse(Origin(file=name), "a number too long or lists too deep to be read", findings)
+        return None
     return Document(values=values, file=name, rows=rows)
+
+
+def _refuse(origin: Origin, why: str, findings: Findings) -> None:
+    findings.add(
+        origin, found=f"a line that is no TOML ({why})", expected='lines such as wild_type = "WT"',
+        remedy="put text in quotes, write numbers with a decimal point and each key once",
+    )  # fmt: skip

@@ -11,6 +11,7 @@ import tomllib
 from collections.abc import Iterator, Mapping
 
 LONGEST_STATEMENT = 200  # lines; beyond it the places of what follows stay unknown
+MOST_LETTERS = 20_000  # of a statement that runs over several lines; likewise
 
 Path = tuple[str | int, ...]
 
@@ -51,7 +52,8 @@ def _statements(text: str) -> Iterator[tuple[int, str, Mapping[str, object]]]:
     gathered: list[str] = []
     for number, line in enumerate(text.split("\n"), start=1):
         gathered.append(line)
-        if len(gathered) > LONGEST_STATEMENT:
+        letters = sum(map(len, gathered)) if len(gathered) > 1 else 0
+        if len(gathered) > LONGEST_STATEMENT or letters > MOST_LETTERS:
             return
         try:
             values = tomllib.loads("\n".join(gathered))

@@ -26,7 +26,9 @@ from .exclusions import EXCLUDE_KEYS
 from .findings import Findings, nearest, shown
 from .header import Field, RawTable
 from .settings import Document
+from .sheets import Truth, Value
 from .table import Table
+from .text import refuse_empty
 
 CAMPAIGN_SHEETS = ("campaign", "mutations", "cycles", "exclude")
 NOTES = ("notes", "readme")
@@ -69,6 +71,7 @@ def read_single_table(book: Book, name: str, findings: Findings) -> RawTable | N
         )
     own = [title for title in titles if _folded(title) == name] or titles or book.titles[:1]
     if not own:
+        refuse_empty(book.file, findings)
         return None
     findings.take_up(book.place(own[0]))
     return read_sheet(book, own[0], findings)
@@ -125,7 +128,6 @@ def _keys(book: Book, title: str, places: Places, findings: Findings) -> dict[st
     file, rows = book.place(title), book.rows(title)
     if rows and [str(value).strip().casefold() for value in rows[0][1]] == ["key", "value"]:
         rows = rows[1:]
-    formats = book.formats(title, {(number, 1) for number, _ in rows})
     values: dict[str, object] = {}
     for number, cells in rows:
         key = str(cells[0] or "").strip()
@@ -135,11 +137,11 @@ def _keys(book: Book, title: str, places: Places, findings: Findings) -> dict[st
             _refuse_row(origin, key, len(cells), findings)
             continue
         places[path] = (file, number)
-        text = cell_text(cells[1], formats.get((number, 1), "General") if key in TEXT_KEYS else "General")
-        if isinstance(text, Refusal):
+        text = cell_text(cells[1], as_label=key in TEXT_KEYS)
+        if isinstance(text, Refusal) and not isinstance(cells[1], Truth):
             refuse_cell(origin, text, findings)
             continue
-        value = text if isinstance(cells[1], str) or key in TEXT_KEYS else _plain(cells[1])
+        value = text if key in TEXT_KEYS and not isinstance(cells[1], Truth) else _plain(cells[1])
         if len(path) == 1:
             values[key] = value
         else:
@@ -149,9 +151,13 @@ def _keys(book: Book, title: str, places: Places, findings: Findings) -> dict[st
     return values
 
 
-def _plain(value: object) -> object:
-    """Turn whole numbers into integers: a spreadsheet knows no difference."""
-    return int(value) if isinstance(value, float) and value.is_integer() else value
+def _plain(value: Value) -> object:
+    """Value as a TOML file would give it; a spreadsheet does not tell whole numbers from others."""
+    if isinstance(value, Truth):
+        return value.holds
+    if isinstance(value, float):
+        return int(value) if value.is_integer() else float(value)
+    return value
 
 
 def _refuse_row(origin: Origin, key: str, width: int, findings: Findings) -> None:
