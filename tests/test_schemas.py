@@ -24,8 +24,10 @@ import cornerwise
 from cornerwise.columns import OUTPUT_TABLES
 from cornerwise.errors import DataRefused
 from cornerwise.intake import exclusions, listed
+from cornerwise.intake.files import TABLES as READ_TABLES
 from cornerwise.intake.findings import Findings
 from cornerwise.intake.settings import KEYS, RULES, SECTIONS, Document, read_settings
+from cornerwise.intake.table_schemas import LAYOUTS
 from cornerwise.planning.assumed import Assumptions
 from cornerwise.planning.plan import plan_assumed
 from cornerwise.planning.request import PlanRequest
@@ -94,6 +96,11 @@ def test_table_schemas_are_valid(name: str) -> None:
 @pytest.mark.parametrize("folder", CAMPAIGNS, ids=lambda path: path.name)
 def test_shipped_campaign_files_fit(folder: Path) -> None:
     CAMPAIGN.validate(tomllib.loads((folder / "campaign.toml").read_text(encoding="utf-8")))
+
+
+def test_every_key_and_every_table_has_its_schema() -> None:
+    assert set(SCHEMAS["campaign"]["properties"]) == {*KEYS, *SECTIONS}
+    assert {name.partition("_")[0] for name in LAYOUTS} == set(READ_TABLES)
 
 
 def _is_read(values: dict[str, Any]) -> bool:
