@@ -23,7 +23,7 @@ FLOORS = [
     {"charge_judgement"},
     {"tables"},
     {"rows", "plan_rows", "simulation"},
-    {"result", "columns"},
+    {"result", "columns", "protocols"},
     {"result_reading"},
     {"result_schema"},
     {"charge_trace"},
@@ -32,7 +32,7 @@ FLOORS = [
     {"unit_change"},
     {"intake", "render", "starter"},
     {"console", "formats"},
-    {"plan_command"},
+    {"plan_command", "design_commands"},
     {"cli"},
     {"__main__"},
 ]
@@ -43,7 +43,7 @@ ALLOWED = {
     "openpyxl": {"render"},
     "docx": {"render"},
     "rich": {"render"},
-    "typer": {"cli", "console", "plan_command"},
+    "typer": {"cli", "console", "plan_command", "design_commands"},
     "statsmodels": {"intervals"},  # on demand
     "matplotlib": {"render"},
     "fontTools": {"render"},

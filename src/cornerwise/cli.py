@@ -12,6 +12,7 @@ import typer
 from typer.core import TyperGroup
 
 from .console import CampaignPath, Force, Json, expect_room, progress, report, write
+from .design_commands import protocol, simulate
 from .errors import CornerwiseError, UsageError
 from .plan_command import plan
 
@@ -85,36 +86,8 @@ def new(
         print(folder / name)
 
 
-@app.command()
-def simulate(
-    model_file: Annotated[Path, typer.Argument(metavar="MODEL.toml", help="Model file.")],
-    out: Annotated[Path, typer.Option(metavar="DIR", help="Write the campaign into DIR.")],
-    force: Force = False,
-    as_json: Json = False,
-) -> None:
-    """Draw a campaign with a known truth from a gating model.
-
-    Prints what is true; DIR gets the campaign and, in the folder truth, the model and the true values.
-
-    \b
-    For example:
-      cornerwise simulate model.toml --out trial
-      cornerwise couple trial
-    """  # noqa: D301
-    from . import read_model, truth_of
-    from . import simulate as draw
-    from .render.machine import truth_json
-    from .render.simulated import campaign_files
-    from .render.truth import print_truth
-
-    expect_room(out, force=force)
-    model = read_model(model_file)
-    truth = truth_of(model)
-    write(campaign_files(draw(model), truth, model), out, force=force)
-    if as_json:
-        print(truth_json(truth), end="")
-    else:
-        print_truth(truth, sys.stdout)
+app.command()(simulate)
+app.command()(protocol)
 
 
 @app.command()

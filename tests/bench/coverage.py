@@ -31,6 +31,7 @@ from cornerwise.energies import EnergyBook
 from cornerwise.interactions import interact, interaction_draws
 from cornerwise.intervals import expanded_percentile_interval, t_interval
 from cornerwise.mutations import find_cycles, parse_label
+from cornerwise.simulation.scattering import standard_deviates
 from cornerwise.units import energy_per_e0_mv
 
 LABELS = ("WT", "A1G", "C2S", "A1G/C2S")
@@ -84,15 +85,6 @@ def grid() -> list[Case]:
     ]
 
 
-def standard(shape: str, rng: np.random.Generator, size: tuple[int, ...]) -> np.ndarray:
-    """Numbers of mean 0 and standard deviation 1."""
-    if shape == "normal":
-        return rng.standard_normal(size)
-    if shape == "skewed":
-        return (rng.gamma(4.0, size=size) - 4.0) / 2.0
-    return rng.standard_t(5, size=size) / math.sqrt(5 / 3)
-
-
 def names_of_batches(case: Case, corner: int, n: int) -> list[str | None]:
     if case.batches == "none":
         return [None] * n
@@ -109,8 +101,8 @@ def simulate(case: Case, campaigns: int) -> tuple[list[np.ndarray], list[np.ndar
     effects: dict[str | None, np.ndarray] = {None: np.zeros(campaigns)}
     for corner, n in enumerate(case.sizes):
         factor = 3.0 if case.scatter == "3:1" and corner == 3 else 1.0
-        v = standard(case.shape, rng, (campaigns, n))
-        q = standard(case.shape, rng, (campaigns, n))
+        v = standard_deviates(case.shape, rng, (campaigns, n))
+        q = standard_deviates(case.shape, rng, (campaigns, n))
         if case.recording == "paired":
             q = SHARED_PART * v + math.sqrt(1 - SHARED_PART**2) * q
         own = names_of_batches(case, corner, n)

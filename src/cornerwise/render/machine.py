@@ -6,12 +6,14 @@ import dataclasses
 import json
 
 from ..planning.plan import Plan
+from ..protocols import ProtocolCheck
 from ..result import Result
 from ..simulation import Truth
 from ..surveying import Survey
 
 SURVEY_SCHEMA = "cornerwise-survey/1"
 TRUTH_SCHEMA = "cornerwise-truth/1"
+PROTOCOLS_SCHEMA = "cornerwise-protocols/1"
 RANKING_SCHEMA = "cornerwise-ranking/1"
 PLAN_SCHEMA = "cornerwise-plan/1"
 
@@ -27,6 +29,17 @@ def survey_json(found: Survey) -> str:
         "cycles": found.cycles,
         "incomplete": [{"construct": label, "lacks": missing} for label, missing in found.incomplete],
         "flags": [dataclasses.asdict(flag) for flag in found.flags],
+    }
+    return json.dumps(document, indent=1, ensure_ascii=False, allow_nan=False) + "\n"
+
+
+def protocols_json(found: ProtocolCheck) -> str:
+    """Text of a check of voltage protocols as JSON, full precision."""
+    document = {
+        "schema": PROTOCOLS_SCHEMA,
+        "question": dataclasses.asdict(found.question),
+        "protocols": [dataclasses.asdict(row) for row in found.rows],
+        "advised": None if found.advised is None else dataclasses.asdict(found.advised),
     }
     return json.dumps(document, indent=1, ensure_ascii=False, allow_nan=False) + "\n"
 

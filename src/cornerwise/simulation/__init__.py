@@ -1,6 +1,6 @@
 """Campaigns with a known truth, drawn from a gating model and what mutations do to it."""
 
-from .drawing import simulate
+from .drawing import simulate, voltages_mv
 from .model import Coupling, Effect, Model, Recording, SideState, Step
 from .schemes import scheme_of
 from .truth import ConstructTruth, CycleTruth, Truth, truth_of
@@ -18,4 +18,5 @@ __all__ = [
     "scheme_of",
     "simulate",
     "truth_of",
+    "voltages_mv",
 ]

@@ -53,8 +53,8 @@ def _construct(model: Model, label: str, mutations: Mutations) -> Construct:
 
 
 def voltages_mv(first: float, last: float, step: float) -> FloatArray:
-    """Voltages of a protocol (mV)."""
-    return np.arange(first, last + step / 2, step)
+    """Voltages of a protocol (mV), none beyond `last`."""
+    return np.arange(first, last + 1e-6 * step, step)
 
 
 def _batch(how: Recording, number: int) -> str | None:
