@@ -6,6 +6,8 @@ import subprocess
 import sys
 from pathlib import Path
 
+import cornerwise
+
 TOP = Path(__file__).parents[1]
 TEXT = (TOP / "README.md").read_text(encoding="utf-8")
 
@@ -42,3 +44,14 @@ def test_every_file_that_is_named_exists() -> None:
     named = set(re.findall(r"`((?:docs|cycles|examples|tests)/[\w./-]+)`", TEXT))
     assert named
     assert [name for name in sorted(named) if not (TOP / name).exists()] == []
+
+
+def test_the_files_of_out_are_the_ones_that_are_written() -> None:
+    part = TEXT.split("## What comes out")[1].split("In the tables value")[0]
+    rows = [line.split("|")[1] for line in part.splitlines() if line.startswith("| `")]
+    stems = [name for first in rows for name in re.findall(r"`([\w/.]+)`", first)]
+    endings = re.findall(r"`(\.\w+)`", part)
+    named = {stem for stem in stems if "." in stem}
+    named |= {f"{stem}{ending}" for stem in stems if re.search(r"/\w+$", stem) for ending in endings}
+    result = cornerwise.couple(cornerwise.read(TOP / "cycles" / "orvane"))
+    assert named == set(cornerwise.output_files(result))

@@ -17,7 +17,7 @@ from cornerwise.render.manuscript.couplings import coupling_table
 from cornerwise.render.manuscript.document import ManuscriptTable
 from cornerwise.render.manuscript.flag_words import FLAG_WORDS
 from cornerwise.render.manuscript.options import TableOptions
-from cornerwise.render.manuscript.words import Run, plain, words
+from cornerwise.render.manuscript.words import Run, plain, printable, words
 from cornerwise.result import Result
 from cornerwise.unit_change import in_unit
 
@@ -255,8 +255,6 @@ def test_without_an_uncertainty_a_value_stands_alone() -> None:
 def test_labels_are_one_printable_line() -> None:
     table = coupling_table(cornerwise.couple(hostile_tables_campaign()), TableOptions(columns=["cycle"]))
     assert set(CYCLES.values()) <= set(_column(table, "cycle"))
-    from cornerwise.render.manuscript.cells import printable
-
     assert printable("a\nb\x07c\u202ed") == "a b c d"
 
 

@@ -4,6 +4,7 @@ import io
 import re
 import time
 import zipfile
+from dataclasses import replace
 from html import unescape
 from html.parser import HTMLParser
 
@@ -76,6 +77,13 @@ def test_no_date_is_in_a_container(files: dict, name: str) -> None:
         assert {entry.date_time for entry in container.infolist()} == {(1980, 1, 1, 0, 0, 0)}
         assert b"dcterms" not in re.sub(rb"xmlns:\w+=\S+", b"", container.read("docProps/core.xml"))
         assert container.testzip() is None
+
+
+def test_what_no_format_can_hold_becomes_a_space(result: Result) -> None:
+    settings = replace(result.settings, title="one\x0btwo\ud800\nthree")
+    files = table_files(replace(result, settings=settings), TableOptions(columns=["cycle"]))
+    assert "one two  three." in _word(files, "couplings").paragraphs[0].text
+    assert "one two  three." in files["tables/couplings.md"]
 
 
 # Word

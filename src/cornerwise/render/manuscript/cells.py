@@ -7,14 +7,10 @@ from dataclasses import dataclass
 
 from ..rounding import DIGIT_RULES, SMALLEST_P, decimals_for, number, p_words, span, with_uncertainty
 from .document import MISSING, Cell
+from .words import printable
 
 MOST_FREEDOM = 1000  # more are told as a limit: Student's t is then the normal distribution
 Limits = tuple[float | None, float | None]
-
-
-def printable(text: str) -> str:
-    """A label on one line, without characters that a file format forbids."""
-    return "".join(letter if letter.isprintable() else " " for letter in text)
 
 
 def worded(text: str | None) -> Cell:

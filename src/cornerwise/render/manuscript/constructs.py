@@ -3,16 +3,17 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from functools import partial
 
 from ...result import ConstructRow, Result
 from ..methods import counted as number_of
-from ..ordering import by_strength, flag_marks, grouped
-from .cells import Rounding, counted, flag_letters, freedom, worded
+from ..ordering import by_strength, grouped
+from .assembly import assembled
+from .cells import counted, flag_letters, freedom, worded
 from .document import Cell, ManuscriptTable
-from .flag_words import flag_notes
-from .notes import construct_notes, dash_note
+from .notes import construct_notes
 from .options import TableOptions
-from .recipes import ENERGY, LEVEL, Recipe, Shared, chosen, csv_columns, filled_groups
+from .recipes import ENERGY, LEVEL, Recipe, Shared, chosen, csv_columns, shared_by
 from .words import Words, words
 
 _Row = ConstructRow
@@ -127,22 +128,16 @@ def construct_table(result: Result, options: TableOptions) -> ManuscriptTable:
         If a column is unknown.
     """
     recipes = chosen(RECIPES, options.construct_columns, USUAL, "construct table")
-    shared = Shared(
-        settings=result.settings,
-        rounding=Rounding(options.digits),
-        marks=flag_marks(code for row in result.constructs for code in row.flags),
-        constructs={row.construct: row for row in result.constructs},
-    )
-    keys = {recipe.key for recipe in recipes}
-    groups = filled_groups(recipes, _groups(result, shared, options.group), shared)
-    flags = flag_notes(result.flags, shared.marks, shared.constructs) if "flags" in keys else []
-    return ManuscriptTable(
+    codes = (code for row in result.constructs for code in row.flags)
+    return assembled(
+        recipes,
+        _groups(result, options.group),
+        shared_by(result, options.digits, codes),
         name="constructs",
         number="S1",
         title=_title(result),
-        columns=tuple(recipe.column(result.settings) for recipe in recipes),
-        groups=groups,
-        notes=(*construct_notes(result, keys), *dash_note(groups), *flags),
+        notes=partial(construct_notes, result),
+        about=[row.construct for row in result.constructs],
     )
 
 
@@ -157,10 +152,11 @@ def _title(result: Result) -> Words:
 _BY_MUTATIONS = ("Wild type", "Single mutants", "Double mutants", "Triple mutants")
 
 
-def _groups(result: Result, shared: Shared, group: str) -> list[tuple[str, Sequence[_Row]]]:
+def _groups(result: Result, group: str) -> list[tuple[str, Sequence[_Row]]]:
     if group == "pair":
+        constructs = {row.construct: row for row in result.constructs}
         return [
-            (row.cycle, [shared.constructs[label] for label, _ in row.corners])
+            (row.cycle, [constructs[label] for label, _ in row.corners])
             for row in by_strength(result.interactions)
         ]
     if group == "construct":

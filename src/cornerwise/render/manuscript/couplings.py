@@ -3,14 +3,15 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Sequence
+from functools import partial
 
 from ...mutations import named_mutation
 from ...result import InteractionRow, Result
 from ..methods import counted as number_of
-from ..ordering import by_strength, flag_marks, grouped
+from ..ordering import by_strength, grouped
+from .assembly import assembled
 from .cells import (
     Limits,
-    Rounding,
     counted,
     flag_letters,
     freedom,
@@ -20,10 +21,9 @@ from .cells import (
     worded,
 )  # fmt: skip
 from .document import MISSING, Cell, ManuscriptTable
-from .flag_words import flag_notes
-from .notes import coupling_notes, dash_note
+from .notes import coupling_notes
 from .options import TableOptions
-from .recipes import ENERGY, LEVEL, Recipe, Shared, chosen, csv_columns, filled_groups
+from .recipes import ENERGY, LEVEL, Recipe, Shared, chosen, csv_columns, shared_by
 from .words import Words, words
 
 _Row = InteractionRow
@@ -212,23 +212,15 @@ def coupling_table(result: Result, options: TableOptions) -> ManuscriptTable:
     usual = [key for key in USUAL if stated or key != "batches"]
     recipes = chosen(RECIPES, options.columns, usual, "coupling table")
     rows = by_strength(result.interactions)
-    shared = Shared(
-        settings=result.settings,
-        rounding=Rounding(options.digits),
-        marks=flag_marks(code for row in rows for code in row.flags),
-        constructs={row.construct: row for row in result.constructs},
-    )
-    keys = {recipe.key for recipe in recipes}
-    groups = filled_groups(recipes, _groups(rows, options.group), shared)
-    about = [name for row in rows for name in (row.cycle, *(label for label, _ in row.corners))]
-    flags = flag_notes(result.flags, shared.marks, about) if "flags" in keys else []
-    return ManuscriptTable(
+    return assembled(
+        recipes,
+        _groups(rows, options.group),
+        shared_by(result, options.digits, (code for row in rows for code in row.flags)),
         name="couplings",
         number="1",
         title=_title(result, options.group),
-        columns=tuple(recipe.column(result.settings) for recipe in recipes),
-        groups=groups,
-        notes=(*coupling_notes(result, keys), *dash_note(groups), *flags),
+        notes=partial(coupling_notes, result),
+        about=[name for row in rows for name in (row.cycle, *(label for label, _ in row.corners))],
     )
 
 

@@ -6,7 +6,6 @@ from collections.abc import Iterable, Mapping, Sequence
 
 from ...flags import FLAG_CODES, Flag, FlagCode
 from ...measurements import FEWEST_CELLS
-from .cells import printable
 from .document import Note
 from .words import words
 
@@ -49,7 +48,7 @@ def flag_notes(flags: Sequence[Flag], marked: Mapping[str, str], about: Iterable
     wanted, notes = set(about), []
     for code in (code for code in FLAG_CODES if code in marked):
         subjects = list(dict.fromkeys(f.construct or f.subject for f in flags if f.code == code))
-        named = _named([printable(subject) for subject in subjects if subject in wanted])
+        named = _named([subject for subject in subjects if subject in wanted])
         text = words("{code}: {what}{named}.", code=code, what=FLAG_WORDS[code], named=named)
         notes.append(Note(mark=marked[code], text=text))
     return notes

@@ -10,7 +10,6 @@ from ...result import CellRow, Result
 from ..legend import CAUTION, interval_words, percent, sign_sentences
 from ..methods import ADJUSTMENTS, batch_sentence, charge_sentence, counted
 from ..ordering import grouped
-from .cells import printable
 from .document import MISSING, Group, Note
 from .words import Words, joined, words
 
@@ -77,7 +76,7 @@ def construct_notes(result: Result, columns: Collection[str]) -> list[Note]:
     verdicts = {
         "charge_ratio": words(
             "*Q*/*Q*~wt~, total charge relative to {label}, with its interval.",
-            label=printable(settings.wild_type),
+            label=settings.wild_type,
         ),
         "charge_verdict": _charge_verdict(settings),
     }
@@ -234,7 +233,7 @@ def _excluded(result: Result) -> str:
     groups = grouped(((cell.construct, _reason(cell)), cell.cell) for cell in aside)
     told = [f"{construct} {_cells(cells)} ({reason})" for (construct, reason), cells in groups.items()]
     were = "was" if len(aside) == 1 else "were"
-    return printable(f"{counted(len(aside), 'cell')} {were} not used: {'; '.join(told)}.")
+    return f"{counted(len(aside), 'cell')} {were} not used: {'; '.join(told)}."
 
 
 def _reason(cell: CellRow) -> str:

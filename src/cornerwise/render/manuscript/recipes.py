@@ -1,4 +1,4 @@
-"""How the columns of a table are made, and tables from the columns that were chosen."""
+"""How the columns of a table are made, and which are chosen."""
 
 from __future__ import annotations
 
@@ -9,10 +9,12 @@ from typing import Generic, TypeVar
 from ...campaign import Settings
 from ...columns import ENERGY as OF_THE_ROW
 from ...columns import OUTPUT_TABLES
-from ...result import ConstructRow
+from ...flags import Flag
+from ...result import ConstructRow, Result
 from ..legend import interval_words
+from ..ordering import flag_marks
 from .cells import Rounding
-from .document import Cell, Column, Group, Part
+from .document import Cell, Column, Part
 from .options import check_choice
 from .words import words
 
@@ -37,8 +39,30 @@ class Shared:
 
     settings: Settings
     rounding: Rounding
+    flags: tuple[Flag, ...]  # all of the result
     marks: Mapping[str, str]  # letter of each flag that occurs
     constructs: Mapping[str, ConstructRow]
+
+
+def shared_by(result: Result, digits: str, codes: Iterable[str]) -> Shared:
+    """What the fields of one table need.
+
+    Parameters
+    ----------
+    result : Result
+        In the unit of the table.
+    digits : str
+        Rule for the digits of an uncertainty.
+    codes : iterable of str
+        Flags that occur in the table's rows.
+    """
+    return Shared(
+        settings=result.settings,
+        rounding=Rounding(digits),
+        flags=result.flags,
+        marks=flag_marks(codes),
+        constructs={row.construct: row for row in result.constructs},
+    )
 
 
 @dataclass(frozen=True, kw_only=True, slots=True)
@@ -81,13 +105,3 @@ def chosen(
     for key in keys:
         check_choice(f"column of the {table}", key, known)
     return [known[key] for key in dict.fromkeys(keys or usual)]
-
-
-def filled_groups(
-    recipes: Sequence[Recipe[RowT]], groups: Iterable[tuple[str, Sequence[RowT]]], shared: Shared
-) -> tuple[Group, ...]:
-    """Groups of rows with their fields made."""
-    return tuple(
-        Group(head=head, rows=tuple(tuple(recipe.fill(row, shared) for recipe in recipes) for row in rows))
-        for head, rows in groups
-    )

@@ -24,6 +24,11 @@ class Run:
 Words = tuple[Run, ...]
 
 
+def printable(text: str) -> str:
+    """A text on one line, without characters that a file format forbids."""
+    return "".join(letter if letter.isprintable() else " " for letter in text)
+
+
 def words(template: str, **given: str | Words) -> Words:
     """Runs of a sentence of ours.
 
@@ -32,7 +37,8 @@ def words(template: str, **given: str | Words) -> Words:
     template : str
         ``*italic*``, ``~subscript~`` and ``^superscript^``; ``{name}`` stands for what is given under it.
     **given : str or Words
-        Text is taken as it is, a user's label too: its asterisks and braces mean nothing.
+        Text is taken as it is, a user's label too: its asterisks and braces mean nothing; what cannot be
+        printed becomes a space.
 
     Examples
     --------
@@ -45,7 +51,7 @@ def words(template: str, **given: str | Words) -> Words:
             runs.append(Run(piece[1:-1], _FACES[piece[0]]))
         elif piece[0] == "{" and piece[-1] == "}":
             value = given[piece[1:-1]]
-            runs.extend((Run(value),) if isinstance(value, str) else value)
+            runs.extend((Run(printable(value)),) if isinstance(value, str) else value)
         else:
             runs.append(Run(piece))
     return tuple(runs)
