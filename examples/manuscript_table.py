@@ -1,6 +1,7 @@
 """The main table of a manuscript in another unit and with few columns, from a result alone.
 
 Run from the top folder: python examples/manuscript_table.py
+Its output is kept in examples/manuscript_table.txt. Orvane and its residues are invented.
 """
 
 from pathlib import Path
