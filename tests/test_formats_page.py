@@ -8,8 +8,9 @@ from types import ModuleType
 import pytest
 
 from cornerwise.campaign import Settings
-from cornerwise.intake import charges, curves, medians, openings
+from cornerwise.intake import charges, curves, distances, medians, openings
 from cornerwise.intake.settings import KEYS, SECTIONS
+from cornerwise.intake.structure import STRUCTURE_KEYS
 from cornerwise.render.legend import setting_values
 from cornerwise.render.manuscript import constructs, couplings
 from cornerwise.render.manuscript.options import GROUPINGS
@@ -20,7 +21,7 @@ PAGE = (Path(__file__).parents[1] / "docs" / "formats.md").read_text(encoding="u
 
 
 def test_every_key_has_its_row() -> None:
-    documented = re.findall(r"^\| `(\w+)` \|", PAGE.split("Three tables may follow")[0], flags=re.MULTILINE)
+    documented = re.findall(r"^\| `(\w+)` \|", PAGE.split("tables may follow")[0], flags=re.MULTILINE)
     assert sorted(documented) == sorted(KEYS)
 
 
@@ -28,6 +29,11 @@ def test_every_key_is_in_the_starter() -> None:
     text = resources.files("cornerwise").joinpath("starter_campaign", "campaign.toml").read_text("utf-8")
     assert [key for key in KEYS if not re.search(rf"^(# )?{key} = ", text, flags=re.MULTILINE)] == []
     assert [table for table in SECTIONS if f"[{table}]" not in text] == []
+
+
+def test_every_key_of_a_structure_is_named() -> None:
+    (example,) = re.findall(r"^\[structure\].*?```", PAGE, flags=re.MULTILINE | re.DOTALL)
+    assert re.findall(r"^(\w+) = ", example, flags=re.MULTILINE) == list(STRUCTURE_KEYS)
 
 
 def test_every_key_is_printed_with_the_result() -> None:
@@ -43,6 +49,7 @@ def test_every_key_is_printed_with_the_result() -> None:
         ("charges, a row a cell", charges.REPLICATE_FIELDS),
         ("charges, a row a construct", charges.SUMMARY_FIELDS),
         ("openings", openings.FIELDS),
+        ("distances", distances.FIELDS),
     ],
 )
 def test_every_column_is_named(table: str, fields: tuple) -> None:

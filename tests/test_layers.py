@@ -9,7 +9,7 @@ import cornerwise
 
 FLOORS = [
     {"errors", "flags", "units", "streams"},
-    {"intervals", "mutations", "plausible", "opening_schemes"},
+    {"intervals", "mutations", "plausible", "opening_schemes", "side_chains"},
     {"campaign", "gating", "limiting_slope", "quantities", "ranking"},
     {"median", "charges"},
     {"measurements"},
@@ -42,6 +42,7 @@ ALLOWED = {
     "pandas": {"intake", "result", "tables"},  # the result only for to_frame, on demand
     "openpyxl": {"render"},
     "docx": {"render"},
+    "gemmi": {"intake"},  # on demand
     "rich": {"render"},
     "typer": {"cli", "console", "plan_command", "design_commands"},
     "statsmodels": {"intervals"},  # on demand

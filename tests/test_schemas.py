@@ -23,7 +23,7 @@ from jsonschema import Draft202012Validator
 import cornerwise
 from cornerwise.columns import OUTPUT_TABLES
 from cornerwise.errors import DataRefused
-from cornerwise.intake import exclusions, listed
+from cornerwise.intake import exclusions, listed, structure
 from cornerwise.intake.files import TABLES as READ_TABLES
 from cornerwise.intake.findings import Findings
 from cornerwise.intake.settings import KEYS, RULES, SECTIONS, Document, read_settings
@@ -110,6 +110,8 @@ def _is_read(values: dict[str, Any]) -> bool:
     listed.listed_mutations(document, findings)
     listed.cycle_requests(document, findings)
     exclusions.read_exclusions(document, findings)
+    if "structure" in document.values:
+        structure.structure_request(document, findings)
     return not findings
 
 
@@ -118,6 +120,7 @@ SOUND = {
     "mutations": {"clone 7": ["E154Q", "R226Q"]},
     "cycle": [{"mutations": ["D171N", "K232Q"]}, {"name": "a bridge", "mutations": ["E154Q", "R226Q"]}],
     "exclude": [{"construct": "WT", "cell": "c1", "reason": "seal lost"}],
+    "structure": {"file": "a.cif", "chains": ["A", "B"], "offset": -20, "citation": "a model"},
 }  # fmt: skip
 PAIR = ["A1C", "D2E"]
 SPOILT: list[dict[str, Any]] = [
@@ -132,6 +135,10 @@ SPOILT: list[dict[str, Any]] = [
     {"exclude": {"construct": "WT"}}, {"exclude": [{"construct": "WT", "cell": "c1"}]},
     {"exclude": [{"construct": "WT", "cell": "c1", "reason": "a\nb"}]},
     {"exclude": [{"construct": "WT", "cell": 1, "reason": "a"}]},
+    {"structure": "a.cif"}, {"structure": {"chains": ["A"]}}, {"structure": {"file": ""}},
+    {"structure": {"file": "a.cif", "chains": "A"}}, {"structure": {"file": "a.cif", "chains": []}},
+    {"structure": {"file": "a.cif", "offset": 1.5}}, {"structure": {"file": "a.cif", "offset": 100_001}},
+    {"structure": {"file": "a.cif", "model": 1}}, {"structure": {"file": "a.cif", "citation": ""}},
 ]  # fmt: skip
 
 
@@ -168,7 +175,8 @@ LEAVES = (
 ANYTHING = st.recursive(
     LEAVES,
     lambda inner: st.lists(inner, max_size=3) | st.dictionaries(st.sampled_from(
-        ["name", "mutations", "construct", "cell", "reason", "value_e0", "sem_e0", "x"]), inner, max_size=3),
+        ["name", "mutations", "construct", "cell", "reason", "value_e0", "sem_e0", "file",
+         "chains", "offset", "x"]), inner, max_size=3),
     max_leaves=6,
 )  # fmt: skip
 
@@ -182,7 +190,7 @@ def test_whatever_is_read_fits(document: dict[str, Any], wild_type: str) -> None
     document = {"wild_type": wild_type, **document}
     if _is_read(document):
         CAMPAIGN.validate(document)
-    elif not {"mutations", "cycle", "exclude"} & document.keys():
+    elif not {"mutations", "cycle", "exclude", "structure"} & document.keys():
         assert not CAMPAIGN.is_valid(document)  # beside the tables, no two values are compared
 
 
@@ -327,6 +335,8 @@ TABLES_READ = {
                                ["WT", "12", "0.5", "", "noise", "an invented table"]]),
     "openings": (["construct", "cell", "voltage_mV", "open_probability"],
                  [["WT", "c1", str(-80 + 10 * i), str(1e-5 * 5.0**i)] for i in range(6)]),
+    "distances": (["residue_a", "residue_b", "distance_A", "citation", "definition"],
+                  [["D171", "K232", "3.1", "", "OD1 to NZ"], ["Glu154", "R226", "7", "a model", ""]]),
 }  # fmt: skip
 
 
@@ -372,7 +382,8 @@ def test_a_sound_table_is_read_and_fits(name: str, tmp_path: Path) -> None:
         ("charges_of_constructs", "charge_e0", "0"), ("charges_of_constructs", "charge_e0", "100.5"),
         ("charges_of_constructs", "sem_e0", "-1"), ("charges_of_constructs", "n", "1"),
         ("openings", "open_probability", "1.1"), ("openings", "open_probability", "-0.1"),
-        ("openings", "voltage_mV", "600"),
+        ("openings", "voltage_mV", "600"), ("distances", "residue_a", ""),
+        ("distances", "distance_A", "0.31"), ("distances", "distance_A", "500.5"),
     ],
 )  # fmt: skip
 def test_a_spoilt_table_is_refused_by_both(name: str, column: str, value: str, tmp_path: Path) -> None:

@@ -165,14 +165,20 @@ class Distance:
     """Distance between the side chains of two residues in a structure."""
 
     residues: frozenset[int]  # two residue numbers
-    angstrom: float
+    angstrom: float  # the shorter one of within a chain and across chains
+    within_chain_angstrom: float | None = None  # both residues in one chain; None where not known
+    across_chains_angstrom: float | None = None  # each residue in another chain of a homomer
+    charged_angstrom: float | None = None  # between charged atoms, where both residues carry a charge
+    atoms: str = ""  # the two atoms, their residues and chains
+    source: str = ""  # the file, and the citation where one is given
+    definition: str = ""  # what was measured
     origin: Origin = field(default_factory=Origin)
 
 
-def distance_between(mutations: Sequence[Mutation], distances: Sequence[Distance]) -> float | None:
+def distance_between(mutations: Sequence[Mutation], distances: Sequence[Distance]) -> Distance | None:
     """Distance between the residues of a pair; None where it is not known or there is no pair."""
     residues = {mutation.position for mutation in mutations}
-    found = [one.angstrom for one in distances if len(mutations) == 2 and one.residues == residues]
+    found = [one for one in distances if len(mutations) == 2 and one.residues == residues]
     return found[0] if found else None
 
 
@@ -196,6 +202,7 @@ class Campaign:
     exclusions: tuple[Exclusion, ...] = ()
     inputs: tuple[InputFile, ...] = ()
     distances: tuple[Distance, ...] = ()
+    notes: tuple[str, ...] = ()  # what a reader of the numbers should know of what was read
 
     def construct(self, label: str) -> Construct:
         """Return the construct called `label`.

@@ -97,6 +97,12 @@ _RANKING: Mapping[str, _Meaning] = {
     "interaction_verdict": _VERDICT,
     "opposite_charges": ("", "whether the native pair carries opposite charges"),
     "distance_A": ("Å", "distance of the pair's side chains, where it is known"),
+    "distance_within_chain_A": ("Å", "the same with both residues in one chain of a structure"),
+    "distance_across_chains_A": ("Å", "the same with each residue in another chain"),
+    "charged_distance_A": ("Å", "distance of their charged atoms, where both carry a charge"),
+    "distance_atoms": ("", "the two atoms whose distance it is, their residues and chains"),
+    "distance_source": ("", "file the distance comes from, and its citation"),
+    "distance_definition": ("", "what the distance is"),
 }
 
 _BACKGROUNDS: Mapping[str, _Meaning] = {

@@ -134,6 +134,7 @@ def couple(campaign: Campaign, progress: Progress | None = None) -> Result:
         backgrounds=Table(BackgroundRow, background_rows(campaign.cycles, book, settings)),
         flags=(*(flag for _, own, _ in described for flag in own), *flags),
         notes=(
+            *campaign.notes,
             *_notes(measured, settings),
             *_units_notes(interactions, list(rows.values())),
             *ranking_notes(interactions),

@@ -184,6 +184,32 @@ def _standing_fields(one: Estimate, standing: Standing, settings: Settings) -> _
     }
 
 
+class _DistanceFields(TypedDict):
+    distance_angstrom: float | None
+    distance_within_chain_angstrom: float | None
+    distance_across_chains_angstrom: float | None
+    charged_distance_angstrom: float | None
+    distance_atoms: str | None
+    distance_source: str | None
+    distance_definition: str | None
+
+
+_NO_DISTANCE = Distance(residues=frozenset(), angstrom=math.nan)
+
+
+def _distance_fields(known: Distance | None) -> _DistanceFields:
+    distance = known or _NO_DISTANCE
+    return {
+        "distance_angstrom": available(distance.angstrom),
+        "distance_within_chain_angstrom": distance.within_chain_angstrom,
+        "distance_across_chains_angstrom": distance.across_chains_angstrom,
+        "charged_distance_angstrom": distance.charged_angstrom,
+        "distance_atoms": distance.atoms or None,
+        "distance_source": distance.source or None,
+        "distance_definition": distance.definition or None,
+    }
+
+
 def _row(
     one: Estimate, standing: Standing, book: EnergyBook, corners: Corners
 ) -> tuple[InteractionRow, tuple[Flag, ...]]:
@@ -216,7 +242,7 @@ def _row(
         units=interaction.units,
         edges=cycle_edges(cycle, book),
         opposite_charges=opposite_charges(cycle.mutations),
-        distance_angstrom=distance_between(cycle.mutations, corners.distances),
+        **_distance_fields(distance_between(cycle.mutations, corners.distances)),
         **stands,
         **_charge_fields(one, stands["interaction_verdict"], book, corners, charges),
     )

@@ -19,6 +19,7 @@ _ONE_LETTER = frozenset(_THREE_LETTER.values())
 
 _SUBSTITUTION = re.compile(r"([A-Z])([1-9][0-9]*)([A-Z])")
 _HGVS = re.compile(r"([A-Z][a-z]{2})([1-9][0-9]*)([A-Z][a-z]{2})")
+_RESIDUE = re.compile(r"([A-Z](?:[a-z]{2})?)([1-9][0-9]*)")
 _SEPARATORS = re.compile(r"[+/;:\s]+")
 
 HIGHEST_LISTED_ORDER = 6  # of a cycle whose missing constructs are named one by one
@@ -118,6 +119,42 @@ def parse_mutation(token: str) -> Mutation | None:
 def named_mutation(token: str) -> Mutation:
     """Read `token` as a substitution if it is one, else keep it as a mutation of the user's own naming."""
     return parse_mutation(token) or Mutation(token.strip())
+
+
+@dataclass(frozen=True, slots=True, order=True)
+class Residue:
+    """A native residue of the protein."""
+
+    position: int
+    native: str  # one-letter code
+
+    def __str__(self) -> str:
+        return f"{self.native}{self.position}"
+
+
+def parse_residue(text: str) -> Residue | None:
+    """Read a residue in one-letter or three-letter notation.
+
+    Parameters
+    ----------
+    text : str
+        Such as ``D171`` or ``Asp171``.
+
+    Returns
+    -------
+    Residue or None
+        None if `text` is no residue, one of the 20 amino acids and its number.
+
+    Examples
+    --------
+    >>> str(parse_residue("Asp171"))
+    'D171'
+    >>> parse_residue("D171N") is None
+    True
+    """
+    match = _RESIDUE.fullmatch(text)
+    native = _THREE_LETTER.get(match[1], match[1]) if match else ""
+    return Residue(int(match[2]), native) if match and native in _ONE_LETTER else None
 
 
 def parse_label(label: str) -> Mutations | None:

@@ -42,6 +42,7 @@ FloatArray = NDArray[np.float64]
 VOLTAGE_LIMIT_MV = 500.0  # membranes break down well before; common practice, no source
 NARROWEST_RANGE_MV = 5.0  # a curve inside this holds volts in a millivolt column
 TEMPERATURE_RANGE_C = (-5.0, 60.0)
+DISTANCE_RANGE_ANGSTROM = (1.0, 500.0)  # of two side chains; atoms that are bonded are farther apart than 1 A
 CHARGE_LIMIT_E0 = 100.0  # per channel; the largest known are near 14 e0
 FEWEST_POINTS = 5
 FEWEST_OPENINGS = 4  # points of a cell's open probability; fewer show no limit of a slope

@@ -112,7 +112,13 @@ class InteractionRow:
     simultaneous_low: EnergyNumber | None  # of the interval that holds all cycles at once, where asked for
     simultaneous_high: EnergyNumber | None
     opposite_charges: OppositeCharges | None  # of the native pair
-    distance_angstrom: float | None  # between the pair's side chains, where stated
+    distance_angstrom: float | None  # between the pair's side chains, where known
+    distance_within_chain_angstrom: float | None = None  # both residues in one chain
+    distance_across_chains_angstrom: float | None = None  # each residue in another chain
+    charged_distance_angstrom: float | None = None  # between charged atoms
+    distance_atoms: str | None = None  # the two atoms, their residues and chains
+    distance_source: str | None = None  # file and citation
+    distance_definition: str | None = None  # what was measured
     flags: tuple[str, ...]
     corner_charges: tuple[CornerCharge, ...]  # of the mutants
     passing_margin: float | None  # smallest charge margin that all mutants pass
@@ -139,7 +145,8 @@ class RankRow:
     columns: ClassVar[tuple[str, ...]] = (
         "rank", "cycle", "interaction", "energy_unit", "low", "high", "strength_low", "rank_low", "rank_high",
         "first_probability", "shrunken", "p_adjusted", "interaction_verdict", "opposite_charges",
-        "distance_A",
+        "distance_A", "distance_within_chain_A", "distance_across_chains_A", "charged_distance_A",
+        "distance_atoms", "distance_source", "distance_definition",
     )  # fmt: skip
 
     rank: int
@@ -157,6 +164,12 @@ class RankRow:
     interaction_verdict: InteractionVerdict
     opposite_charges: OppositeCharges | None
     distance_angstrom: float | None
+    distance_within_chain_angstrom: float | None
+    distance_across_chains_angstrom: float | None
+    charged_distance_angstrom: float | None
+    distance_atoms: str | None
+    distance_source: str | None
+    distance_definition: str | None
 
     def cells(self) -> tuple[Value, ...]:
         """Values in the order of `columns`."""

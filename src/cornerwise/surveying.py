@@ -53,6 +53,7 @@ class Survey:
     cycles: tuple[str, ...]  # complete ones, by order and residue
     incomplete: tuple[tuple[str, tuple[str, ...]], ...]  # construct, and what its cycle lacks
     flags: tuple[Flag, ...]
+    notes: tuple[str, ...] = ()  # what was read and how, a sentence each
 
 
 def _row(measurement: Measurement) -> tuple[SurveyRow, tuple[Flag, ...]]:
@@ -107,4 +108,5 @@ def survey(campaign: Campaign, progress: Callable[[str, int, int], None] | None 
         cycles=tuple(cycle.name for cycle in campaign.cycles),
         incomplete=incomplete_cycles(labels),
         flags=(*(flag for _, flags in rows for flag in flags), *of_cycles),
+        notes=campaign.notes,
     )

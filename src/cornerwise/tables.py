@@ -79,6 +79,9 @@ _FIELD_OF_COLUMN = {
     "sigmoid_midpoint_mV": "sigmoid_midpoint_mv",
     "cells": "cells_used",
     "distance_A": "distance_angstrom",
+    "distance_within_chain_A": "distance_within_chain_angstrom",
+    "distance_across_chains_A": "distance_across_chains_angstrom",
+    "charged_distance_A": "charged_distance_angstrom",
 }
 
 _SEPARATORS = {"mutations": "/", "background": "/", "shares": "; "}  # a space for the others

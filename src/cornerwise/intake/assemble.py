@@ -11,6 +11,7 @@ from .cycles import cycles_of
 from .exclusions import check_exclusions
 from .findings import Findings, refuse_many
 from .labels import Genotypes, read_genotypes
+from .pair_distances import pair_distances
 from .parts import Parts
 
 MOST_CONSTRUCTS = 5000
@@ -43,6 +44,7 @@ def assemble(parts: Parts, findings: Findings) -> Campaign:
         else ()
     )
     check_exclusions(parts, cycles if parts.requests else (), findings)
+    distances, notes = pair_distances(parts, genotypes, cycles, findings)
     return Campaign(
         settings=parts.settings,
         constructs=_constructs(parts, genotypes),
@@ -51,6 +53,8 @@ def assemble(parts: Parts, findings: Findings) -> Campaign:
         background=genotypes.background,
         exclusions=tuple(parts.exclusions),
         inputs=parts.inputs,
+        distances=distances,
+        notes=notes,
     )
 
 

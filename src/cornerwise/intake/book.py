@@ -20,7 +20,8 @@ from .table import SPREADSHEET_ERRORS
 from .text import MOST_ROWS, Record, composed, refuse_empty, refuse_long, tabulate
 
 TEXT_COLUMNS = (
-    "construct", "cell", "batch", "phase", "method", "citation", "name", "mutations", "reason"
+    "construct", "cell", "batch", "phase", "method", "citation", "name", "mutations", "reason",
+    "residue_a", "residue_b", "definition",
 )  # fmt: skip
 
 _Read = TypeVar("_Read")

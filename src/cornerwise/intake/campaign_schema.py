@@ -12,6 +12,7 @@ from .exclusions import EXCLUDE_KEYS, EXPECTED
 from .listed import FEWEST_MUTATIONS, WORDS
 from .rules import Rule, visible_text
 from .settings import CHARGE_RULES, CHARGE_WORD, NEEDED, RULES
+from .structure import STRUCTURE_RULES, StructureRequest
 
 DIALECT = "https://json-schema.org/draft/2020-12/schema"
 
@@ -33,7 +34,10 @@ def campaign_schema() -> dict[str, Any]:
     """
     defaults = {field.name: field.default for field in dataclasses.fields(Settings)}
     plain = {rule.key: _property(rule, defaults[rule.attribute]) for rule in RULES}
-    tables = {"charge": _charge(), "mutations": _mutations(), "cycle": _cycles(), "exclude": _exclusions()}
+    tables = {
+        "charge": _charge(), "mutations": _mutations(), "cycle": _cycles(), "exclude": _exclusions(),
+        "structure": _structure(),
+    }  # fmt: skip
     document: dict[str, Any] = _short(_table({**plain, **tables}, needed=("wild_type",)))
     return {
         "$schema": DIALECT,
@@ -103,4 +107,13 @@ def _exclusions() -> dict[str, Any]:
     return {
         "description": "cells to set aside",
         **allowed.items(_table(keys, needed=EXCLUDE_KEYS)),
+    }
+
+
+def _structure() -> dict[str, Any]:
+    defaults = {field.name: field.default for field in dataclasses.fields(StructureRequest)}
+    keys = {rule.key: _property(rule, defaults[rule.attribute]) for rule in STRUCTURE_RULES}
+    return {
+        "description": "a structure in which the side-chain distances of the pairs are measured",
+        **_table(keys, needed=("file",)),
     }

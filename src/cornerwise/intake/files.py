@@ -12,7 +12,7 @@ from ..campaign import InputFile
 from ..errors import Origin, visible
 from .findings import Findings, listing, nearest, shown
 
-TABLES = ("curves", "medians", "charges", "openings")
+TABLES = ("curves", "medians", "charges", "openings", "distances")
 SUFFIXES = (".csv", ".tsv", ".xlsx")
 CAMPAIGN_FILE = "campaign.toml"
 MOST_BYTES = 100_000_000
@@ -78,7 +78,7 @@ def _files_in(folder: Path, findings: Findings) -> Iterator[Path]:
     for path in folder.iterdir():
         if path.name.startswith(_LEFT_BEHIND):
             continue
-        if path.is_symlink() and not _stays_below(folder, path):
+        if path.is_symlink() and not stays_below(folder, path):
             _refuse_link(path, findings)
         elif path.is_file():
             yield path
@@ -96,9 +96,9 @@ def _is_known(path: Path) -> bool:
     return known or path.name.casefold() == CAMPAIGN_FILE
 
 
-def _stays_below(folder: Path, link: Path) -> bool:
-    """Whether a link leads to something inside the folder."""
-    return Path(os.path.realpath(link)).is_relative_to(os.path.realpath(folder))
+def stays_below(folder: Path, path: Path) -> bool:
+    """Whether a path leads to something inside the folder, links followed."""
+    return Path(os.path.realpath(path)).is_relative_to(os.path.realpath(folder))
 
 
 def _refuse_link(path: Path, findings: Findings) -> None:
@@ -122,10 +122,32 @@ def _refuse_several(known: dict[str, list[Path]], findings: Findings) -> None:
             )
 
 
-def read_bytes(path: Path, findings: Findings) -> tuple[bytes, InputFile] | None:
-    """Read a file and take its SHA-256; None when that fails, which is a fault."""
-    origin = Origin(file=path.name)
-    most = MOST_SETTINGS_BYTES if path.name.casefold() == CAMPAIGN_FILE else MOST_BYTES
+def read_bytes(
+    path: Path,
+    findings: Findings,
+    *,
+    name: str | None = None,
+    most: int | None = None,
+    too_large: str = "keep one point per voltage step, not the recorded traces",
+) -> tuple[bytes, InputFile] | None:
+    """Read a file and take its SHA-256; None when that fails, which is a fault.
+
+    Parameters
+    ----------
+    path : Path
+        The file.
+    findings : Findings
+        Takes the fault.
+    name : str, optional
+        What the file is called, if not by the last part of its path.
+    most : int, optional
+        Bytes it may have; `MOST_BYTES` or `MOST_SETTINGS_BYTES` unless given.
+    too_large : str, optional
+        What to do about a larger one.
+    """
+    settings = path.name.casefold() == CAMPAIGN_FILE
+    name, most = name or path.name, most or (MOST_SETTINGS_BYTES if settings else MOST_BYTES)
+    origin = Origin(file=name)
     try:
         size = path.stat().st_size
         data = path.read_bytes() if size <= most else b""
@@ -137,11 +159,10 @@ def read_bytes(path: Path, findings: Findings) -> tuple[bytes, InputFile] | None
         return None
     if size > most:
         findings.add(
-            origin, found=f"{size / 1e6:.1f} MB", expected=f"at most {most / 1e6:.0f} MB",
-            remedy="keep one point per voltage step, not the recorded traces",
-        )  # fmt: skip
+            origin, found=f"{size / 1e6:.1f} MB", expected=f"at most {most / 1e6:.0f} MB", remedy=too_large
+        )
         return None
-    return data, InputFile(name=visible(path.name), sha256=hashlib.sha256(data).hexdigest())
+    return data, InputFile(name=visible(name), sha256=hashlib.sha256(data).hexdigest())
 
 
 def _judge_stray(path: Path, findings: Findings) -> None:

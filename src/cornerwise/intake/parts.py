@@ -9,10 +9,13 @@ from ..campaign import Exclusion, InputFile, Settings
 from ..errors import Origin
 from ..mutations import CycleRequest, Mutations
 from .charges import ChargesRead
+from .coordinates import Model
 from .curves import CurvesRead
+from .distances import DistancesRead
 from .medians import MediansRead
 from .openings import OpeningsRead
 from .settings import Document
+from .structure import StructureRequest
 
 TableRead = CurvesRead | MediansRead | ChargesRead | OpeningsRead
 
@@ -30,6 +33,9 @@ class Parts:
     medians: MediansRead
     charges: ChargesRead
     openings: OpeningsRead
+    distances: DistancesRead
+    structure: StructureRequest | None
+    model: Model | None  # what the structure's file holds; None when it could not be read
     charges_file: str | None  # None when there is no table of charges
     inputs: tuple[InputFile, ...]
 
@@ -49,7 +55,7 @@ class Parts:
 
     @property
     def tables(self) -> tuple[TableRead, ...]:
-        """Every table."""
+        """Every table of constructs."""
         return self.curves, self.medians, self.charges, self.openings
 
     def surely_without(self, label: str, *tables: TableRead) -> bool:

@@ -1,14 +1,14 @@
 """From a path to a campaign: the one public entry of this room.
 
-A campaign is a folder with ``campaign.toml`` and the tables ``curves``, ``medians``, ``charges`` and
-``openings``, each as ``.csv``, ``.tsv`` or ``.xlsx`` and each once; or one workbook, see
-`cornerwise.intake.workbook`.
+A campaign is a folder with ``campaign.toml`` and the tables ``curves``, ``medians``, ``charges``,
+``openings`` and ``distances``, each as ``.csv``, ``.tsv`` or ``.xlsx`` and each once; or one workbook, see
+`cornerwise.intake.workbook`. A structure file may stand beside either, see `cornerwise.intake.structure`.
 """
 
 from __future__ import annotations
 
 import os
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
 from pathlib import Path
 from typing import TypeVar
@@ -19,7 +19,9 @@ from . import text, workbook
 from .assemble import assemble
 from .book import Book, from_book
 from .charges import ChargesRead, read_charges
+from .coordinates import read_model
 from .curves import CurvesRead, read_curves
+from .distances import DistancesRead, read_distances
 from .exclusions import read_exclusions
 from .files import TABLES, locate, read_bytes
 from .findings import Findings
@@ -29,6 +31,7 @@ from .medians import MediansRead, read_medians
 from .openings import OpeningsRead, read_openings
 from .parts import Parts
 from .settings import KEYS, SECTIONS, Document, read_settings
+from .structure import StructureFile, open_structure
 from .toml_file import read_toml
 
 _Read = TypeVar("_Read")
@@ -41,6 +44,7 @@ class Source:
     document: Document | None  # None when it could not be read
     tables: Mapping[str, RawTable | None]  # those that are there; None when one could not be read
     inputs: tuple[InputFile, ...]
+    structure: StructureFile | None = None
 
 
 def read(path: str | os.PathLike[str]) -> Campaign:
@@ -101,7 +105,21 @@ def _open_folder(folder: Path, findings: Findings) -> Source:
             document = None if contents is None else read_toml(contents[0], path.name, findings)
         else:
             tables[name] = None if contents is None else _table(contents[0], path, name, findings)
-    return Source(document=document, tables=tables, inputs=tuple(inputs))
+    return _with_structure(document, tables, inputs, folder, findings)
+
+
+def _with_structure(
+    document: Document | None,
+    tables: Mapping[str, RawTable | None],
+    inputs: Sequence[InputFile],
+    folder: Path,
+    findings: Findings,
+) -> Source:
+    """Settings under known keys and tables, with the structure that the settings ask for."""
+    document = None if document is None else document.as_meant((*KEYS, *SECTIONS), findings)
+    structure = None if document is None else open_structure(document, folder, findings)
+    also = () if structure is None else (structure.record,)
+    return Source(document=document, tables=tables, inputs=(*inputs, *also), structure=structure)
 
 
 def _open_workbook(path: Path, findings: Findings) -> Source | None:
@@ -112,7 +130,7 @@ def _open_workbook(path: Path, findings: Findings) -> Source | None:
     def source(book: Book) -> Source:
         document = workbook.read_document(book, findings)
         tables = workbook.read_tables(book, TABLES, findings)
-        return Source(document=document, tables=tables, inputs=(contents[1],))
+        return _with_structure(document, tables, [contents[1]], path.parent, findings)
 
     return from_book(contents[0], path.name, findings, source)
 
@@ -133,9 +151,11 @@ def _campaign(source: Source | None, findings: Findings) -> Campaign | None:
     medians_read = _read("medians", read_medians, MediansRead, source, findings)
     charges_read = _read("charges", read_charges, ChargesRead, source, findings)
     openings_read = _read("openings", read_openings, OpeningsRead, source, findings)
-    if source.document is None:
+    distances_read = _read("distances", read_distances, DistancesRead, source, findings)
+    model = None if source.structure is None else read_model(source.structure, findings)
+    document = source.document
+    if document is None:
         return None
-    document = source.document.as_meant((*KEYS, *SECTIONS), findings)
     settings = read_settings(document, findings)
     listed = listed_mutations(document, findings)
     requests = cycle_requests(document, findings)
@@ -145,7 +165,9 @@ def _campaign(source: Source | None, findings: Findings) -> Campaign | None:
     parts = Parts(
         document=document, settings=settings, listed=listed, requests=requests,
         exclusions=exclusions, curves=curves_read, medians=medians_read, charges=charges_read,
-        openings=openings_read, charges_file=charges.file if charges else None, inputs=source.inputs,
+        openings=openings_read, distances=distances_read, model=model,
+        structure=source.structure.request if source.structure else None,
+        charges_file=charges.file if charges else None, inputs=source.inputs,
     )  # fmt: skip
     return assemble(parts, findings)
 

@@ -2,9 +2,9 @@
 
 `RULES` names every plain key with what it may hold; the defaults are those of `cornerwise.campaign.Settings`.
 Besides them there are ``charge``, which is ``"measured"``, ``"wild-type"`` or a table ``{ value_e0, sem_e0,
-citation }`` whose citation may be left out, and the tables of `cornerwise.intake.listed` and
-`cornerwise.intake.exclusions`. ``charge_method`` is compared with the methods of the tables once these are
-read.
+citation }`` whose citation may be left out, and the tables of `cornerwise.intake.listed`,
+`cornerwise.intake.exclusions` and `cornerwise.intake.structure`. ``charge_method`` is compared with the
+methods of the tables once these are read.
 """
 
 from __future__ import annotations
@@ -150,7 +150,7 @@ NEEDED = ("value_e0", "sem_e0")  # of a stated charge
 
 KEYS = (*(rule.key for rule in RULES), "charge")
 CHARGE_KEYS = tuple(rule.key for rule in CHARGE_RULES)
-SECTIONS = ("mutations", "cycle", "exclude")
+SECTIONS = ("mutations", "cycle", "exclude", "structure")
 
 
 def read_settings(document: Document, findings: Findings) -> Settings | None:

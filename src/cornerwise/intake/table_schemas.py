@@ -11,7 +11,7 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import Any
 
-from . import charges, curves, medians, openings
+from . import charges, curves, distances, medians, openings
 from .channels import RAW
 from .header import Field
 from .layouts import VOLTAGE
@@ -19,7 +19,7 @@ from .layouts import VOLTAGE
 PROFILE = "https://datapackage.org/profiles/2.0/tableschema.json"
 CELL_HEADER = "[^/].*/[^/]+"  # of the wide layout
 
-_SIZE_OF_UNIT = {"V": 1000.0}  # in the first unit of the field
+_SIZE_OF_UNIT = {"V": 1000.0, "nm": distances.ANGSTROM_PER_NM}  # in the first unit of the field
 _CONSTRAINTS = ("minimum", "exclusiveMinimum", "maximum", "exclusiveMaximum", "enum")
 
 
@@ -53,6 +53,9 @@ LAYOUTS = {
     "openings": Layout(
         title="open probabilities, a row a point", fields=openings.FIELDS,
         key=("construct", "cell", "voltage"), wide=openings.OPEN_PROBABILITY,
+    ),
+    "distances": Layout(
+        title="distances between side chains, a row a pair", fields=distances.FIELDS, key=distances.ENDS,
     ),
 }  # fmt: skip
 

@@ -45,7 +45,7 @@ _MARKS = (
 _COLUMN_WORDS = frozenset(
     (
         *("construct", "cell", "batch", "voltage", "charge", "holding", "phase", "median", "sem", "n"),
-        *("method", "channels", "citation", "open"),
+        *("method", "channels", "citation", "open", "residue", "distance", "definition"),
     )
 )
 

@@ -1,10 +1,12 @@
 """Workbooks: one table of a campaign, or a whole campaign.
 
-A campaign in one workbook has the sheets ``curves``, ``medians``, ``charges`` and ``openings`` with the
-columns of the files of these names, and in place of ``campaign.toml``
+A campaign in one workbook has the sheets ``curves``, ``medians``, ``charges``, ``openings`` and
+``distances`` with the columns of the files of these names, and in place of ``campaign.toml``
 
 - ``campaign``: two columns, a key and its value; a first row ``key``, ``value`` may stand above them.
   A stated charge takes two rows, ``charge.value_e0`` and ``charge.sem_e0``, and perhaps ``charge.citation``.
+  ``structure.file``, ``structure.chains`` (separated by commas), ``structure.offset`` and
+  ``structure.citation`` name a structure file beside the workbook.
 - ``mutations`` (optional): the columns ``construct`` and ``mutations``, the latter separated by commas or
   written like a label (``E181A/R212Q``); left empty for a wild type whose label spells none.
 - ``cycles`` (optional): the columns ``name`` (may be left out) and ``mutations``, written in the same way.
@@ -32,7 +34,11 @@ from .text import refuse_empty
 
 CAMPAIGN_SHEETS = ("campaign", "mutations", "cycles", "exclude")
 NOTES = ("notes", "readme")
-TEXT_KEYS = ("title", "wild_type", "charge_method", "charge.citation")
+TEXT_KEYS = (
+    "title", "wild_type", "charge_method", "charge.citation", "structure.file", "structure.chains",
+    "structure.citation",
+)  # fmt: skip
+_TABLE_KEYS = ("charge", "structure")  # keys that hold keys of their own, written with a point
 
 _MUTATION_FIELDS = (Field(base="construct"), Field(base="mutations"))
 _EXCLUDE_FIELDS = tuple(Field(base=key) for key in EXCLUDE_KEYS)
@@ -131,7 +137,8 @@ def _keys(book: Book, title: str, places: Places, findings: Findings) -> dict[st
     values: dict[str, object] = {}
     for number, cells in rows:
         key = str(cells[0] or "").strip()
-        path = tuple(key.split(".", 1)) if key.startswith("charge.") else (key,)
+        head, _, inner = key.partition(".")
+        path = (head, inner) if inner and head in _TABLE_KEYS else (key,)
         origin = Origin(file=file, row=number, column=key or None)
         if path in places or not key or len(cells) != 2:
             _refuse_row(origin, key, len(cells), findings)
@@ -144,11 +151,16 @@ def _keys(book: Book, title: str, places: Places, findings: Findings) -> dict[st
         value = text if key in TEXT_KEYS and not isinstance(cells[1], Truth) else _plain(cells[1])
         if len(path) == 1:
             values[key] = value
-        else:
-            charge = values.setdefault("charge", {})
-            if isinstance(charge, dict):
-                charge[path[1]] = value
+            continue
+        table = values.setdefault(head, {})
+        if isinstance(table, dict):
+            table[inner] = _names(value) if path == ("structure", "chains") else value
     return values
+
+
+def _names(value: object) -> object:
+    """Split a cell at commas."""
+    return [name.strip() for name in value.split(",")] if isinstance(value, str) else value
 
 
 def _plain(value: Value) -> object:

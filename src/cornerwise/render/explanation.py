@@ -10,7 +10,7 @@ from ..errors import UsageError
 from ..mutations import parse_label
 from ..result import BudgetRow, ConstructRow, CornerCharge, InteractionRow, Result
 from ..units import in_percent
-from .legend import percent
+from .legend import distance_words, percent
 from .rounding import decimals_for, number, span, with_uncertainty
 
 _STATED, _WILD_TYPES = "stated", "wild type"  # sources of charge, as the table of constructs names them
@@ -45,6 +45,7 @@ def explain(result: Result, cycle: str) -> str:
         _assumed(result, row, corners),
         _shortcut(result, row),
         _voltages(result, row),
+        _native_pair(row),
         _outlook(result, row, budget),
     ]
     return "\n\n".join(paragraph for paragraph in paragraphs if paragraph)
@@ -247,6 +248,18 @@ def _voltages(result: Result, row: InteractionRow) -> str:
         "one number for all voltages and a common voltage error cancels; the data allow a change of "
         f"{change}"
         f"{offset}."
+    )
+
+
+def _native_pair(row: InteractionRow) -> str:
+    """The native residues in a structure, where their distance is known."""
+    if row.distance_angstrom is None:
+        return ""
+    charges = f" They carry {row.opposite_charges}." if row.opposite_charges else ""
+    return (
+        f"Distance of the native side chains: {distance_words(row)} ({row.distance_source}: "
+        f"{row.distance_definition}).{charges} A structure shows one state and the energy is a difference "
+        "between two: neither proves that the two residues touch, nor both together."
     )
 
 

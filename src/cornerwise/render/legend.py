@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterable
 
 from ..campaign import Settings, StatedCharge
-from ..result import BudgetRow, Result
+from ..result import BudgetRow, InteractionRow, RankRow, Result
 from ..units import in_percent
 
 FORMULA = "I = sum over the corners of s F Q Vm; s = (-1)^(order - mutations in the corner)"
@@ -42,6 +42,29 @@ def formula_and_sign(orders: Iterable[int]) -> list[str]:
 def unit_phrase(settings: Settings) -> str:
     """Unit of energies with the reminder that it is per channel."""
     return f"{settings.energy_unit} per channel"
+
+
+def distance_words(row: InteractionRow | RankRow) -> str:
+    """Distance of a pair's side chains, and which atoms they are; nothing where it is not known."""
+    if row.distance_angstrom is None:
+        return ""
+    within, across = row.distance_within_chain_angstrom, row.distance_across_chains_angstrom
+    parts = [f"{row.distance_angstrom:.1f} Å"]
+    if row.distance_atoms is not None:
+        parts.append(f", {row.distance_atoms}")
+    if within is not None and across is not None:
+        farther, where = (across, "between chains") if within <= across else (within, "within one chain")
+        parts.append(f"; {farther:.1f} Å {where}")
+    if row.charged_distance_angstrom is not None:
+        parts.append(f"; charged atoms {row.charged_distance_angstrom:.1f} Å")
+    return "".join(parts)
+
+
+def distance_sources(rows: Iterable[InteractionRow | RankRow]) -> list[str]:
+    """What the distances are and where they come from, a sentence each."""
+    known = [row for row in rows if row.distance_angstrom is not None]
+    told = dict.fromkeys((row.distance_source, row.distance_definition) for row in known)
+    return [f"distances from {source}: {definition}" for source, definition in told if source]
 
 
 def percent(fraction: float) -> str:

@@ -29,6 +29,7 @@ def survey_json(found: Survey) -> str:
         "cycles": found.cycles,
         "incomplete": [{"construct": label, "lacks": missing} for label, missing in found.incomplete],
         "flags": [dataclasses.asdict(flag) for flag in found.flags],
+        "notes": found.notes,
     }
     return json.dumps(document, indent=1, ensure_ascii=False, allow_nan=False) + "\n"
 

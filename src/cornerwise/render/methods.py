@@ -9,7 +9,7 @@ from ..campaign import StatedCharge
 from ..intervals import Adjustment
 from ..result import Result
 from ..units import energy_per_e0_mv
-from .legend import FORMULA, percent, sign_sentences
+from .legend import FORMULA, distance_sources, percent, sign_sentences
 from .rounding import with_uncertainty
 
 # Bibliographic data are cited from memory: check them against the publisher's page before submission.
@@ -74,6 +74,7 @@ def methods_paragraphs(result: Result) -> tuple[list[str], list[str]]:
         _uncertainty(result, cited),
         _judgement(result, cited),
         _outcome(result),
+        *_distances(result),
     ]
     return paragraphs, [_REFERENCES[key] for key in cited.keys]
 
@@ -267,6 +268,19 @@ def _outcome(result: Result) -> str:
     *most, last = parts
     listed = f"{', '.join(most)} and {last}" if most else last
     return f"By these rules the verdicts on {counted(number, 'cycle')} are: {listed}."
+
+
+def _distances(result: Result) -> list[str]:
+    """Where the distances between side chains come from, if there are any."""
+    sources = distance_sources(result.interactions)
+    if not sources:
+        return []
+    number = sum(row.distance_angstrom is not None for row in result.interactions)
+    return [
+        f"Distances between the side chains of {counted(number, 'native pair')} stand beside the energies "
+        f"for comparison and entered no computation ({'; '.join(sources)}). A structure shows one state of "
+        "the protein."
+    ]
 
 
 def figure_legends(result: Result) -> dict[str, str]:

@@ -8,7 +8,15 @@ from rich.table import Table as Grid
 from rich.text import Text
 
 from ..result import RankRow, Result
-from .legend import CAUTION, interval_words, percent, settings_sentences, sign_sentences, unit_phrase
+from .legend import (
+    CAUTION,
+    distance_sources,
+    interval_words,
+    percent,
+    settings_sentences,
+    sign_sentences,
+    unit_phrase,
+)
 from .rounding import decimals_for, number, span
 from .terminal import print_lines, screen_on
 
@@ -43,9 +51,11 @@ def print_ranking(result: Result, stream: IO[str]) -> None:
         "at least: lower limit of the absolute size; 0 where the interval includes 0",
         f"ranks: those the data allow at {level}; first {settings.first}: probability of being among them",
         "shrunken: the strongest of many tend to exaggerate; this is what to expect of a repetition",
-        "native pair: opposite charges make a candidate salt bridge and no more; distances as stated",
+        "native pair: opposite charges make a candidate salt bridge and no more",
+        *_distance_legend(result),
         *sign_sentences({row.order for row in result.interactions}),
         CAUTION,
+        *(f"Note: {note}" for note in result.notes),
     ]
     with screen_on(stream) as screen:
         screen.print(grid)
@@ -55,11 +65,24 @@ def print_ranking(result: Result, stream: IO[str]) -> None:
         print_lines(screen, settings_sentences(settings))
 
 
+def _distance_legend(result: Result) -> list[str]:
+    """What the distances are, where there are any."""
+    sources = distance_sources(result.ranking)
+    if not sources:
+        return []
+    charged = any(row.charged_distance_angstrom is not None for row in result.ranking)
+    words = ["distance in angstrom between the side chains of the native pair"]
+    words += ["in brackets between charged atoms"] if charged else []
+    return ["; ".join(words), *sources]
+
+
 def _line(row: RankRow, uncertainty: float | None) -> list[str]:
     decimals = decimals_for(uncertainty)
     native: list[str] = [] if row.opposite_charges is None else [row.opposite_charges]
     if row.distance_angstrom is not None:
-        native.append(f"{row.distance_angstrom:.1f} A")
+        charged = row.charged_distance_angstrom
+        beside = "" if charged is None else f" ({charged:.1f} A)"
+        native.append(f"{row.distance_angstrom:.1f} A{beside}")
     return [
         str(row.rank),
         row.cycle,

@@ -274,4 +274,5 @@ def _show_survey(survey: Survey, screen: Console) -> None:
     lines += [f"{label}: no cycle, it lacks {', '.join(missing)}" for label, missing in survey.incomplete]
     if survey.background:
         lines.append(f"Background of every construct: {'/'.join(survey.background)}")
+    lines += [f"Note: {note}" for note in survey.notes]
     print_lines(screen, [*lines, "Vm, Q: mean ± standard error over cells; no energy was computed"])

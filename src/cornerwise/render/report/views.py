@@ -13,6 +13,7 @@ from ..explanation import explain
 from ..figures.files import CycleFigures
 from ..figures.style import SINGLE_COLUMN_MM
 from ..figures.vector import svg_inline
+from ..legend import distance_words
 from ..ordering import by_strength, grouped
 from ..rounding import decimals_for, number, p_words, span, typeset, with_uncertainty
 from .strips import Strips
@@ -225,9 +226,10 @@ def _facts(row: InteractionRow) -> list[tuple[str, str]]:
         ("rank", rank_words(row)),
         ("expected of a repetition (shrunken)", _with_unit(number(row.shrunken, decimals_for(u)), unit)),
         ("native pair", row.opposite_charges or ""),
+        ("distance of side chains", distance_words(row)),
         (
-            "distance of side chains",
-            "" if row.distance_angstrom is None else f"{row.distance_angstrom:.3g} Å",
+            "distance from",
+            "" if row.distance_source is None else f"{row.distance_source}: {row.distance_definition}",
         ),
         ("from median voltages alone", _with_unit(number(row.shortcut, decimals_for(u)), unit)),
         (
