@@ -31,16 +31,9 @@ EXPECTED = {
 
 def read_exclusions(document: Document, findings: Findings) -> dict[Exclusion, Origin]:
     """Read the ``[[exclude]]`` entries, and the place of each; by construct and cell."""
-    entries = document.values.get("exclude", [])
-    if not isinstance(entries, list) or not all(isinstance(entry, Mapping) for entry in entries):
-        findings.add(
-            document.origin("exclude"), found=say(entries), expected="entries that begin with [[exclude]]",
-            remedy="use double square brackets",
-        )  # fmt: skip
-        return {}
     read: dict[Exclusion, Origin] = {}
     earlier: dict[tuple[str, str], Origin] = {}
-    for number, entry in enumerate(entries):
+    for number, entry in enumerate(document.entries("exclude", findings)):
         exclusion = _exclusion(document, number, entry, findings)
         if exclusion is None:
             continue

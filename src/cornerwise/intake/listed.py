@@ -55,13 +55,7 @@ def listed_mutations(document: Document, findings: Findings) -> dict[str, Mutati
 
 def cycle_requests(document: Document, findings: Findings) -> tuple[CycleRequest, ...]:
     """Read the ``[[cycle]]`` entries, by order and then in residue order."""
-    entries = document.values.get("cycle", [])
-    if not isinstance(entries, list) or not all(isinstance(entry, Mapping) for entry in entries):
-        findings.add(
-            document.origin("cycle"), found=say(entries), expected="entries that begin with [[cycle]]",
-            remedy="use double square brackets",
-        )  # fmt: skip
-        return ()
+    entries = document.entries("cycle", findings)
     requests = [_request(document, number, entry, findings) for number, entry in enumerate(entries)]
     sound = [request for request in requests if request is not None]
     _refuse_twins(sound, findings)

@@ -38,6 +38,17 @@ class Document:
         rows = {(meant.get(str(first), first), *rest): place for (first, *rest), place in self.rows.items()}
         return Document(values=values, file=self.file, rows=rows)
 
+    def entries(self, name: str, findings: Findings) -> list[Mapping[str, object]]:
+        """Entries of the array of tables called `name`; none when it is something else, which is a fault."""
+        entries = self.values.get(name, [])
+        if isinstance(entries, list) and all(isinstance(entry, Mapping) for entry in entries):
+            return entries
+        findings.add(
+            self.origin(name), found=say(entries), expected=f"entries that begin with [[{name}]]",
+            remedy="use double square brackets",
+        )  # fmt: skip
+        return []
+
     def origin(self, *path: str | int) -> Origin:
         """Return the place of a key, named by its path; that of its table when it is missing there."""
         first_entry = (*path, 0)  # where an array of tables begins

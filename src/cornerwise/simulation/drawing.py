@@ -10,9 +10,9 @@ import numpy as np
 
 from ..campaign import Campaign, ChargeReplicate, ChargeSummary, Construct, Curve, FloatArray, OpeningCurve
 from ..gating import GatingScheme
-from ..mutations import Mutations, find_cycles
+from ..mutations import Mutations, find_cycles, in_residue_order
 from ..streams import named_stream
-from .model import Model, Recording, ordered
+from .model import Model, Recording
 from .scattering import standard_deviates
 from .schemes import scheme_of
 
@@ -44,7 +44,7 @@ def _construct(model: Model, label: str, mutations: Mutations) -> Construct:
     summarised = model.common.charges == "summaries"
     return Construct(
         label=label,
-        mutations=ordered(mutations),
+        mutations=in_residue_order(mutations),
         curves=_curves(model, label, scheme, how),
         charge_replicates=() if summarised else replicates,
         charge_summaries=_summary(replicates, model.common.charge_decimals) if summarised else (),

@@ -8,7 +8,7 @@ from itertools import combinations
 from typing import Literal
 
 from ..campaign import Settings
-from ..mutations import Mutation, Mutations, in_residue_order, joined
+from ..mutations import Mutation, Mutations, joined
 
 Order = Literal["sequence", "any"]
 Scatter = Literal["normal", "skewed", "heavy-tailed"]
@@ -143,8 +143,3 @@ class Model:
     def effects_on(self, mutations: Mutations) -> tuple[Effect, ...]:
         """Effects of all that is present in a construct with these mutations."""
         return tuple(effect for effect in self.effects if effect.mutations <= mutations)
-
-
-def ordered(mutations: Mutations) -> tuple[Mutation, ...]:
-    """Mutations of a construct in residue order."""
-    return in_residue_order(mutations)

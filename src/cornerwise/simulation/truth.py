@@ -11,10 +11,10 @@ from __future__ import annotations
 from dataclasses import dataclass
 from typing import ClassVar
 
-from ..mutations import Cycle, find_cycles
+from ..mutations import Cycle, find_cycles, in_residue_order
 from ..tables import Table, Value, flat_values
 from ..units import energy_per_e0_mv
-from .model import Model, ordered
+from .model import Model
 from .schemes import scheme_of
 
 
@@ -89,7 +89,7 @@ def truth_of(model: Model) -> Truth:
         rows.append(
             ConstructTruth(
                 construct=label,
-                mutations=tuple(map(str, ordered(mutations))),
+                mutations=tuple(map(str, in_residue_order(mutations))),
                 median_mv=scheme.median_mv,
                 charge_e0=scheme.total_charge_e0,
                 energy=per

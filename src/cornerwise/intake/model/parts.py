@@ -87,13 +87,7 @@ def table_of(document: Document, name: str, findings: Findings, keys: Sequence[s
 
 def entries_of(document: Document, name: str, findings: Findings) -> list[Part]:
     """The entries of the array of tables called `name`."""
-    entries = document.values.get(name, [])
-    if not isinstance(entries, list) or not all(isinstance(entry, Mapping) for entry in entries):
-        findings.add(
-            document.origin(name), found=say(entries), expected=f"entries that begin with [[{name}]]",
-            remedy="use double square brackets",
-        )  # fmt: skip
-        return []
+    entries = document.entries(name, findings)
     return [_part(document, (name, i), entry, KEYS[name], findings) for i, entry in enumerate(entries)]
 
 
