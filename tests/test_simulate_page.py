@@ -55,3 +55,11 @@ def test_models_that_are_named_exist_and_are_read() -> None:
     assert named
     for name in named:
         assert read_model(TOP / name).cycles
+
+
+def test_the_summary_is_that_of_the_bench() -> None:
+    bench = (TOP / "docs" / "simulated_campaigns.md").read_text(encoding="utf-8")
+    pooled = re.findall(r"^\| all \| (.+?) \|.*\| (\S+ ± \S+) \| (\S+ ± \S+) \|$", bench, flags=re.MULTILINE)
+    told = re.findall(r"^\| .* \| (\S+ ± \S+) % \| (\S+ ± \S+) % \|$", PAGE, flags=re.MULTILINE)
+    assert len(pooled) == 3
+    assert told == [(propagated, bootstrap) for _, propagated, bootstrap in pooled]
