@@ -9,7 +9,7 @@ import cornerwise
 
 FLOORS = [
     {"errors", "flags", "units", "streams"},
-    {"intervals", "mutations", "plausible", "opening_schemes", "side_chains"},
+    {"folders", "intervals", "mutations", "plausible", "opening_schemes", "side_chains"},
     {"campaign", "gating", "limiting_slope", "quantities", "ranking"},
     {"median", "charges"},
     {"measurements"},

@@ -20,7 +20,7 @@ if TYPE_CHECKING:
     from .planning.plan import Plan, plan, plan_assumed
     from .planning.request import PlanRequest
     from .render.explanation import explain
-    from .render.files import output_files, write_folder
+    from .render.files import output_files
     from .render.manuscript.options import TableOptions
     from .result import Result
     from .result_reading import read_result
@@ -79,7 +79,7 @@ _ROOM_OF = {
     "simulate": "simulation",
     "survey": "surveying",
     "truth_of": "simulation",
-    "write_folder": "render.files",
+    "write_folder": "folders",
 }
 
 

@@ -12,6 +12,7 @@ from typing import Annotated
 import typer
 
 from .errors import CornerwiseError, DataRefused
+from .folders import check_destination, write_folder
 
 _PATIENCE_S = 1.0
 
@@ -45,16 +46,17 @@ def progress() -> Callable[[str, int, int], None]:
 
 def expect_room(folder: Path | None, *, force: bool) -> None:
     """Refuse a destination before the work is done rather than after."""
-    from .render.files import check_destination
+    if folder is None:
+        return
+    check_destination(folder, force=force)
+    if force:
+        from .render.strangers import refuse_strangers
 
-    if folder is not None:
-        check_destination(folder, force=force)
+        refuse_strangers(folder)
 
 
 def write(files: Mapping[str, str | bytes], folder: Path, *, force: bool) -> None:
     """Write files of ``--out`` and say so on stderr."""
-    from .render.files import write_folder
-
     write_folder(files, folder, force=force)
     print(f"cornerwise: wrote {_listed(files)} into {folder}", file=sys.stderr)
 

@@ -6,6 +6,9 @@ from importlib import resources
 from pathlib import Path
 
 from .errors import UsageError
+from .folders import write_folder
+
+MARK = "campaign.toml"  # without it a folder is no campaign
 
 
 def starter_files() -> dict[str, str]:
@@ -32,13 +35,16 @@ def new_campaign(folder: Path) -> tuple[str, ...]:
     UsageError
         If `folder` holds anything or cannot be written.
     """
-    if folder.exists() and (not folder.is_dir() or any(folder.iterdir())):
-        raise UsageError(f"{folder} is not an empty folder; give a new name")
     files = starter_files()
     try:
-        folder.mkdir(parents=True, exist_ok=True)
-        for name, text in files.items():
-            (folder / name).write_text(text, encoding="utf-8", newline="\n")
+        if folder.exists() and (not folder.is_dir() or any(folder.iterdir())):
+            raise UsageError(f"{folder} is not an empty folder; give a new name")
+        folder.parent.mkdir(parents=True, exist_ok=True)
+        if not folder.exists():
+            write_folder(files, folder)
+        else:  # perhaps the one the user is in, which must not be exchanged for another
+            for name in sorted(files, key=lambda name: name == MARK):  # the one that makes it a campaign last
+                (folder / name).write_bytes(files[name].encode("utf-8"))
     except OSError as error:
         raise UsageError(f"cannot write {folder}: {error.strerror}") from error
     return tuple(files)

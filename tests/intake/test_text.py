@@ -142,3 +142,9 @@ def test_values_below_an_empty_header(tmp_path: Path) -> None:
 def test_too_many_rows(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
     monkeypatch.setattr(text, "MOST_ROWS", 20)
     assert_refused(folder(tmp_path / "a"), file="curves.csv", match="33 rows; expected at most 20 rows")
+    monkeypatch.setattr(text, "MOST_ROWS", 34)
+    charges = "construct,cell,charge_e0\n" + "".join(f"WT,c{i},13\n" for i in range(5))
+    path = folder(tmp_path / "b", charges=charges, curves=curve_rows())
+    assert_refused(
+        path, file="charges.csv", match="37 rows with those of the other tables; expected at most 34"
+    )

@@ -1,7 +1,6 @@
 import csv
 import json
 import math
-from pathlib import Path
 
 import pandas as pd
 import pytest
@@ -9,8 +8,7 @@ from builders import campaign, construct
 
 from cornerwise.campaign import StatedCharge
 from cornerwise.coupling import couple
-from cornerwise.errors import UsageError
-from cornerwise.render.files import check_destination, result_files, write_folder
+from cornerwise.render.files import result_files
 from cornerwise.result import Result
 
 # Written out again, so that a changed column is noticed.
@@ -101,54 +99,6 @@ def test_frames_have_missing_values_not_text(result: Result) -> None:
     frame = result.to_frame()
     assert list(frame.columns) == COLUMNS["interactions.csv"].split(",")
     assert pd.isna(frame["shortcut_bias"].iloc[0])
-
-
-def test_an_existing_folder_is_kept_unless_forced(tmp_path: Path) -> None:
-    folder = tmp_path / "out"
-    write_folder({"a.txt": "first"}, folder)
-    (folder / "mine.txt").write_text("kept")
-    with pytest.raises(UsageError, match="use --force"):
-        write_folder({"a.txt": "second"}, folder)
-    assert (folder / "a.txt").read_text() == "first"
-    write_folder({"b.txt": "third"}, folder, force=True)
-    assert sorted(path.name for path in folder.iterdir()) == ["b.txt"]
-    assert [path.name for path in tmp_path.iterdir()] == ["out"]
-
-
-def test_a_failed_write_leaves_the_earlier_result(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
-    folder = tmp_path / "out"
-    write_folder({"a.txt": "first"}, folder)
-
-    def full(self: Path, data: bytes) -> int:
-        raise OSError(28, "No space left on device")
-
-    monkeypatch.setattr(Path, "write_bytes", full)
-    with pytest.raises(UsageError, match="No space left on device; nothing was changed"):
-        write_folder({"a.txt": "second"}, folder, force=True)
-    assert (folder / "a.txt").read_text() == "first"
-    assert [path.name for path in tmp_path.iterdir()] == ["out"]
-
-
-def test_destination_is_checked_before_anything_is_computed(tmp_path: Path) -> None:
-    (tmp_path / "file").write_text("")
-    with pytest.raises(UsageError, match="is a file"):
-        check_destination(tmp_path / "file", force=True)
-    with pytest.raises(UsageError, match="is not a folder; make it first"):
-        check_destination(tmp_path / "no" / "out", force=False)
-
-
-def test_a_path_below_the_folder_is_made(tmp_path: Path) -> None:
-    write_folder({"a.txt": "first", "figures/one/shape.svg": b"<svg/>"}, tmp_path / "out")
-    assert (tmp_path / "out" / "figures" / "one" / "shape.svg").read_bytes() == b"<svg/>"
-
-
-@pytest.mark.parametrize(
-    "name", ["../a.txt", "/etc/a.txt", "figures/../../a.txt", "a//b.txt", "c:a.txt", "a\\b.txt", ""]
-)
-def test_no_name_leads_out_of_the_folder(tmp_path: Path, name: str) -> None:
-    with pytest.raises(ValueError, match="no path below a folder"):
-        write_folder({name: "x"}, tmp_path / "out")
-    assert list(tmp_path.iterdir()) == []
 
 
 def test_the_report_is_among_the_files(result: Result) -> None:

@@ -7,8 +7,8 @@ import pytest
 
 import cornerwise
 from cornerwise.campaign import StatedCharge
+from cornerwise.folders import write_folder
 from cornerwise.mutations import named_mutation
-from cornerwise.render.files import write_folder
 from cornerwise.render.simulated import campaign_files
 from cornerwise.simulation import Model, Recording
 from cornerwise.simulation.model import Common

@@ -47,6 +47,7 @@ class Book:
         self.file = file
         self._package = Package(data)
         self._sheets = Sheets(self._package)
+        self.rows_of_tables = 0  # of those that were read so far
         self._rows: dict[str, list[tuple[int, tuple[Value, ...]]]] = {}
 
     def __enter__(self) -> Book:
@@ -71,6 +72,8 @@ class Book:
         if title not in self._rows:
             rows = self._sheets.rows(title)
             self._rows[title] = [(number, values) for number, values in rows if not _is_comment(values[0])]
+            if sum(map(len, self._rows.values())) > 2 * MOST_ROWS:
+                raise DamagedBook(f"its sheets have more than {2 * MOST_ROWS} rows")
         return self._rows[title]
 
 
@@ -107,8 +110,9 @@ def read_sheet(book: Book, title: str, findings: Findings) -> RawTable | None:
         None if the sheet is empty. Rows with a cell that was refused are left out.
     """
     file, rows = book.place(title), book.rows(title)
-    if not rows or len(rows) > MOST_ROWS:
-        refuse_long(file, len(rows), findings) if rows else refuse_empty(file, findings)
+    book.rows_of_tables += len(rows)
+    if not rows or book.rows_of_tables > MOST_ROWS:
+        refuse_long(file, f"{book.rows_of_tables} rows", findings) if rows else refuse_empty(file, findings)
         return None
     header = _names(rows[0][1])
     labels = {index for index, name in enumerate(header) if name in TEXT_COLUMNS}

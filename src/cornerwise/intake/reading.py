@@ -105,6 +105,10 @@ def _open_folder(folder: Path, findings: Findings) -> Source:
             document = None if contents is None else read_toml(contents[0], path.name, findings)
         else:
             tables[name] = None if contents is None else _table(contents[0], path, name, findings)
+            rows = sum(len(table.rows) for table in tables.values() if table is not None)
+            if rows > text.MOST_ROWS:
+                tables[name] = None
+                text.refuse_long(path.name, f"{rows} rows with those of the other tables", findings)
     return _with_structure(document, tables, inputs, folder, findings)
 
 

@@ -14,10 +14,11 @@ from .header import Field
 from .table import Table, TextArray
 
 FEWEST_CELLS = 2  # a standard error needs two
+MOST_CELLS = 1_000_000
 CONSTRUCT = Field(base="construct", meaning="label of the construct")
 CELL = Field(base="cell", meaning="label of the cell, the same in every table")
 BATCH = Field(base="batch", required=False, values=allowed.line(), meaning="donor or day the cell belongs to")
-COUNT = Field(base="n", values=allowed.whole(FEWEST_CELLS), meaning="number of cells")
+COUNT = Field(base="n", values=allowed.whole(FEWEST_CELLS, MOST_CELLS), meaning="number of cells")
 STANDARD_ERROR = allowed.number(least=0)
 
 

@@ -120,7 +120,7 @@ def split(text: str, file: str, findings: Findings) -> RawTable | None:
     """
     rows = text.count("\n")
     if rows > MOST_ROWS:
-        refuse_long(file, rows, findings)
+        refuse_long(file, f"{rows} rows", findings)
         return None
     lines = [_without_comment(line) for line in text.split("\n")]
     first = next((line for line in lines if line), "")
@@ -269,10 +269,10 @@ def refuse_empty(file: str, findings: Findings) -> None:
     )  # fmt: skip
 
 
-def refuse_long(file: str, rows: int, findings: Findings) -> None:
+def refuse_long(file: str, found: str, findings: Findings) -> None:
     """Refuse a table with too many rows."""
     findings.add(
-        Origin(file=file), found=f"{rows} rows", expected=f"at most {MOST_ROWS} rows",
+        Origin(file=file), found=found, expected=f"at most {MOST_ROWS} rows in one campaign",
         remedy="keep one point per voltage step, not the recorded traces",
     )  # fmt: skip
 

@@ -1,16 +1,12 @@
-"""The files of ``--out``: written beside their place and moved there as a whole."""
+"""The files of ``--out``, from a result alone; `cornerwise.folders` writes them."""
 
 from __future__ import annotations
 
 import csv
 import io
-import shutil
-import tempfile
-from collections.abc import Callable, Mapping
-from pathlib import Path
+from collections.abc import Callable
 from typing import TYPE_CHECKING
 
-from ..errors import UsageError
 from ..result import Result, Row, Table
 from ..unit_change import in_unit
 
@@ -18,22 +14,6 @@ if TYPE_CHECKING:
     from .manuscript.options import TableOptions
 
 Progress = Callable[[str, int, int], None]
-
-
-def check_destination(folder: Path, *, force: bool) -> None:
-    """Refuse a destination that would be overwritten unasked, before anything is computed.
-
-    Raises
-    ------
-    UsageError
-        If `folder` exists and `force` is False, or if it is a file, or its parent does not exist.
-    """
-    if folder.exists() and not folder.is_dir():
-        raise UsageError(f"{folder} is a file; give a folder to write to")
-    if folder.exists() and not force:
-        raise UsageError(f"{folder} exists; use --force to replace it as a whole, or give another folder")
-    if not folder.absolute().parent.is_dir():
-        raise UsageError(f"{folder.absolute().parent} is not a folder; make it first")
 
 
 def csv_text(table: Table[Row]) -> str:
@@ -101,8 +81,8 @@ def output_files(
     Returns
     -------
     dict of str to str or bytes
-        Path below the folder to contents, for `write_folder`; the same bytes for the same result and
-        choices.
+        Path below the folder to contents, for `cornerwise.write_folder`; the same bytes for the same result
+        and choices.
 
     Raises
     ------
@@ -121,63 +101,3 @@ def output_files(
 
         files |= figure_files(shown, progress)
     return files
-
-
-def write_folder(files: Mapping[str, str | bytes], folder: Path, *, force: bool = False) -> None:
-    r"""Write files into `folder`, all of them or none.
-
-    Parameters
-    ----------
-    files : mapping of str to str or bytes
-        File name, or a path below `folder` with forward slashes, to contents; text is written
-        as UTF-8 with ``\n`` line ends.
-    folder : Path
-        Appears, or is replaced, as a whole once every file is complete.
-    force : bool, optional
-        Replace an existing folder.
-
-    Raises
-    ------
-    UsageError
-        As `check_destination`, or if the place cannot be written.
-    """
-    check_destination(folder, force=force)
-    folder = folder.absolute()
-    try:
-        fresh = Path(tempfile.mkdtemp(prefix=f".{folder.name}-", dir=folder.parent))
-    except OSError as error:
-        raise UsageError(f"cannot write beside {folder}: {error.strerror}") from error
-    try:
-        for name, contents in files.items():
-            place = _place_below(fresh, name)
-            place.parent.mkdir(parents=True, exist_ok=True)
-            place.write_bytes(contents.encode("utf-8") if isinstance(contents, str) else contents)
-        fresh.chmod(0o755)
-        _move_into_place(fresh, folder)
-    except OSError as error:
-        raise UsageError(f"cannot write {folder}: {error.strerror}; nothing was changed") from error
-    finally:
-        shutil.rmtree(fresh, ignore_errors=True)
-
-
-def _place_below(folder: Path, name: str) -> Path:
-    """Path of a file inside `folder`; a name that would leave it is a fault of the program."""
-    parts = name.split("/")
-    if any(part in ("", ".", "..") or "\\" in part or ":" in part for part in parts):
-        raise ValueError(f"{name!r} is no path below a folder")
-    return folder.joinpath(*parts)
-
-
-def _move_into_place(fresh: Path, folder: Path) -> None:
-    if not folder.exists():
-        fresh.rename(folder)
-        return
-    # A folder cannot be swapped for another in one step: keep the old one until the new one is there.
-    aside = fresh.with_name(f"{fresh.name}-old")
-    folder.rename(aside)
-    try:
-        fresh.rename(folder)
-    except OSError:
-        aside.rename(folder)
-        raise
-    shutil.rmtree(aside, ignore_errors=True)
