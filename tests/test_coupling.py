@@ -160,7 +160,7 @@ def test_budget_shares_of_every_cycle_add_up() -> None:
 
 def test_result_json_has_no_nan_and_names_its_schema() -> None:
     document = json.loads(couple(campaign(FOUR)).to_json(), parse_constant=lambda c: pytest.fail(c))
-    assert document["schema"] == "cornerwise-result/1"
+    assert document["schema"] == "cornerwise-result/2"
     assert document["settings"]["seed"] == 1
     assert document["versions"].keys() >= {"cornerwise", "numpy", "scipy", "python"}
 

@@ -10,7 +10,7 @@ from collections.abc import Mapping
 from dataclasses import dataclass
 from typing import Any, Literal, Union, get_args, get_origin, get_type_hints
 
-from .plan_rows import NeedRow, OutlookRow, SplitRow
+from .plan_rows import NeedRow, NextStepRow, OutlookRow, SplitRow
 from .rows import (
     BackgroundRow,
     BudgetRow,
@@ -188,47 +188,61 @@ _PER_SUBUNIT: Mapping[str, _Meaning] = {
     "energy_unit": ("", "unit of the energies in this row"),
 }
 
+_FURTHER: _Meaning = ("1", "further cells with which it is reached, every scatter being what it seems")
+_SHARES: _Meaning = ("", "which cells: number, kind and construct, separated by semicolons")
+
+_NEXT_STEPS: Mapping[str, _Meaning] = {
+    "cycle": _CYCLE,
+    "settled_as": ("", "verdict that is nearest, if the estimate stays where it is"),
+    "confidence": ("1", "level of the interval that decides; adjusted for the number of cycles for detected"),
+    "half_width": (ENERGY, "half-width of that interval now"),
+    "half_width_wanted": (ENERGY, "half-width below which the verdict is due"),
+    "next_construct": ("", "construct on which one further cell narrows the interval most"),
+    "next_kind": ("", "kind of that cell"),
+    "half_width_after_next": (ENERGY, "half-width with that cell, every scatter staying what it is"),
+    "further": ("1", "further cells that settle the cycle; empty where no number does"),
+    "shares": _SHARES,
+    "limit": ("", "where no number of cells does, the largest source that cells do not make smaller"),
+    "remedy": ("", "what does make it smaller"),
+    "energy_unit": _UNIT,
+}
+
 _PLAN: Mapping[str, _Meaning] = {
     "cycle": _CYCLE,
     "order": ("1", "number of mutations of the cycle"),
-    "cells_each": ("1", "cells of every kind on every construct; empty for those there are"),
+    "cells_each": ("1", "cells of each kind on every construct; empty for what there is now"),
     "half_width": (ENERGY, "expected half-width of the interval, every scatter being what it seems"),
-    "half_width_low": (ENERGY, "1 half-width in 10 lies below this"),
-    "half_width_high": (ENERGY, "1 half-width in 10 lies above this"),
-    "power": ("1", "probability that an interaction of true_interaction is detected"),
-    "power_low": ("1", "1 power in 10 lies below this, the scatters being as uncertain as they are"),
-    "power_high": ("1", "1 power in 10 lies above this"),
-    "assurance": ("1", "power averaged over what the scatters may be"),
-    "true_interaction": (ENERGY, "interaction energy against which power counts"),
+    "half_width_low": (ENERGY, "half-width that 1 in 10 of the possible outcomes stay below"),
+    "half_width_high": (ENERGY, "half-width that 1 in 10 of the possible outcomes exceed"),
+    "power": ("1", "probability that the interval excludes 0 for the true interaction"),
+    "power_low": ("1", "power that 1 in 10 of the possible scatters stay below"),
+    "power_high": ("1", "power that 1 in 10 of the possible scatters exceed"),
+    "assurance": ("1", "power averaged over the possible scatters"),
+    "true_interaction": (ENERGY, "size of the true interaction that power counts against"),
     "confidence": ("1", "level of the interval"),
     "energy_unit": _UNIT,
 }
 
 _NEEDS: Mapping[str, _Meaning] = {
-    "subject": ("", "a cycle, a mutant whose charge is judged, or all"),
+    "subject": ("", "cycle, mutant whose charge is judged, or all for all of them at once"),
     "goal": ("", "what shall be reached"),
-    "wanted": ("that of the goal", "half-width in the campaign's energy unit, or a probability"),
-    "further": (
-        "1",
-        "fewest further cells, every scatter being what it seems; empty where no number would do",
-    ),
-    "further_low": ("1", "number that would do with luck, in 1 of 10 cases"),
-    "further_high": ("1", "number that is enough in 9 of 10 cases"),
-    "expected": ("that of the goal", "half-width or probability with that number"),
-    "shares": ("", "how many cells of which kind and construct, separated by semicolons"),
-    "reason": ("", "why no number would do"),
+    "wanted": ("energy unit of the plan, or 1", "wanted half-width, power or probability of a verdict"),
+    "further": _FURTHER,
+    "further_low": ("1", "with luck: 1 in 10 of what the scatters may be needs no more"),
+    "further_high": ("1", "to be sure: 9 in 10 need no more; empty for more than 1000"),
+    "expected": ("energy unit of the plan, or 1", "half-width or probability then; of all, the worst"),
+    "shares": _SHARES,
+    "reason": ("", "why no number of cells does, or what was left out"),
 }
 
 _SPLIT: Mapping[str, _Meaning] = {
     "construct": _CONSTRUCT,
-    "kind": ("", "what is recorded of a cell"),
+    "kind": ("", "kind of cell"),
     "cells_now": ("1", "cells there are"),
     "further": ("1", "further cells in the best split"),
-    "further_equal_split": ("1", "further cells if all constructs had the same number"),
-    "cycles": ("1", "number of cycles that these cells count for"),
+    "further_equal_split": ("1", "further cells if every kind gets the same number"),
+    "cycles": ("1", "cycles that the cells count for"),
 }
-
-_MAY_BE_EMPTY = ("reason",)  # a text without a word
 
 
 @dataclass(frozen=True, kw_only=True, slots=True)
@@ -285,6 +299,7 @@ OUTPUT_TABLES: Mapping[str, OutputTable] = {
             _MIDPOINTS,
         ),
         ("budget", "a row a source of error of a cycle", BudgetRow, _BUDGET),
+        ("next_steps", "a row an unresolved cycle: what would settle it", NextStepRow, _NEXT_STEPS),
         ("per_subunit", "a row a cycle of a protein of several subunits", SubunitRow, _PER_SUBUNIT),
         ("plan", "a row a cycle and number of cells: what to expect", OutlookRow, _PLAN),
         ("needs", "a row a goal: fewest further cells", NeedRow, _NEEDS),
@@ -302,7 +317,7 @@ def _column(name: str, hint: Any, unit: str, meaning: str) -> Column:
         name=name,
         type="string" if words or is_list else _TYPES[kinds[0]],
         words=words,
-        needed=len(kinds) == len(members) and not is_list and name not in _MAY_BE_EMPTY,
+        needed=len(kinds) == len(members) and not is_list,
         unit=unit,
         meaning=meaning,
     )

@@ -14,6 +14,8 @@ from .construct_rows import cell_rows, construct_row
 from .energies import EnergyBook
 from .interaction_rows import Corners, interaction_rows
 from .measurements import Measurement, measure
+from .plan_rows import NextStepRow
+from .planning.next_steps import next_steps
 from .result import Result
 from .rows import BackgroundRow, BudgetRow, CellRow, ConstructRow, InteractionRow
 from .tables import Table
@@ -132,6 +134,7 @@ def couple(campaign: Campaign, progress: Progress | None = None) -> Result:
         cells=Table(CellRow, [row for measurement in measured for row in cell_rows(measurement)]),
         budget=Table(BudgetRow, budget),
         backgrounds=Table(BackgroundRow, background_rows(campaign.cycles, book, settings)),
+        next_steps=Table(NextStepRow, next_steps(interactions, campaign.cycles, book, settings)),
         flags=(*(flag for _, own, _ in described for flag in own), *flags),
         notes=(
             *campaign.notes,

@@ -6,6 +6,7 @@ from dataclasses import dataclass
 from typing import ClassVar, Literal
 
 from .tables import Value, flat_values
+from .units import EnergyNumber
 
 RecordingKind = Literal["curves", "charges", "curves with charges"]
 GoalKind = Literal["half-width", "power", "charge equal", "charge changed"]
@@ -39,14 +40,14 @@ class OutlookRow:
     cycle: str
     order: int
     cells_each: int | None  # of every kind on every construct; None: what there is now
-    half_width: float | None  # expected, every scatter being what it seems
-    half_width_low: float | None
-    half_width_high: float | None
+    half_width: EnergyNumber | None  # expected, every scatter being what it seems
+    half_width_low: EnergyNumber | None
+    half_width_high: EnergyNumber | None
     power: float | None  # the same, against `true_interaction`
     power_low: float | None
     power_high: float | None
     assurance: float | None  # power averaged over the possible scatters
-    true_interaction: float
+    true_interaction: EnergyNumber
     confidence: float
     energy_unit: str
 
@@ -71,7 +72,7 @@ class NeedRow:
     further_high: int | None  # to be sure: 9 in 10 need no more
     expected: float | None  # half-width or probability then
     shares: tuple[Share, ...]  # which cells
-    reason: str  # why no number would do; empty otherwise
+    reason: str | None  # why no number would do, or what was left out
 
     def cells(self) -> tuple[Value, ...]:
         """Values in the order of `columns`."""
@@ -103,20 +104,22 @@ class NextStepRow:
     """What would settle one unresolved cycle, if its estimate and its scatters stay what they are."""
 
     columns: ClassVar[tuple[str, ...]] = (
-        "cycle", "half_width", "wanted_half_width", "settled_as", "next_construct", "next_kind",
-        "half_width_after_next", "further", "shares", "limit", "energy_unit",
+        "cycle", "settled_as", "confidence", "half_width", "half_width_wanted", "next_construct", "next_kind",
+        "half_width_after_next", "further", "shares", "limit", "remedy", "energy_unit",
     )  # fmt: skip
 
     cycle: str
-    half_width: float  # at the level that decides
-    wanted_half_width: float
     settled_as: SettledAs
+    confidence: float  # of the interval that decides; higher than usual where many cycles are adjusted for
+    half_width: EnergyNumber | None  # of that interval; None where a construct shows no scatter yet
+    half_width_wanted: EnergyNumber
     next_construct: str | None  # where one further cell narrows the interval most; None without any
     next_kind: RecordingKind | None
-    half_width_after_next: float | None
-    further: int | None  # cells; None where no number up to 200 would do
+    half_width_after_next: EnergyNumber | None
+    further: int | None  # cells; None where no number would do, or more than 1000
     shares: tuple[Share, ...]
     limit: str | None  # largest source that no further cell makes smaller, where it stands in the way
+    remedy: str | None  # what does make that smaller
     energy_unit: str
 
     def cells(self) -> tuple[Value, ...]:

@@ -11,6 +11,7 @@ from typing import TYPE_CHECKING
 
 from .campaign import InputFile, Settings
 from .flags import Flag
+from .plan_rows import NextStepRow
 from .rows import (
     BackgroundRow,
     Breakdown,
@@ -44,6 +45,7 @@ __all__ = [
     "Edge",
     "InteractionRow",
     "MidpointRow",
+    "NextStepRow",
     "ProfilePoint",
     "RankRow",
     "Result",
@@ -53,7 +55,7 @@ __all__ = [
     "Value",
 ]
 
-SCHEMA = "cornerwise-result/1"
+SCHEMA = "cornerwise-result/2"
 
 
 def _shared(energy: float | None, subunits: int) -> float | None:
@@ -71,6 +73,7 @@ class Result:
     cells: Table[CellRow]
     budget: Table[BudgetRow]
     backgrounds: Table[BackgroundRow]  # of the cycles of order 3 and above
+    next_steps: Table[NextStepRow]  # of the cycles that are unresolved
     flags: tuple[Flag, ...]
     notes: tuple[str, ...]  # decisions the reader should know of, a sentence each
     inputs: tuple[InputFile, ...]
@@ -134,6 +137,7 @@ class Result:
             "cells": [_plain(row) for row in self.cells],
             "budget": [_plain(row) for row in self.budget],
             "backgrounds": [_plain(row) for row in self.backgrounds],
+            "next_steps": [_plain(row) for row in self.next_steps],
             "flags": [_plain(flag) for flag in self.flags],
             "notes": self.notes,
             "inputs": [_plain(file) for file in self.inputs],

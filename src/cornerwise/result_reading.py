@@ -13,6 +13,7 @@ from typing import Any, Literal, NoReturn, Union, get_args, get_origin, get_type
 from .campaign import InputFile, Settings
 from .errors import DataRefused, Origin, Problem, visible
 from .flags import Flag
+from .plan_rows import NextStepRow
 from .result import SCHEMA, Result, checksum
 from .rows import BackgroundRow, BudgetRow, CellRow, ConstructRow, InteractionRow
 from .tables import Row, Table
@@ -23,6 +24,7 @@ TABLES: Mapping[str, type[Row]] = {
     "cells": CellRow,
     "budget": BudgetRow,
     "backgrounds": BackgroundRow,
+    "next_steps": NextStepRow,
 }
 _OTHERS = ("schema", "settings", "energy_threshold", "energy_tolerance", "background", "flags", "notes",
            "inputs", "versions")  # fmt: skip

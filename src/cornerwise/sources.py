@@ -23,10 +23,15 @@ FloatArray = NDArray[np.float64]
 BoolArray = NDArray[np.bool_]
 
 
+ComponentKind = Literal[
+    "median", "truncation", "charge", "charge x median", "stated charge", "voltage offset"
+]
+
+
 class Component(NamedTuple):
     """One uncertain number: what it is and of which construct ('' for a common one)."""
 
-    kind: Literal["median", "truncation", "charge", "charge x median", "stated charge", "voltage offset"]
+    kind: ComponentKind
     construct: str = ""
 
 

@@ -19,7 +19,7 @@ from .tables import Row, Table
 from .units import ENERGY, ENERGY_UNITS, EnergyUnit, convert_energy
 
 Change = Callable[[float], float]
-_TABLES = ("interactions", "constructs", "cells", "budget", "backgrounds")
+_TABLES = ("interactions", "constructs", "cells", "budget", "backgrounds", "next_steps")
 
 
 def in_unit(result: Result, unit: str) -> Result:

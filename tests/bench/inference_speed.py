@@ -28,6 +28,7 @@ from cornerwise.energies import EnergyBook
 from cornerwise.interaction_rows import Corners, interaction_rows
 from cornerwise.measurements import Measurement
 from cornerwise.mutations import Corner, Cycle, parse_label
+from cornerwise.planning.next_steps import next_steps
 
 CELLS, REPLICATES = 8, 10_000
 SETTINGS = Settings(wild_type="WT", replicates=REPLICATES)
@@ -78,6 +79,7 @@ def ours(made: list[Measurement], cycles: list[Cycle]) -> float:
     )
     rows, _, _ = interaction_rows(cycles, book, corners)
     background_rows(cycles, book, SETTINGS)
+    next_steps(rows, cycles, book, SETTINGS)
     assert all(row.rank is not None and row.boot_low is not None for row in rows)
     return time.perf_counter() - started
 

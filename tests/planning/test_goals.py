@@ -71,7 +71,10 @@ def test_a_ratio_beyond_the_margin_is_never_shown_to_be_equal() -> None:
 
 def test_a_part_that_stays_can_be_too_large() -> None:
     one = Prospect(
-        name="I", value=0.0, terms=_ratio((1.0, 1.0)).terms, fixed=(Fixed("offset", 0.25, math.inf),)
+        name="I",
+        value=0.0,
+        terms=_ratio((1.0, 1.0)).terms,
+        fixed=(Fixed("offset", 0.25, math.inf, "voltage offset"),),
     )
     assert within_reach(NarrowEnough(wanted=1.0, confidence=0.95), one)
     assert not within_reach(NarrowEnough(wanted=0.9, confidence=0.95), one)

@@ -24,7 +24,7 @@ def _prospect(sds: list[float], *, kept: int = 0, known: float = math.inf, fixed
         Term(recording=Recording(f"K{i}", "curves"), sd=sd, scatter_dof=known, kept=kept, kept_dof=kept - 1.0)
         for i, sd in enumerate(sds)
     )
-    parts = (Fixed("offset", fixed**2, math.inf),) if fixed else ()
+    parts = (Fixed("offset", fixed**2, math.inf, "voltage offset"),) if fixed else ()
     return Prospect(name="I", value=0.0, terms=terms, fixed=parts)
 
 

@@ -88,6 +88,7 @@ def test_a_stated_charge_can_stand_in_the_way() -> None:
     (row,) = plan(pilot, PlanRequest(half_width=0.2)).needs
     assert row.further is None
     assert row.shares == ()
+    assert row.reason is not None
     assert "stated total charge, shared by all constructs" in row.reason
 
 

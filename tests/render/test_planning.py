@@ -68,7 +68,7 @@ def _need(further: int | None, low: int | None, high: int | None) -> NeedRow:
     shares = (Share(construct="WT", kind="curves", cells=further),) if further else ()
     return NeedRow(
         subject="A/B", goal="half-width", wanted=1.0, further=further, further_low=low, further_high=high,
-        expected=None, shares=shares, reason="",
+        expected=None, shares=shares, reason=None,
     )  # fmt: skip
 
 

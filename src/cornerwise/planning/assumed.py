@@ -105,6 +105,12 @@ def _paired_sd(corner: _Corner, correlation: float) -> float:
     return math.sqrt(max(variance, 0.0))
 
 
+def _shared_part(assumed: Assumptions, corner: _Corner) -> float:
+    """Covariance of charge and median between cells, which the mean of their products holds."""
+    paired = assumed.charges == "paired"
+    return assumed.correlation * corner.charge_sd * corner.median_sd if paired else 0.0
+
+
 def _interaction(assumed: Assumptions, corners: Sequence[_Corner]) -> Prospect:
     per = energy_per_e0_mv(assumed.energy_unit, assumed.temperature_c)
     dof = math.inf if assumed.known_from is None else assumed.known_from - 1.0
@@ -127,9 +133,12 @@ def _interaction(assumed: Assumptions, corners: Sequence[_Corner]) -> Prospect:
         add(Recording(wild.label, "charges"), abs(medians) * wild.charge_sd)
     if assumed.charges == "stated" and assumed.charge_sem_e0 * medians:
         variance = (per * medians * assumed.charge_sem_e0) ** 2
-        fixed.append(Fixed("stated total charge, shared by all constructs", variance, math.inf))
+        fixed.append(
+            Fixed("stated total charge, shared by all constructs", variance, math.inf, "stated charge")
+        )
     value = per * math.fsum(
-        corner.sign * corner.median * (wild if common else corner).charge for corner in corners
+        corner.sign * (corner.median * (wild if common else corner).charge + _shared_part(assumed, corner))
+        for corner in corners
     )
     return Prospect(name=corners[-1].label, value=value, terms=tuple(terms), fixed=tuple(fixed))
 

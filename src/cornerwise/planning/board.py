@@ -56,6 +56,7 @@ class Board:
         self._fixed_spread: FloatArray = np.array(
             [sum(part.variance**2 / part.dof for part in parts) for parts in fixed]
         )
+        self.confidence = tuple(confidence)
         self._levels = [0.5 + level / 2 for level in confidence]
 
     def _least(self) -> IntArray:
@@ -112,6 +113,12 @@ class Board:
         """Estimates that depend on one kind of recording."""
         has = np.any((self._place == recording) & self._real, axis=1)
         return [int(row) for row in np.flatnonzero(has)]
+
+    def in_proportion(self, scale: float) -> IntArray:
+        """Cells in proportion to the largest scatter that each kind brings, none of those there given up."""
+        largest: FloatArray = np.zeros(len(self.recordings))
+        np.maximum.at(largest, self._place, np.sqrt(self._squares))
+        return np.maximum(self.kept, np.floor(scale * largest).astype(np.int64))
 
     def totals(self, cells: Mapping[Recording, int]) -> IntArray:
         """Cells of each kind in the order of `recordings`."""

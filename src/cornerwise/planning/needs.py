@@ -72,7 +72,7 @@ def _why_not(aim: Aim) -> str:
     if not prospect.fixed:
         return "no number of cells would do"
     largest = max(prospect.fixed, key=lambda part: part.variance)
-    return f"no number of cells makes this part smaller: {largest.name}"
+    return f"no number of cells makes this part smaller: {largest.name}; {largest.remedy}"
 
 
 def _fewest(aim: Aim, board: Board, start: IntArray, sureness: Sureness) -> IntArray | None:
@@ -125,7 +125,7 @@ def need(aim: Aim, starts: Mapping[Recording, int]) -> NeedRow:
         further_high=None if high is None else max(high, further),
         expected=available(abs(score(aim.goal, aim.prospect, board.named(found)))),
         shares=shares_beyond(board, found),
-        reason="",
+        reason=None,
     )
 
 
@@ -157,7 +157,7 @@ def need_of_all(aims: Sequence[Aim], starts: Mapping[Recording, int]) -> NeedRow
         board, start, targets, lambda row, totals: possible[row].reached(board, totals), _MOST_FOR_ALL
     )
     left_out = [aim.prospect.name for aim in aims if aim not in possible]
-    reason = f"without {', '.join(left_out)}" if left_out else ""
+    reason = f"without {', '.join(left_out)}" if left_out else None
     if found is None:
         return None
     scores = [score(aim.goal, aim.prospect, board.named(found)) for aim in possible]

@@ -9,7 +9,7 @@ from typing import Literal, NamedTuple
 
 from ..blocks import BatchMeans, Blocks
 from ..ledger import Ledger
-from ..sources import CellSource, Component, Derived, Part, Source
+from ..sources import CellSource, Component, ComponentKind, Derived, Part, Source
 from .pooling import Scatter, Scatters
 
 Kind = Literal["curves", "charges", "curves with charges"]
@@ -75,6 +75,22 @@ class Fixed(NamedTuple):
     name: str
     variance: float
     dof: float
+    kind: ComponentKind
+
+    @property
+    def remedy(self) -> str:
+        """What does make it smaller."""
+        return _REMEDIES[self.kind]
+
+
+_REMEDIES: Mapping[ComponentKind, str] = {
+    "truncation": "record its curves over voltages that reach both plateaus",
+    "stated charge": "measure the total charge",
+    "charge": "measure that charge",
+    "median": "measure that median voltage",
+    "charge x median": "record cells that show both",
+    "voltage offset": "pin the voltage down better, or measure corners whose charges add up",
+}
 
 
 @dataclass(frozen=True, kw_only=True, slots=True)
@@ -201,7 +217,7 @@ def _recorded(source: Source, weights: Sequence[float], scatters: Scatters) -> t
     (part,) = source.parts(weights)
     if source.components[0].kind in ("median", "charge") and not math.isinf(part.spread.dof):
         return [_of_cells(part, gradient, part.spread.dof + 1, scatters)], []
-    return [], [Fixed(part.name, *part.spread)]
+    return [], [Fixed(part.name, *part.spread, source.components[0].kind)]
 
 
 def prospect(name: str, derived: Derived, ledger: Ledger, scatters: Scatters) -> Prospect:

@@ -19,6 +19,7 @@ Criterion = Literal["mean", "largest"]
 _POWER_FOR_LARGEST = 40
 _MOST_SWAPS = 200
 _SWAPS_TRIED = 24
+_ROUNDING = 1e-9
 _TIGHTER = 0.97  # by this a plain target is made stricter when the true one was not reached
 
 
@@ -35,12 +36,18 @@ def value_of(half_widths: FloatArray, criterion: Criterion) -> float:
     return float(np.mean(half_widths) if criterion == "mean" else np.max(half_widths))
 
 
-def _change(board: Board, totals: IntArray, criterion: Criterion, sign: int) -> FloatArray:
+def first_best(gain: FloatArray) -> int:
+    """Place of the smallest number, of the first of those that rounding alone tells apart."""
+    least = float(np.min(gain))
+    return int(np.flatnonzero(gain <= least + _ROUNDING * abs(least))[0])
+
+
+def change(board: Board, totals: IntArray, criterion: Criterion, sign: int = 1) -> FloatArray:
     """Change of the criterion with one step more or less of each kind, shape (n_recordings,)."""
     now = board.plain(totals)
     after = board.after_one(totals, sign)
-    change = _weigh(after, now, criterion) - _weigh(now, now, criterion)[:, np.newaxis]
-    return board.collect(change)
+    difference = _weigh(after, now, criterion) - _weigh(now, now, criterion)[:, np.newaxis]
+    return board.collect(difference)
 
 
 def spend(board: Board, start: IntArray, recordings: int, criterion: Criterion) -> IntArray:
@@ -71,8 +78,8 @@ def spend(board: Board, start: IntArray, recordings: int, criterion: Criterion) 
     """
     totals, left = start.copy(), recordings
     while (board.step <= left).any():
-        gain = np.where(board.step <= left, _change(board, totals, criterion, 1) / board.step, np.inf)
-        best = int(np.argmin(gain))
+        gain = np.where(board.step <= left, change(board, totals, criterion, 1) / board.step, np.inf)
+        best = first_best(gain)
         totals[best] += board.step[best]
         left -= int(board.step[best])
     return _exchanged(board, totals, start, criterion)
@@ -100,8 +107,8 @@ def _exchanges(
     board: Board, totals: IntArray, start: IntArray, criterion: Criterion
 ) -> list[tuple[int, int]]:
     """Pairs of what to record less and more of, the most promising first."""
-    gain = _change(board, totals, criterion, 1)
-    loss = np.where(totals - board.step >= start, _change(board, totals, criterion, -1), np.inf)
+    gain = change(board, totals, criterion, 1)
+    loss = np.where(totals - board.step >= start, change(board, totals, criterion, -1), np.inf)
     worth = loss[:, np.newaxis] + gain[np.newaxis]
     worth[board.step[:, np.newaxis] != board.step[np.newaxis]] = np.inf
     np.fill_diagonal(worth, np.inf)
@@ -141,8 +148,8 @@ class _Trail:
     def __getitem__(self, steps: int) -> IntArray:
         while len(self._totals) <= steps:
             totals = self._totals[-1].copy()
-            gain = _change(self._board, totals, "mean", 1) / self._board.step
-            best = int(np.argmin(gain))
+            gain = change(self._board, totals, "mean", 1) / self._board.step
+            best = first_best(gain)
             totals[best] += self._board.step[best]
             self._totals.append(totals)
         return self._totals[steps]
@@ -249,7 +256,7 @@ def _narrowed(
         missing = np.maximum(now / goals - 1, 0.0)
         after = np.maximum(board.after_one(totals) / goals[:, np.newaxis] - 1, 0.0)
         gain = board.collect(after - missing[:, np.newaxis]) / board.step
-        best = int(np.argmin(gain))
+        best = first_best(gain)
         totals[best] += board.step[best]
         left -= int(board.step[best])
         if left < 0:
@@ -261,7 +268,7 @@ def _given_back(
 ) -> IntArray:
     """Totals without the cells that no goal needs."""
     totals = totals.copy()
-    for place in np.argsort(_change(board, totals, "mean", -1) / board.step, kind="stable"):
+    for place in np.argsort(change(board, totals, "mean", -1) / board.step, kind="stable"):
         step = board.step[place]
         while totals[place] - step >= start[place]:
             totals[place] -= step

@@ -11,6 +11,7 @@ from ..mutations import parse_label
 from ..result import BudgetRow, ConstructRow, CornerCharge, InteractionRow, Result
 from ..units import in_percent
 from .legend import distance_words, percent
+from .planning import shares_words
 from .rounding import decimals_for, number, span, with_uncertainty
 
 _STATED, _WILD_TYPES = "stated", "wild type"  # sources of charge, as the table of constructs names them
@@ -263,8 +264,23 @@ def _native_pair(row: InteractionRow) -> str:
     )
 
 
+def _next_recording(result: Result, row: InteractionRow) -> list[str]:
+    """What more cells would do for an unresolved interaction."""
+    step = next((one for one in result.next_steps if one.cycle == row.cycle), None)
+    if step is None:
+        return []
+    if step.limit is not None:
+        return [f"no number of cells settles it, held back by {step.limit}: {step.remedy}"]
+    if step.further is None:
+        return ["far more cells than can be recorded would be needed to settle it"]
+    return [
+        f"about {step.further} further cells ({shares_words(step.shares)}) would settle it as "
+        f"{step.settled_as}, if the estimate and every scatter stay what they are"
+    ]
+
+
 def _outlook(result: Result, row: InteractionRow, budget: list[BudgetRow]) -> str:
-    parts = []
+    parts = _next_recording(result, row)
     settled = row.shortcut_verdict == "valid"
     if not settled and row.shortcut_verdict != "untested" and row.passing_margin is not None:
         parts.append(

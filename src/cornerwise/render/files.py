@@ -41,6 +41,7 @@ def result_files(result: Result, *, cycle_figures: bool | None = None) -> dict[s
     some: dict[str, Table[Row]] = {
         "per_subunit.csv": result.per_subunit,
         "backgrounds.csv": result.backgrounds,
+        "next_steps.csv": result.next_steps,
     }
     return {
         "result.json": result.to_json(),

@@ -120,6 +120,28 @@ def test_every_number_is_that_of_the_result(result: Result, page: str) -> None:
             assert typeset(flag.message) in text
 
 
+def test_what_to_record_next_is_told_for_every_unresolved_cycle(result: Result, page: str) -> None:
+    section = "".join(
+        _read(page[page.index('<section id="next"') : page.index('<section id="figures"')]).text
+    )
+    assert "What to record next" in section
+    assert result.next_steps
+    for step in result.next_steps:
+        assert step.cycle in section
+        told = step.remedy if step.limit else f"{step.next_construct}, {step.next_kind}"
+        assert str(told) in section
+    settled = couple(
+        campaign(
+            [construct(k, [m - 0.1, m, m + 0.1], [13.0, 13.01, 12.99]) for k, m in SETTLED.items()],
+        )
+    )
+    assert not settled.next_steps
+    assert "Every interaction that has an uncertainty is settled." in report_html(settled)
+
+
+SETTLED = {"WT": -40.0, "E5A": -33.0, "R9Q": -52.0, "E5A/R9Q": -20.0}
+
+
 def test_every_cell_is_listed_with_its_curve(result: Result, page: str) -> None:
     section = page[page.index('id="cells"') : page.index('id="methods"')]
     assert section.count("<tr") - 1 == len(result.cells) == 4 * len(MEDIANS)

@@ -14,6 +14,7 @@ from ..methods import figure_legends, methods_paragraphs
 from ..pages import asset, environment, policy
 from ..rounding import typeset
 from .answer import answer
+from .next_recordings import next_charges, next_views
 from .views import FIGURE_TITLES, CycleView, CycleViews, cell_views, construct_view
 
 _PACKAGE = "cornerwise.render.report"
@@ -62,6 +63,8 @@ def report_html(result: Result, *, cycle_figures: bool | None = None) -> str:
             title=result.settings.title or "Interaction energies",
             answer=answer(result, cycles),
             cycles=cycles,
+            next_steps=next_views(result, cycles),
+            next_charges=next_charges(cycles),
             drawn=drawn,
             first_figure=first,
             overview=[one for one in overview if first is None or one[0] != "interactions"],
