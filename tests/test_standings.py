@@ -14,8 +14,10 @@ from cornerwise.coupling import couple
 from cornerwise.energies import EnergyBook
 from cornerwise.estimates import Estimate, estimate_all
 from cornerwise.mutations import find_cycles
+from cornerwise.quantities import Summary
 from cornerwise.result import InteractionRow, Result
 from cornerwise.standings import Standing, standings
+from cornerwise.units import energy_per_e0_mv
 
 CHARGE = StatedCharge(value_e0=13.0, sem_e0=0.2)
 PAIRS = ("D10N/R60Q", "E12Q/K64M", "D14N/H66A", "S16A/T70A", "E18Q/D72N")
@@ -112,6 +114,37 @@ def _estimates(
     cycles = find_cycles({frozenset(m.construct.mutations): m.label for m in made})
     found, deviations = estimate_all(cycles, EnergyBook(made, chosen), chosen)
     return found, standings(found, deviations, chosen)
+
+
+@pytest.mark.parametrize("at_once", [False, True], ids=["cells", "summaries"])
+def test_a_cycle_with_two_exact_corners_is_welchs_t_test(at_once: bool) -> None:
+    # Welch-Satterthwaite of a contrast against a reference library: scipy.stats.ttest_ind, equal_var=False.
+    rng = np.random.default_rng(3)
+    exact = Summary(mean=-40.0, sem=0.0, n=None)
+    for n, m in ((3, 12), (5, 5), (8, 4)):
+        single, double = rng.normal(-38, 4, n), rng.normal(-33, 1.5, m)
+        quantities = [
+            Summary(mean=float(np.mean(x)), sem=float(stats.sem(x)), n=len(x)) if at_once else cells(x)
+            for x in (single, double)
+        ]
+        made = [
+            measurement(label, quantity)
+            for label, quantity in zip(
+                ("WT", "A1G", "C2S", "A1G/C2S"), (exact, exact, *quantities), strict=True
+            )
+        ]
+        charge = StatedCharge(value_e0=1.0, sem_e0=0.0)
+        settings = Settings(wild_type="WT", charge=charge, replicates=1000, confidence=0.9)
+        cycles = find_cycles({frozenset(m.construct.mutations): m.label for m in made})
+        (found,), _ = estimate_all(cycles, EnergyBook(made, settings), settings)
+        welch = stats.ttest_ind(double, single, equal_var=False)
+        assert found.value / found.std_uncertainty == pytest.approx(welch.statistic)
+        assert found.dof == pytest.approx(welch.df)
+        assert found.p_value == pytest.approx(welch.pvalue)
+        per_mv = energy_per_e0_mv("kcal/mol", settings.temperature_c)
+        limits = welch.confidence_interval(0.9)
+        assert found.interval.low == pytest.approx(per_mv * limits.low)
+        assert found.interval.high == pytest.approx(per_mv * limits.high)
 
 
 TWENTY = {f"E{10 + i}Q/R{100 + i}Q": 0.0 for i in range(20)}
