@@ -64,7 +64,9 @@ def check_destination(folder: Path, *, force: bool) -> None:
         raise UsageError(f"cannot write into {place.parent}; give another folder, or mend its permissions")
 
 
-def write_folder(files: Mapping[str, str | bytes], folder: Path, *, force: bool = False) -> None:
+def write_folder(
+    files: Mapping[str, str | bytes], folder: str | os.PathLike[str], *, force: bool = False
+) -> None:
     r"""Write files into `folder`, all of them or none.
 
     Parameters
@@ -72,7 +74,7 @@ def write_folder(files: Mapping[str, str | bytes], folder: Path, *, force: bool 
     files : mapping of str to str or bytes
         File name, or a path below `folder` with forward slashes, to contents; text is written
         as UTF-8 with ``\n`` line ends.
-    folder : Path
+    folder : str or path-like
         Appears, or is replaced, as a whole once every file is complete. A link is followed.
     force : bool, optional
         Replace an existing folder.
@@ -82,8 +84,8 @@ def write_folder(files: Mapping[str, str | bytes], folder: Path, *, force: bool 
     UsageError
         As `check_destination`, or if the place cannot be written.
     """
-    check_destination(folder, force=force)
-    place = _followed(folder)
+    check_destination(Path(folder), force=force)
+    place = _followed(Path(folder))
     try:
         clear_left_behind(place)
         with _beside(place) as fresh:

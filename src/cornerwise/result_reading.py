@@ -5,6 +5,7 @@ from __future__ import annotations
 import dataclasses
 import json
 import math
+import os
 import types
 from collections.abc import Callable, Mapping
 from pathlib import Path
@@ -45,12 +46,12 @@ def _refuse(file: str, found: str, expected: str, place: str = "") -> NoReturn:
     raise DataRefused([Problem(origin=origin, found=visible(found), expected=expected, remedy=_AGAIN)])
 
 
-def read_result(path: Path) -> Result:
+def read_result(path: str | os.PathLike[str]) -> Result:
     """Read what `Result.to_json` wrote.
 
     Parameters
     ----------
-    path : Path
+    path : str or path-like
         A ``result.json``.
 
     Returns
@@ -66,7 +67,7 @@ def read_result(path: Path) -> Result:
     """
     file = str(path)
     try:
-        with path.open("rb") as stream:
+        with Path(path).open("rb") as stream:
             data = stream.read(MOST_BYTES + 1)
         text = data.decode("utf-8")
     except (OSError, UnicodeDecodeError) as error:

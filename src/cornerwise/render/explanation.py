@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterable
 from difflib import get_close_matches
 
-from ..campaign import StatedCharge
+from ..campaign import Settings, StatedCharge
 from ..errors import UsageError
 from ..mutations import parse_label
 from ..result import BudgetRow, ConstructRow, CornerCharge, InteractionRow, Result
@@ -73,6 +73,9 @@ def _energy(result: Result, value: float | None, uncertainty: float | None) -> s
 _VERDICT_REASONS = {
     "coupled": "the whole interval lies beyond the threshold of {threshold}",
     "detected": "the interval excludes 0 but not the threshold of {threshold}",
+    "detected, weak": "the interval excludes 0 and lies inside the threshold of {threshold}: an "
+    "interaction, "
+    "and shown to be a weaker one",
     "uncoupled": "the whole interval lies inside the threshold of {threshold} either side of 0",
     "unresolved": "the interval neither excludes 0 nor lies inside the threshold of {threshold}",
 }
@@ -90,19 +93,31 @@ def _interaction(result: Result, row: InteractionRow) -> str:
     threshold = f"{settings.energy_threshold:.3g} {settings.energy_unit}"
     text += (
         f" The {percent(settings.confidence)} interval is {span((row.low, row.high), row.std_uncertainty)} "
-        f"(Student's t, {row.dof:.1f} degrees of freedom; p = {row.p_value:.2g}"
-        f"{_adjusted(result, row)}). It is {row.interaction_verdict}: {_reason(row, threshold)}."
+        f"({_kind(settings, row.dof)}; p = {row.p_value:.2g}"
+        f"{_adjusted(result, row)}). It is {row.interaction_verdict}: "
+        f"{_reason(row, settings.energy_threshold, threshold)}."
     )
     if row.favours is not None:
         text += f" The native interaction favours the {row.favours} state; this is no proof of a contact."
     return text
 
 
-def _reason(row: InteractionRow, threshold: str) -> str:
+def _kind(settings: Settings, dof: float) -> str:
+    """How the interval and the p value beside it were formed."""
+    if settings.interval == "monte-carlo":
+        return f"Monte Carlo; by Student's t with {dof:.1f} degrees of freedom"
+    return f"Student's t, {dof:.1f} degrees of freedom"
+
+
+def _reason(row: InteractionRow, limit: float, threshold: str) -> str:
     beyond_0 = row.low is not None and row.high is not None and (row.low > 0 or row.high < 0)
     if row.interaction_verdict == "unresolved" and beyond_0:
         return "the interval excludes 0, but not once the p value is adjusted for the number of cycles"
-    return _VERDICT_REASONS[row.interaction_verdict].format(threshold=threshold)
+    verdict: str = row.interaction_verdict
+    if verdict == "detected" and row.low is not None and row.high is not None:
+        weak = max(abs(row.low), abs(row.high)) < limit
+        verdict = "detected, weak" if weak else verdict
+    return _VERDICT_REASONS[verdict].format(threshold=threshold)
 
 
 def _adjusted(result: Result, row: InteractionRow) -> str:
@@ -122,8 +137,9 @@ def _is_stated(one: ConstructRow) -> bool:
 
 def _measured(row: InteractionRow, corners: list[ConstructRow]) -> str:
     parts = []
+    measured = {one.construct for one in row.corner_charges if one.verdict != "assumed"}
     for one in corners:
-        charge = "Q not measured"
+        charge = "Q measured, but not used" if one.construct in measured else "Q not measured"
         if not _not_measured(row, one):
             n = "" if one.charge_n is None else f", n = {one.charge_n}"
             charge = f"Q {with_uncertainty(one.charge_e0, one.charge_sem_e0)} e0 ({one.charge_source}{n})"
@@ -144,17 +160,23 @@ def _assumed(result: Result, row: InteractionRow, corners: list[ConstructRow]) -
         charge = result.settings.charge
         cited = charge.citation if isinstance(charge, StatedCharge) else None
         source = f"the stated {value}{f' ({cited})' if cited else ''}"
-    text = (
-        f"Assumed: the total charge of {', '.join(one.construct for one in lent)} was not measured in this "
-        f"campaign and is taken to be {source}. That the constructs may differ in it is no part of the "
-        "interval."
-    )
+    if isinstance(result.settings.charge, StatedCharge) or result.settings.charge == "wild-type":
+        text = f"Assumed: one total charge for all corners, as the settings ask, {source}."
+    else:
+        named = ", ".join(one.construct for one in lent)
+        text = (
+            f"Assumed: the total charge of {named} was not measured in this campaign and is taken to be "
+            f"{source}."
+        )
+    text += " That the constructs may differ in it is no part of the interval."
     return f"{text} {_breakdown(result, row)}"
 
 
 def _breakdown(result: Result, row: InteractionRow) -> str:
     """What change of an assumed charge would undo the verdict, and what would erase the interaction."""
-    if row.interaction_verdict == "unresolved" or not row.breakdown:
+    if row.interaction_verdict != "unresolved" and not row.breakdown:
+        return "The charges that were measured are judged below."
+    if row.interaction_verdict == "unresolved":
         return "As the interaction is unresolved, no change of a charge is needed to put it in doubt."
     threshold = f"{result.settings.energy_threshold:.3g} {result.settings.energy_unit}"
     ends = {
@@ -192,7 +214,7 @@ def _charge_sentence(one: CornerCharge, confidence: float) -> str:
 _SHORTCUT_REASONS = {
     "valid": "every charge is shown to be equal within the margin and the bias is inside the tolerance",
     "invalid": "a charge changed, or the bias lies outside the tolerance",
-    "unresolved": "equal charge, or a bias inside the tolerance, could not be shown",
+    "unresolved": "not every charge could be shown to be equal",
     "untested": "it is right only if the charges that were not measured equal the wild type's",
 }
 
@@ -214,11 +236,22 @@ def _shortcut(result: Result, row: InteractionRow) -> str:
         limits = (row.shortcut_bias_low, row.shortcut_bias_high)
         half = (row.shortcut_bias_high or 0.0) - row.shortcut_bias_low
         text += (
-            f" The shortcut is off by {number(row.shortcut_bias, decimals_for(half / 4))} "
+            f" {_one_charge(result)}he shortcut is off by "
+            f"{number(row.shortcut_bias, decimals_for(half / 4))} "
             f"({span(limits, half / 4)}), the tolerance is {settings.energy_tolerance:.3g} "
             f"{settings.energy_unit}."
         )
-    return f"{text} The shortcut is {row.shortcut_verdict}: {_SHORTCUT_REASONS[row.shortcut_verdict]}."
+    all_equal = all(one.verdict == "equal" for one in row.corner_charges)
+    reason = _SHORTCUT_REASONS[row.shortcut_verdict]
+    if row.shortcut_verdict == "unresolved" and all_equal:
+        reason = "every charge is equal within the margin, but a bias inside the tolerance could not be shown"
+    return f"{text} The shortcut is {row.shortcut_verdict}: {reason}."
+
+
+def _one_charge(result: Result) -> str:
+    """Begins a sentence on measured charges, which the energies themselves may not use."""
+    used = result.settings.charge == "measured"
+    return "T" if used else "By the charges that were measured, which the energies do not use, t"
 
 
 def _voltages(result: Result, row: InteractionRow) -> str:
@@ -238,6 +271,12 @@ def _voltages(result: Result, row: InteractionRow) -> str:
         if result.settings.voltage_offset_mv and row.offset_contribution is not None
         else ""
     )
+    if result.settings.charge != "measured":
+        return (
+            "With one charge for all corners the interaction energy is one number for all voltages. "
+            "The charges "
+            f"that were measured give {j}, which would change it by {change}{offset}."
+        )
     if "charge-nonadditive" in row.flags:
         return (
             f"The charges do not add up, {j}: the interaction energy depends on the voltage and changes by "
@@ -282,7 +321,8 @@ def _next_recording(result: Result, row: InteractionRow) -> list[str]:
 def _outlook(result: Result, row: InteractionRow, budget: list[BudgetRow]) -> str:
     parts = _next_recording(result, row)
     settled = row.shortcut_verdict == "valid"
-    if not settled and row.shortcut_verdict != "untested" and row.passing_margin is not None:
+    wider = row.passing_margin is not None and row.passing_margin > result.settings.charge_margin
+    if not settled and row.shortcut_verdict != "untested" and wider and row.passing_margin is not None:
         parts.append(
             f"every charge would count as equal with a margin of {percent(round(row.passing_margin, 3))}"
         )

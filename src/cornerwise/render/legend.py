@@ -8,7 +8,6 @@ from ..campaign import Settings, StatedCharge
 from ..result import BudgetRow, InteractionRow, RankRow, Result
 from ..units import in_percent
 
-FORMULA = "I = sum over the corners of s F Q Vm; s = (-1)^(order - mutations in the corner)"
 SIGN_OF_PAIR = (
     "I > 0: the native pair's interaction favours the resting state over the activated one; "
     "I < 0: the activated one"
@@ -22,21 +21,28 @@ _CYCLES_TOLD = 3
 CAUTION = "a coupling energy is a difference between two states and no proof of a contact"
 
 
+def formula(reference_mv: float = 0.0) -> str:
+    """Formula of the interaction energy at a reference voltage (mV)."""
+    energy = "F Q Vm" if reference_mv == 0 else "F Q (Vm - V)"
+    at = "" if reference_mv == 0 else f", V = {reference_mv:g} mV"
+    return f"I = sum over the corners of s {energy}; s = (-1)^(order - mutations in the corner){at}"
+
+
 def sign_sentences(orders: set[int]) -> list[str]:
     """What the sign of I means for cycles of these orders."""
     odd = [SIGN_OF_ODD_ORDER] if any(order % 2 for order in orders) else []
     return [SIGN_OF_PAIR, *odd]
 
 
-def formula_and_sign(orders: Iterable[int]) -> list[str]:
-    """Formula and meaning of the sign for a figure with cycles of these orders."""
+def formula_and_sign(orders: Iterable[int], reference_mv: float = 0.0) -> list[str]:
+    """Formula at a reference voltage (mV) and meaning of the sign for a figure of cycles of these orders."""
     found = set(orders)
     only_odd = bool(found) and all(order % 2 for order in found)
     signs = [SIGN_OF_ODD] if only_odd else sign_sentences(found)
     kept_together = [
         sign.replace("I > 0", "I\u00a0>\u00a00").replace("I < 0", "I\u00a0<\u00a00") for sign in signs
     ]
-    return [f"{FORMULA}.", *(f"{sign}." for sign in kept_together)]
+    return [f"{formula(reference_mv)}.", *(f"{sign}." for sign in kept_together)]
 
 
 def unit_phrase(settings: Settings) -> str:

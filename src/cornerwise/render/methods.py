@@ -9,7 +9,7 @@ from ..campaign import StatedCharge
 from ..intervals import Adjustment
 from ..result import Result
 from ..units import energy_per_e0_mv
-from .legend import FORMULA, distance_sources, percent, sign_sentences
+from .legend import distance_sources, formula, percent, sign_sentences
 from .rounding import with_uncertainty
 
 # Bibliographic data are cited from memory: check them against the publisher's page before submission.
@@ -115,7 +115,8 @@ def _data(result: Result, cited: _Cited) -> str:
     summarised = [row for row in result.constructs if row.construct not in with_cells]
     if summarised:
         sentences.append(
-            f"Median voltages of {counted(len(summarised), 'construct')} entered as mean, standard error and "
+            f"Median voltages of {counted(len(summarised), 'construct')} entered as mean, standard "
+            "error and "
             "number of cells."
         )
     return " ".join([*sentences, charge_sentence(result)])
@@ -158,8 +159,10 @@ def _energies(result: Result, cited: _Cited) -> str:
     energy = "F Q Vm" if voltage == 0 else f"F Q (Vm - V) at V = {voltage:g} mV"
     text = (
         f"The free energy of activation of a construct, per channel, is {energy}, with total charge Q and "
-        f"F = {factor:.5g} {settings.energy_unit} per e0 and mV {cited('linked')}. The interaction energy of "
-        f"a cycle is {FORMULA} {cited('cycle', 'higher') if max(orders, default=2) > 2 else cited('cycle')}; "
+        f"F = {factor:.5g} {settings.energy_unit} per e0 and mV {cited('linked')}. The interaction "
+        "energy of "
+        f"a cycle is {formula(voltage)} "
+        f"{cited('cycle', 'higher') if max(orders, default=2) > 2 else cited('cycle')}; "
         f"{'; '.join(sign_sentences(orders))}. "
         "An interaction energy is a difference between two states and no proof of a contact."
     )
@@ -180,17 +183,12 @@ def _uncertainty(result: Result, cited: _Cited) -> str:
     text = (
         f"Uncertainties follow from the law of propagation of uncertainty {cited('gum')} over independent "
         "sources (the cells of each construct, the charges"
-        f"{offset}), each of which counts once however many corners share it. Intervals are "
-        f"{percent(settings.confidence)} intervals by Student's t with Welch-Satterthwaite degrees of "
-        f"freedom {cited('welch', 'satterthwaite')}. A bootstrap over cells within constructs "
-        f"({settings.replicates} replicates, seed {settings.seed}; percentiles expanded to the same degrees "
+        f"{offset}), each of which counts once however many corners share it. {_intervals(result, cited)} "
+        "A bootstrap over cells within constructs "
+        f"({settings.replicates} replicates, seed {settings.seed}; percentiles expanded to the same "
+        "degrees "
         f"of freedom {cited('bootstrap')}) served as a check. "
     )
-    if settings.interval == "monte-carlo":
-        text += (
-            "Verdicts go by intervals from a Monte Carlo propagation of Student's t distributions "
-            f"{cited('monte carlo')}. "
-        )
     return f"{text}{batch_sentence(result)}{_many(result, cited)}"
 
 
@@ -216,6 +214,21 @@ ADJUSTMENTS: Mapping[Adjustment, tuple[str, str]] = {
 }
 
 
+def _intervals(result: Result, cited: _Cited) -> str:
+    """How the intervals that the verdicts go by were formed."""
+    settings = result.settings
+    level, by_t = percent(settings.confidence), cited("welch", "satterthwaite")
+    if settings.interval == "monte-carlo":
+        return (
+            f"{level} intervals of interactions come from a Monte Carlo propagation of Student's t "
+            f"distributions {cited('monte carlo')}; those of constructs, and p values, from Student's t with "
+            f"Welch-Satterthwaite degrees of freedom {by_t}."
+        )
+    return (
+        f"Intervals are {level} intervals by Student's t with Welch-Satterthwaite degrees of freedom {by_t}."
+    )
+
+
 def _many(result: Result, cited: _Cited) -> str:
     settings, number = result.settings, len(result.interactions)
     if number < 2:
@@ -223,7 +236,8 @@ def _many(result: Result, cited: _Cited) -> str:
     name, key = ADJUSTMENTS[settings.adjustment]
     order = "absolute size" if settings.rank_by == "estimate" else "the lower limit of the absolute size"
     return (
-        f"Two-sided p values were adjusted for {counted(number, 'cycle')} by {name} {cited(key)}. Cycles are "
+        f"Two-sided p values were adjusted for {counted(number, 'cycle')} by {name} {cited(key)}. "
+        "Cycles are "
         f"ranked by {order}; the interval of a rank counts the cycles shown to be stronger and weaker."
     )
 
@@ -233,8 +247,9 @@ def _judgement(result: Result, cited: _Cited) -> str:
     unit = settings.energy_unit
     return (
         f"A pair is called coupled when its whole interval lies beyond {settings.energy_threshold:.3g} "
-        f"{unit} on one side of 0, detected when the interval excludes 0 only (both only with an adjusted p "
-        f"of at most {1 - settings.confidence:.3g}), uncoupled when it lies inside that threshold, and "
+        f"{unit} on one side of 0, detected when the interval excludes 0 (both only with an adjusted p "
+        f"of at most {1 - settings.confidence:.3g}), uncoupled when neither holds and it lies inside that "
+        "threshold, and "
         f"unresolved otherwise. {_charge_judgement(result, cited)}"
     )
 
@@ -244,7 +259,8 @@ def _charge_judgement(result: Result, cited: _Cited) -> str:
     settings = result.settings
     if all(row.charge_verdict in (None, "assumed") for row in result.constructs):
         return (
-            "That all constructs move the same total charge is an assumption here: it was not tested, and an "
+            "That all constructs move the same total charge is an assumption here: it was not tested, "
+            "and an "
             "error of it is no part of the intervals."
         )
     inner = percent(round(2 * settings.confidence - 1, 6))
@@ -252,7 +268,8 @@ def _charge_judgement(result: Result, cited: _Cited) -> str:
         "A mutant's total charge is called equal to the wild "
         f"type's when the {inner} interval of their ratio lies inside 1 ± {settings.charge_margin:g} (two "
         f"one-sided tests {cited('equivalence')}), and changed when its {percent(settings.confidence)} "
-        "interval excludes 1. Median voltages alone are called a valid shortcut when all charges are equal "
+        "interval excludes 1 and the charge is not equal in that sense. Median voltages alone are "
+        "called a valid shortcut when all charges are equal "
         "and the interval of the error they would make lies inside "
         f"{settings.energy_tolerance:.3g} {settings.energy_unit}."
     )
@@ -300,20 +317,21 @@ def figure_legends(result: Result) -> dict[str, str]:
     settings = result.settings
     level, unit = percent(settings.confidence), f"{settings.energy_unit} per channel"
     signs = "; ".join(sign_sentences({row.order for row in result.interactions}))
+    stated = formula(settings.reference_voltage_mv)
     cells = [row.cells_used for row in result.constructs if row.cells_used]
     n = f"n = {_between(cells)} cells a construct" if cells else "summaries only"
     band = f"{settings.energy_threshold:.3g} {unit}"
     return {
         "interactions": (
             f"Interaction energies I ({unit}) of {counted(len(result.interactions), 'cycle')}, strongest "
-            f"first, with {level} intervals ({n}). {FORMULA}. {signs}. Grey band: threshold of "
+            f"first, with {level} intervals ({n}). {stated}. {signs}. Grey band: threshold of "
             f"{band}. Disc, coupled; lozenge, detected; ring, uncoupled; cross, unresolved. An arrowhead "
             "marks an interval that goes on."
         ),
         "matrix": (
             f"Interaction energies I ({unit}) residue by residue; {n}. Disc, I > 0; square, I < 0; filled "
             f"where the {level} interval excludes 0 and the adjusted p is at most "
-            f"{1 - settings.confidence:.3g}. The area is proportional to the size of I. {FORMULA}. "
+            f"{1 - settings.confidence:.3g}. The area is proportional to the size of I. {stated}. "
             f"{signs}. Empty: not studied. Cycles of order 3 and above are not shown."
         ),
         "charges": (
@@ -328,7 +346,7 @@ def figure_legends(result: Result) -> dict[str, str]:
         "shape": (
             f"Activation free energies ({unit}, estimate ± standard uncertainty) of the constructs of a "
             "cycle, what each mutation adds along the edges, and the interaction energy I with its "
-            f"{level} interval. {FORMULA}. {signs}. Dark bar, enters with a plus; pale bar, with a minus."
+            f"{level} interval. {stated}. {signs}. Dark bar, enters with a plus; pale bar, with a minus."
         ),
         "curves": (
             f"Charge-voltage curves of a cycle's constructs: points, every cell ({n}), crosses those set "
@@ -336,7 +354,9 @@ def figure_legends(result: Result) -> dict[str, str]:
             "areas equal."
         ),
         "voltage": (
-            f"Interaction energy against voltage ({unit}), I(V) = I - F V J, where the total charges around "
-            f"the cycle do not add up (J is not 0), with its {level} interval. Grey band: threshold, {band}."
+            f"Interaction energy against voltage ({unit}), I(V) = I - F V J, where the total charges "
+            "around "
+            f"the cycle do not add up (J is not 0), with its {level} interval. Grey band: threshold, "
+            f"{band}."
         ),
     }

@@ -11,13 +11,14 @@ from rich.console import Console
 from rich.table import Table as Grid
 from rich.text import Text
 
+from ..campaign import Settings
 from ..flags import Flag
 from ..result import Result
 from ..surveying import Survey, SurveyRow
 from .legend import (
     CAUTION,
-    FORMULA,
     budget_sentence,
+    formula,
     interval_words,
     settings_sentences,
     sign_sentences,
@@ -186,21 +187,31 @@ def _show_result(result: Result, screen: Console) -> None:
     relevant = _flags_of_cycles(result)
     if result.settings.title:
         screen.print(Text(result.settings.title, style="bold"))
-    print_lines(screen, [f"Interaction energies I in {unit_phrase(result.settings)}, strongest first"])
+    print_lines(
+        screen,
+        [f"Interaction energies I in {unit_phrase(result.settings)}{_at(result.settings)}, strongest first"],
+    )
     screen.print()
     screen.print(_interaction_grid(result, marks, _plus_minus(screen), screen.width))
     _print_flags(screen, relevant, marks)
     screen.print()
     orders = {row.order for row in result.interactions}
+    reference = result.settings.reference_voltage_mv
     background = (
         [f"Background of every construct: {'/'.join(result.background)}"] if result.background else []
     )
     notes = [f"Note: {note}" for note in result.notes]
     print_lines(
-        screen, [FORMULA, *sign_sentences(orders), CAUTION, *budget_sentence(result), *background, *notes]
+        screen,
+        [formula(reference), *sign_sentences(orders), CAUTION, *budget_sentence(result), *background, *notes],
     )
     screen.print()
     print_lines(screen, settings_sentences(result.settings))
+
+
+def _at(settings: Settings) -> str:
+    """Reference voltage, where it is not 0 mV."""
+    return f" at {settings.reference_voltage_mv:g} mV" if settings.reference_voltage_mv else ""
 
 
 def _flags_of_cycles(result: Result) -> list[Flag]:

@@ -7,7 +7,7 @@ from typing import IO
 from rich.text import Text
 
 from ..simulation import Truth
-from .legend import CAUTION, FORMULA, sign_sentences
+from .legend import CAUTION, formula, sign_sentences
 from .rounding import number
 from .terminal import plain_grid, screen_on
 
@@ -36,7 +36,7 @@ def print_truth(truth: Truth, stream: IO[str]) -> None:
         cycles.add_row(Text(cycle.cycle), *map(Text, values))
     legend = [
         f"True values of the simulated campaign, in {unit} per channel, from the states of the model",
-        FORMULA,
+        formula(),
         *sign_sentences({cycle.order for cycle in truth.cycles}),
         CAUTION,
     ]

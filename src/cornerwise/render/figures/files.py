@@ -85,7 +85,9 @@ class CycleFigures:
         """Sheets that apply to a cycle, by kind: ``shape``, ``curves``, ``voltage``, ``budget``."""
         curves = [self._curves(label) for label, _ in row.corners]
         sheets = {
-            "shape": cycle_shape(row, self._constructs, width),
+            "shape": cycle_shape(
+                row, self._constructs, width, reference_mv=self._result.settings.reference_voltage_mv
+            ),
             "curves": cycle_curves(row.cycle, curves, width),
             "voltage": profile_sheet(row, self._result, width),
             "budget": cycle_budget(row, self._budget.get(row.cycle, []), width),

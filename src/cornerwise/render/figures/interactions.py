@@ -63,7 +63,7 @@ def _sheet(
     middle = (scale.start + scale.end) / 2
     unit = f"I ({result.settings.energy_unit} per channel)"
     sheet.words((middle, bottom + 7.6), unit, anchor="middle")
-    sheet.foot(formula_and_sign(row.order for row in rows))
+    sheet.foot(formula_and_sign((row.order for row in rows), result.settings.reference_voltage_mv))
     return sheet
 
 

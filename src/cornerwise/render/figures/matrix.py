@@ -51,7 +51,7 @@ def matrix_sheet(result: Result, width: float) -> Sheet | None:
     _key(sheet, bottom + margin + 1.0)
     numbers = f"Numbers: I in {result.settings.energy_unit} per channel. " if cell >= _NUMBERS_FROM_MM else ""
     unit = f"{numbers}The area of a symbol is proportional to the size of I; empty: not studied."
-    sheet.foot([unit, *formula_and_sign([2])])
+    sheet.foot([unit, *formula_and_sign([2], result.settings.reference_voltage_mv)])
     return sheet
 
 

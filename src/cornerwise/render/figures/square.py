@@ -28,7 +28,9 @@ class _Corner:
     energy: str
 
 
-def cycle_shape(row: InteractionRow, constructs: Mapping[str, ConstructRow], width: float) -> Sheet | None:
+def cycle_shape(
+    row: InteractionRow, constructs: Mapping[str, ConstructRow], width: float, *, reference_mv: float = 0.0
+) -> Sheet | None:
     """Square of an order-2 cycle, cube of an order-3 cycle; None for higher orders.
 
     Parameters
@@ -39,10 +41,15 @@ def cycle_shape(row: InteractionRow, constructs: Mapping[str, ConstructRow], wid
         By label.
     width : float
         Of the sheet (mm).
+    reference_mv : float, optional
+        Voltage of the energies (mV).
     """
-    if row.order == 2:
-        return _square(row, constructs, width)
-    return _cube(row, constructs, width) if row.order == 3 else None
+    drawn = {2: _square, 3: _cube}.get(row.order)
+    if drawn is None:
+        return None
+    sheet = drawn(row, constructs, width)
+    sheet.foot(formula_and_sign([row.order], reference_mv))
+    return sheet
 
 
 def _square(row: InteractionRow, constructs: Mapping[str, ConstructRow], width: float) -> Sheet:
@@ -55,7 +62,6 @@ def _square(row: InteractionRow, constructs: Mapping[str, ConstructRow], width: 
     _draw_edges(sheet, row, corners, labelled=True)
     _draw_corners(sheet, corners)
     _interaction(sheet, row, (width / 2, (top + bottom) / 2))
-    sheet.foot(formula_and_sign([row.order]))
     return sheet
 
 
@@ -78,7 +84,6 @@ def _cube(row: InteractionRow, constructs: Mapping[str, ConstructRow], width: fl
     _draw_edges(sheet, row, corners, labelled=wide)
     _draw_corners(sheet, corners)
     _interaction_line(sheet, row, (width / 2, height - 6.0))
-    sheet.foot(formula_and_sign([row.order]))
     return sheet
 
 

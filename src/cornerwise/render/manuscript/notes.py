@@ -177,8 +177,8 @@ def _verdict(settings: Settings) -> Words:
     threshold = f"{settings.energy_threshold:.3g} {settings.energy_unit}"
     return words(
         f"Verdict: coupled, the whole interval lies beyond {threshold} on one side of 0; detected, it "
-        f"excludes 0 (both only with *p*~adj~ of at most {1 - settings.confidence:.3g}); uncoupled, it lies "
-        f"within ±{threshold}; unresolved, none of these."
+        f"excludes 0 (both only with *p*~adj~ of at most {1 - settings.confidence:.3g}); uncoupled, "
+        f"neither of these and within ±{threshold}; unresolved, none of these."
     )
 
 
@@ -196,8 +196,8 @@ def _charge_verdict(settings: Settings) -> Words:
     inner = percent(round(2 * settings.confidence - 1, 6))
     return words(
         f"Charge: equal, the {inner} interval of the ratio lies within 1 ± {settings.charge_margin:g}; "
-        f"changed, the {percent(settings.confidence)} interval excludes 1; unresolved, neither; assumed, "
-        "never measured."
+        f"changed, it is not equal and the {percent(settings.confidence)} interval excludes 1; unresolved, "
+        "neither; assumed, never measured."
     )
 
 

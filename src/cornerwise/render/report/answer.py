@@ -16,7 +16,7 @@ _MOST = 12  # cycles named in one line
 
 _VERDICT_TITLES = {
     "coupled": "Coupled: the whole interval lies beyond {threshold} on one side of 0",
-    "detected": "Detected: an interaction, but maybe a weaker one than {threshold}",
+    "detected": "Detected: an interaction, but not shown to be stronger than {threshold}",
     "unresolved": "Unresolved: the data say neither that there is an interaction nor that there is none",
     "uncoupled": "Uncoupled: shown to be weaker than {threshold}",
 }

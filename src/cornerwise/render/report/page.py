@@ -9,7 +9,7 @@ from ...result import Result
 from ..figures.files import overview_sheets
 from ..figures.style import SINGLE_COLUMN_MM
 from ..figures.vector import svg_inline
-from ..legend import CAUTION, FORMULA, percent, setting_values, sign_sentences, unit_phrase
+from ..legend import CAUTION, formula, percent, setting_values, sign_sentences, unit_phrase
 from ..methods import figure_legends, methods_paragraphs
 from ..pages import asset, environment, policy
 from ..rounding import typeset
@@ -76,7 +76,7 @@ def report_html(result: Result, *, cycle_figures: bool | None = None) -> str:
             setting_values=setting_values(result.settings),
             level=percent(result.settings.confidence),
             unit=unit_phrase(result.settings),
-            formula=FORMULA,
+            formula=formula(result.settings.reference_voltage_mv),
             signs=sign_sentences({row.order for row in result.interactions}),
             caution=CAUTION,
             research_only=RESEARCH_ONLY,
