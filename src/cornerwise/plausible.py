@@ -48,6 +48,7 @@ FEWEST_POINTS = 5
 FEWEST_OPENINGS = 4  # points of a cell's open probability; fewer show no limit of a slope
 FLAT_CHANCE = 0.05  # how often noise about a constant may pass for a rise
 
+_STRAY = 10.0  # times the spread of all other charges of a cell
 _LEVELS_LIMIT = 500  # the mixture changes little beyond, and the limit on the share stays on the strict side
 
 Direction = Literal["rises", "falls", "flat"]
@@ -75,6 +76,37 @@ def volts_among_millivolts(voltage_mv: FloatArray) -> NDArray[np.bool_]:
     crowded = away <= step / 2
     fitting = (meant_away > step / 2) & (meant_away < 1.5 * step)
     return np.asarray(tiny & crowded & fitting)
+
+
+def turned_voltage(voltage_mv: FloatArray) -> int | None:
+    """Which voltage of one cell, in mV, shape (n,) and as the rows stand, breaks their order; None for none.
+
+    All others rise or fall from row to row, and this one does not lie between its neighbours, as when its
+    sign was lost. Rows in no order, and a value added at the end, pass.
+    """
+    if len(voltage_mv) < FEWEST_POINTS + 1:
+        return None
+    steps = np.diff(voltage_mv)
+    if np.all(steps > 0) or np.all(steps < 0):
+        return None
+    for place in range(1, len(voltage_mv) - 1):
+        others = np.diff(np.delete(voltage_mv, place))
+        if np.all(others > 0) or np.all(others < 0):
+            return place
+    return None
+
+
+def stray_charge(charge: FloatArray) -> int | None:
+    """Which charge of one cell, shape (n,), lies out of all proportion to the others; None for none.
+
+    It lies more than ten times the spread of all others outside them, as when a decimal mark was lost.
+    """
+    for place in {int(np.argmin(charge)), int(np.argmax(charge))}:
+        others = np.delete(charge, place)
+        beyond = max(others.min() - charge[place], charge[place] - others.max())
+        if beyond > _STRAY * np.ptp(others):
+            return place
+    return None
 
 
 def possible_total_charge(charge_e0: float) -> bool:

@@ -29,7 +29,7 @@ charge_method = "noise"
 correct_sloping_plateaus = true
 interval = "monte-carlo"
 adjustment = "benjamini-hochberg"
-simultaneous = true
+simultaneous = false
 rank_by = "lower bound"
 first = 5
 """
@@ -56,7 +56,7 @@ def test_every_key(tmp_path: Path) -> None:
         correct_sloping_plateaus=True,
         interval="monte-carlo",
         adjustment="benjamini-hochberg",
-        simultaneous=True,
+        simultaneous=False,
         rank_by="lower bound",
         first=5,
         defaulted=(),
@@ -226,3 +226,8 @@ def test_a_line_that_is_no_toml(toml: str, row: int, tmp_path: Path) -> None:
 def test_the_tables_are_read_though_the_settings_are_not(tmp_path: Path) -> None:
     found = problems(folder(tmp_path / "a", "wild_type =\n", curves="construct,cell\nWT,c1\n"))
     assert [problem.origin.file for problem in found] == ["campaign.toml", "curves.csv", "curves.csv"]
+
+
+def test_simultaneous_intervals_are_propagated_ones(tmp_path: Path) -> None:
+    path = folder(tmp_path / "a", f'{BASE}interval = "monte-carlo"\nsimultaneous = true\n')
+    assert_refused(path, file="campaign.toml", column="simultaneous", match="one of the two")

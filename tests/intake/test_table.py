@@ -16,6 +16,7 @@ from intake.writing import (
     folder,
     problems,
     text_of,
+    wide_rows,
 )
 
 
@@ -66,6 +67,33 @@ def test_one_value_in_volts_among_millivolts(row: int, volts: str, tmp_path: Pat
     path = folder(tmp_path / "a", curves=changed(curve_rows(), row, "voltage_mV", volts))
     assert_refused(path, file="curves.csv", row=row, column="voltage_mV",
                    match=f"{volts} mV.*a value in volts among")  # fmt: skip
+
+
+def test_a_sign_that_was_lost(tmp_path: Path) -> None:
+    rows = changed(curve_rows(), 5, "voltage_mV", "60")
+    assert_refused(folder(tmp_path / "a", curves=rows), file="curves.csv", row=5, column="voltage_mV",
+                   match="60 mV between -80 and -40 mV .*expected -60 mV")  # fmt: skip
+
+
+def test_a_voltage_out_of_order_in_a_wide_table_is_told_once(tmp_path: Path) -> None:
+    rows = wide_rows()
+    rows[4][0] = "60"
+    assert_refused(folder(tmp_path / "a", curves=rows), file="curves.csv", row=5, column="voltage_mV",
+                   match="60 mV between -80 and -40 mV;")  # fmt: skip
+
+
+def test_rows_in_no_order_and_a_value_added_at_the_end_are_read(tmp_path: Path) -> None:
+    rows = curve_rows()
+    at_the_end = [rows[0], *rows[1:4], *rows[5:9], rows[4], *rows[9:]]
+    mixed = [rows[0], *(rows[1:9][i] for i in (3, 0, 6, 2, 7, 1, 5, 4)), *rows[9:]]
+    for name, table in (("a", at_the_end), ("b", mixed)):
+        assert content(read(folder(tmp_path / name, curves=table))) == content(read(folder(tmp_path / "c")))
+
+
+def test_a_decimal_mark_that_was_lost(tmp_path: Path) -> None:
+    rows = changed(curve_rows(), 6, "charge", "66000")
+    assert_refused(folder(tmp_path / "a", curves=rows), file="curves.csv", row=6, column="charge",
+                   match="66000 in the cell WT/c1, whose other charges lie between 0 and 1")  # fmt: skip
 
 
 @pytest.mark.parametrize("offset", [0.4, -0.3, 0.05, 10.2])

@@ -85,9 +85,11 @@ def curves_of(points: Points, findings: Findings) -> tuple[Curve, ...]:
     curves, narrow = [], []
     for members in cells_in(points, named):
         curve = _curve(points, members)
-        if np.isfinite(points.voltage_mv[members]).all() and refuse_volts(points, members, findings):
+        if np.isfinite(points.voltage_mv[members]).all() and refuse_voltages(points, members, findings):
             continue
         if is_steady(points, members) and sound[members].all():
+            if _refuse_stray(points, members, findings):
+                continue
             fault = _shape_fault(curve, points.table.raw.lost)
             if fault == "narrow":
                 narrow.append(curve)
@@ -99,18 +101,55 @@ def curves_of(points: Points, findings: Findings) -> tuple[Curve, ...]:
     return tuple(sorted(curves, key=lambda curve: (curve.construct, curve.cell)))
 
 
-def refuse_volts(points: Points, members: IntArray, findings: Findings) -> bool:
-    """Whether a cell has values in volts among its millivolts, each of which is a fault."""
+def refuse_voltages(points: Points, members: IntArray, findings: Findings) -> bool:
+    """Whether a cell has values in volts among its millivolts, or one out of order; each is a fault."""
     wrong = members[plausible.volts_among_millivolts(points.voltage_mv[members])]
     for point in wrong.tolist():
         value = points.voltage_mv[point]
-        findings.add(
-            points.table.origin(int(points.index[point]), "voltage"),
-            found=f"{value:g} mV in the cell {_name(points, point)}, a value in volts among millivolts",
-            expected=f"{1000 * value:g} mV, which its other voltages leave out",
-            remedy="correct the value",
-        )
-    return bool(wrong.size)
+        _refuse_voltage(
+            points, point, findings, found=f"{value:g} mV, a value in volts among millivolts",
+            expected=f"{1000 * value:g} mV, which the other voltages leave out",
+        )  # fmt: skip
+    return bool(wrong.size) or _refuse_turned(points, members, findings)
+
+
+def _refuse_turned(points: Points, members: IntArray, findings: Findings) -> bool:
+    """Whether one voltage of a cell stands out of the order of its rows, which is a fault."""
+    rows = members[np.argsort(points.index[members])]
+    place = plausible.turned_voltage(points.voltage_mv[rows])
+    if place is None:
+        return False
+    before, value, after = points.voltage_mv[rows[place - 1 : place + 2]]
+    turned = min(before, after) < -value < max(before, after)
+    _refuse_voltage(
+        points, int(rows[place]), findings, found=f"{value:g} mV between {before:g} and {after:g} mV",
+        expected=f"{-value:g} mV" if turned else "a voltage between these two",
+    )  # fmt: skip
+    return True
+
+
+def _refuse_voltage(points: Points, point: int, findings: Findings, *, found: str, expected: str) -> None:
+    """Add a fault of a voltage; one that all cells of a wide table share is told once."""
+    place = points.table.origin(int(points.index[point]), "voltage")
+    cell = "" if points.wide else f" in the cell {_name(points, point)}"
+    remedy = "correct the value; where it is right, sort the rows by voltage"
+    findings.add_once(place, found=found + cell, expected=expected, remedy=remedy)
+
+
+def _refuse_stray(points: Points, members: IntArray, findings: Findings) -> bool:
+    """Whether one charge of a cell is out of all proportion to the others, which is a fault."""
+    place = plausible.stray_charge(points.value[members]) if len(members) >= plausible.FEWEST_POINTS else None
+    if place is None:
+        return False
+    others = np.delete(points.value[members], place)
+    findings.add(
+        points.value_origin(int(members[place])),
+        found=f"{points.value[members[place]]:g} in the cell {_name(points, int(members[place]))}, whose "
+        f"other charges lie between {others.min():g} and {others.max():g}",
+        expected="a charge of their size",
+        remedy="correct the decimal mark or the unit, or delete the row",
+    )
+    return True
 
 
 def cells_in(points: Points, named: IntArray) -> list[IntArray]:

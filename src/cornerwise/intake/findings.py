@@ -41,6 +41,12 @@ class Findings:
         for place, column in enumerate(header):
             self._columns.setdefault((file, _shortened(column, _LONGEST_HEADER)), place)
 
+    def add_once(self, origin: Origin, *, found: str, expected: str, remedy: str) -> None:
+        """Add one fault, unless the very same was added before."""
+        known = (one for one in self._problems if one.origin == origin)
+        if not any((one.found, one.expected) == (found, expected) for one in known):
+            self.add(origin, found=found, expected=expected, remedy=remedy)
+
     def add(self, origin: Origin, *, found: str, expected: str, remedy: str) -> None:
         """Add one fault; of those of one file beyond `MOST_LISTED` only the number is kept."""
         self._count[origin.file] += 1

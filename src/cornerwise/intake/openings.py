@@ -15,7 +15,7 @@ from .. import plausible
 from ..campaign import OpeningCurve
 from ..errors import Origin
 from . import allowed
-from .cells import Points, cells_in, is_steady, refuse_narrow, refuse_volts
+from .cells import Points, cells_in, is_steady, refuse_narrow, refuse_voltages
 from .findings import Findings
 from .header import Field, RawTable
 from .layouts import VOLTAGE, is_wide, once_only, wide_points
@@ -114,7 +114,7 @@ def _openings(points: Points, findings: Findings) -> tuple[OpeningCurve, ...]:
     sound &= ~allowed.outside(PROBABILITY, points.value)
     openings, narrow = [], []
     for members in cells_in(points, named):
-        if np.isfinite(points.voltage_mv[members]).all() and refuse_volts(points, members, findings):
+        if np.isfinite(points.voltage_mv[members]).all() and refuse_voltages(points, members, findings):
             continue
         if not is_steady(points, members) or not sound[members].all():
             continue

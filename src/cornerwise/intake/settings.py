@@ -182,6 +182,13 @@ def read_settings(document: Document, findings: Findings) -> Settings | None:
     values = read_by_rules(document.values, RULES, document.origin, findings)
     if "charge" in document.values:
         values["charge"] = _charge_policy(document, findings)
+    if values.get("simultaneous") and values.get("interval") == "monte-carlo":
+        findings.add(
+            document.origin("simultaneous"),
+            found='simultaneous = true with interval = "monte-carlo"',
+            expected="one of the two: intervals that hold all cycles at once are propagated ones",
+            remedy="delete one of the two lines",
+        )
     if "wild_type" not in document.values:
         findings.add(
             document.origin("wild_type"),

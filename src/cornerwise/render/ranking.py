@@ -4,7 +4,6 @@ from __future__ import annotations
 
 from typing import IO
 
-from rich.table import Table as Grid
 from rich.text import Text
 
 from ..result import RankRow, Result
@@ -18,8 +17,10 @@ from .legend import (
     unit_phrase,
 )
 from .rounding import decimals_for, number, span
-from .terminal import print_lines, screen_on
+from .terminal import NARROW_NAME, WIDE, broken, plain_grid, print_lines, screen_on
 
+_WORDS = ("cycle", "verdict", "native pair")  # columns of words
+_LEFT_OUT = ("at least", "shrunken")  # on a screen too narrow for all columns
 _ORDERS = {
     "estimate": "by the size of the estimate",
     "lower bound": "by the lower limit of the absolute size",
@@ -38,14 +39,8 @@ def print_ranking(result: Result, stream: IO[str]) -> None:
     """
     settings, level = result.settings, percent(result.settings.confidence)
     uncertainty = {row.cycle: row.std_uncertainty for row in result.interactions}
-    grid = Grid(box=None, padding=(0, 1, 0, 0), pad_edge=False, header_style="bold")
     headers = ("rank", "cycle", "I", interval_words(settings), "at least", "ranks", f"first {settings.first}",
                "shrunken", "verdict", "native pair")  # fmt: skip
-    for header in headers:
-        words = header in ("cycle", "verdict", "native pair")
-        grid.add_column(Text(header), justify="left" if words else "right", overflow="fold")
-    for row in result.ranking:
-        grid.add_row(*map(Text, _line(row, uncertainty[row.cycle])))
     legend = [
         f"I, interval, at least and shrunken in {unit_phrase(settings)}; ranked {_ORDERS[settings.rank_by]}",
         "at least: lower limit of the absolute size; 0 where the interval includes 0",
@@ -58,6 +53,16 @@ def print_ranking(result: Result, stream: IO[str]) -> None:
         *(f"Note: {note}" for note in result.notes),
     ]
     with screen_on(stream) as screen:
+        narrow = screen.width < WIDE
+        left_out = _LEFT_OUT if narrow else ()
+        shown = [(header, header not in _WORDS) for header in headers if header not in left_out]
+        grid = plain_grid(shown, folding=("native pair",) if narrow else ())
+        for row in result.ranking:
+            line = dict(zip(headers, _line(row, uncertainty[row.cycle]), strict=True))
+            line["cycle"] = broken(row.cycle, NARROW_NAME) if narrow else row.cycle
+            grid.add_row(*(Text(line[header]) for header, _ in shown))
+        if narrow:
+            legend.insert(1, f"{' and '.join(_LEFT_OUT)}: shown in a wider terminal and in a pipe")
         screen.print(grid)
         screen.print()
         print_lines(screen, legend)

@@ -38,8 +38,8 @@ _VERDICT_STYLE = {
 }
 
 
-_WIDE = 100  # columns from which a long name of a cycle has room
-_NARROW_NAME = 12  # columns of such a name elsewhere; two mutations fit
+WIDE = 100  # columns from which a long name of a cycle has room
+NARROW_NAME = 12  # columns of such a name elsewhere; two mutations fit
 _NARROWEST = 80  # columns in which the coupling table keeps its numbers whole
 _UNCUT = 1_000_000  # columns; nothing wraps at this width
 
@@ -109,7 +109,7 @@ def _interaction_grid(result: Result, marks: dict[str, str], plus_minus: str, wi
     )
     for row in by_strength(result.interactions):
         grid.add_row(
-            Text(broken(row.cycle, _NARROW_NAME) if width < _WIDE else row.cycle),
+            Text(broken(row.cycle, NARROW_NAME) if width < WIDE else row.cycle),
             Text(with_uncertainty(row.interaction, row.std_uncertainty, plus_minus)),
             Text(span((row.low, row.high), row.std_uncertainty)),
             Text(row.favours or "-"),
