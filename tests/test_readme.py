@@ -2,6 +2,7 @@
 
 import os
 import re
+import shutil
 import subprocess
 import sys
 from pathlib import Path
@@ -21,6 +22,17 @@ def test_the_table_is_the_one_that_is_printed() -> None:
     )  # fmt: skip
     printed, _ = done.stdout.split("\nFlags\n")
     assert shown == printed
+
+
+def test_the_python_of_the_page_runs(tmp_path: Path) -> None:
+    (block,) = re.findall(r"```python\n(.*?)```", TEXT, flags=re.DOTALL)
+    shutil.copytree(TOP / "cycles", tmp_path / "cycles")
+    done = subprocess.run(
+        [sys.executable, "-c", block], cwd=tmp_path, capture_output=True, text=True, check=False, timeout=300
+    )
+    assert done.returncode == 0, done.stderr
+    assert "D171N/K232Q" in done.stdout
+    assert (tmp_path / "results" / "tables" / "couplings.docx").exists()
 
 
 def test_two_commands_are_marked() -> None:

@@ -63,7 +63,10 @@ _INTERACTIONS: Mapping[str, _Meaning] = {
         ENERGY,
         "interaction from median voltages and the wild type's charge alone",
     ),
-    "shortcut_bias": (ENERGY, "interaction less shortcut"),
+    "shortcut_bias": (
+        ENERGY,
+        "error of the shortcut by measured charges: interaction less shortcut unless one charge is asked for",
+    ),
     "shortcut_bias_low": (ENERGY, "lower limit of the interval of the bias"),
     "shortcut_bias_high": (ENERGY, "upper limit of the interval of the bias"),
     "shortcut_verdict": ("", "whether the shortcut may be used"),

@@ -13,7 +13,7 @@ from .charges import LIMITING_SLOPE
 from .construct_rows import cell_rows, construct_row
 from .energies import EnergyBook
 from .interaction_rows import Corners, interaction_rows
-from .measurements import Measurement, measure
+from .measurements import SET_ASIDE, Measurement, measure
 from .plan_rows import NextStepRow
 from .planning.next_steps import next_steps
 from .result import Result
@@ -38,6 +38,16 @@ def _notes(measurements: Sequence[Measurement], settings: Settings) -> tuple[str
         notes.append(
             f"energies use {shared} total charge for every construct as the settings ask; the measured "
             f"charges of {', '.join(measured)} serve only for charge verdicts and the shortcut's bias"
+        )
+    unread = [
+        cell.subject
+        for m in measurements
+        for cell in m.cells
+        if not cell.used and not (cell.reason or "").startswith(SET_ASIDE)
+    ]
+    if unread:
+        notes.append(
+            f"not used, as no median can be read from their curves: {', '.join(unread)}; cells.csv says why"
         )
     sloped = [m.label for m in measurements if m.charge is not None and m.charge.kind == LIMITING_SLOPE]
     if sloped:

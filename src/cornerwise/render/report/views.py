@@ -224,7 +224,12 @@ def _facts(row: InteractionRow) -> list[tuple[str, str]]:
         ("degrees of freedom", "" if row.dof is None else f"{row.dof:.1f}"),
         ("p, p adjusted", ", ".join(filter(None, (p_words(row.p_value), p_words(row.p_adjusted))))),
         ("rank", rank_words(row)),
-        ("expected of a repetition (shrunken)", _with_unit(number(row.shrunken, decimals_for(u)), unit)),
+        (
+            "expected of a repetition (shrunken)",
+            ""
+            if row.shrunken == row.interaction
+            else _with_unit(number(row.shrunken, decimals_for(u)), unit),
+        ),
         ("native pair", row.opposite_charges or ""),
         ("distance of side chains", distance_words(row)),
         (
