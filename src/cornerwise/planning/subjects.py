@@ -77,7 +77,7 @@ def of_campaign(campaign: Campaign, request: PlanRequest, progress: Progress | N
         if compared is not None and label != settings.wild_type:
             ratios.append(prospect(label, *compared, scatters))
     return Subject(
-        title=settings.title,
+        title=settings.title or "Campaign without a title",
         energy_unit=settings.energy_unit,
         confidence=settings.confidence,
         threshold=settings.energy_threshold,
@@ -123,7 +123,7 @@ def of_assumptions(assumed: Assumptions, request: PlanRequest, confidence: float
     if request.cycles:
         raise UsageError("cycles can be named only where there is a campaign")
     return Subject(
-        title="",
+        title="Constructs as they are assumed",
         energy_unit=unit,
         confidence=confidence,
         threshold=convert_energy(1.0, "kcal/mol", unit, assumed.temperature_c),

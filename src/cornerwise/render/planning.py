@@ -30,7 +30,7 @@ def print_plan(plan: Plan, stream: IO[str]) -> None:
         At a terminal the tables are fitted to its width; elsewhere the text is plain and never cut.
     """
     with screen_on(stream) as screen:
-        screen.print(Text(plan.title or "Constructs as they are assumed", style="bold"))
+        screen.print(Text(plan.title, style="bold"))
         _show_outlooks(plan, screen)
         for heading, rows in _by_goal(plan):
             _show_grid(screen, heading, _need_grid(rows))
