@@ -301,6 +301,17 @@ def test_help_imports_nothing_heavy() -> None:
     assert _process(code).stderr.strip() == "[]"
 
 
+def test_couple_imports_only_what_it_uses() -> None:
+    unused = ("pandas", "scipy.stats", "scipy.optimize", "matplotlib", "openpyxl", "docx", "jinja2", "lxml")
+    code = (
+        "import sys\nfrom cornerwise.cli import main\n"
+        f"sys.argv = ['cornerwise', 'couple', {str(PUBLISHED)!r}]\n"
+        "try:\n    main()\nexcept SystemExit:\n    pass\n"
+        f"print([m for m in {unused} if m in sys.modules], file=sys.stderr)"
+    )
+    assert _process(code).stderr.strip() == "[]"
+
+
 def test_our_own_fault_exits_1() -> None:
     code = (
         "import sys, cornerwise.coupling\nfrom cornerwise.cli import main\n"

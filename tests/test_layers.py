@@ -39,13 +39,12 @@ FLOORS = [
 FLOOR_OF = {room: floor for floor, rooms in enumerate(FLOORS) for room in rooms}
 
 ALLOWED = {
-    "pandas": {"intake", "result", "tables"},  # the result only for to_frame, on demand
+    "pandas": {"result", "tables"},  # for to_frame, on demand
     "openpyxl": {"render"},
     "docx": {"render"},
     "gemmi": {"intake"},  # on demand
     "rich": {"render"},
     "typer": {"cli", "console", "plan_command", "design_commands"},
-    "statsmodels": {"intervals"},  # on demand
     "matplotlib": {"render"},
     "fontTools": {"render"},
     "jinja2": {"render"},

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import gc
 import os
 import sys
 import traceback
@@ -15,6 +16,8 @@ from .console import CampaignPath, Force, Json, expect_room, progress, report, w
 from .design_commands import protocol, simulate
 from .errors import CornerwiseError, UsageError
 from .plan_command import plan
+
+_FEWEST_NEW_OBJECTS = 100_000  # between two looks for garbage; importing alone makes many that stay
 
 
 class _Boundary(TyperGroup):
@@ -271,6 +274,7 @@ def explain(
 
 def main() -> None:
     """Entry point of the ``cornerwise`` command."""
+    gc.set_threshold(_FEWEST_NEW_OBJECTS)
     try:
         app()
     except Exception:  # whatever is left is no message for the user but a fault of ours

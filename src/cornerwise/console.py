@@ -12,7 +12,6 @@ from typing import Annotated
 import typer
 
 from .errors import CornerwiseError, DataRefused
-from .folders import check_destination, write_folder
 
 _PATIENCE_S = 1.0
 
@@ -46,6 +45,8 @@ def progress() -> Callable[[str, int, int], None]:
 
 def expect_room(folder: Path | None, *, force: bool) -> None:
     """Refuse a destination before the work is done rather than after."""
+    from .folders import check_destination
+
     if folder is None:
         return
     check_destination(folder, force=force)
@@ -57,6 +58,8 @@ def expect_room(folder: Path | None, *, force: bool) -> None:
 
 def write(files: Mapping[str, str | bytes], folder: Path, *, force: bool) -> None:
     """Write files of ``--out`` and say so on stderr."""
+    from .folders import write_folder
+
     write_folder(files, folder, force=force)
     print(f"cornerwise: wrote {_listed(files)} into {folder}", file=sys.stderr)
 

@@ -20,7 +20,7 @@ from .result import Result
 from .rows import BackgroundRow, BudgetRow, CellRow, ConstructRow, InteractionRow
 from .tables import Table
 
-_RECORDED_VERSIONS = ("cornerwise", "numpy", "scipy", "statsmodels", "pandas")
+_RECORDED_VERSIONS = ("cornerwise", "numpy", "scipy", "pandas")
 
 Progress = Callable[[str, int, int], None]
 

@@ -176,12 +176,13 @@ def adjusted_p_values(p_values: Sequence[float], method: Adjustment = "holm") ->
     289-300.
     """
     p = np.asarray(p_values, dtype=float)
-    adjusted = np.where(np.isfinite(p), p, np.nan)
-    available = np.isfinite(p)
-    if available.sum() > 1:
-        # Takes longer to import than numpy and scipy together, so it is fetched only where it works.
-        from statsmodels.stats.multitest import multipletests
-
-        name = "holm" if method == "holm" else "fdr_bh"
-        adjusted[available] = multipletests(p[available], method=name)[1]
-    return [float(value) for value in adjusted]
+    available = np.flatnonzero(np.isfinite(p))
+    rising = available[np.argsort(p[available], kind="stable")]
+    n = len(rising)
+    adjusted = np.full(len(p), np.nan)
+    if method == "holm":  # the smallest times n, the next times n - 1, ...; none below the one before
+        adjusted[rising] = np.maximum.accumulate(p[rising] * np.arange(n, 0, -1))
+    else:  # the largest as it is, the next times n / (n - 1), ...; none above the one after
+        raised = p[rising] * n / np.arange(1, n + 1)
+        adjusted[rising] = np.minimum.accumulate(raised[::-1])[::-1]
+    return [float(value) for value in np.minimum(adjusted, 1.0)]

@@ -34,7 +34,6 @@ from typing import Literal
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy.optimize import isotonic_regression
 from scipy.special import betaincc
 
 FloatArray = NDArray[np.float64]
@@ -211,6 +210,8 @@ def _half_suffices(n: int) -> bool:
 
 def _shares(values: FloatArray) -> tuple[float, float]:
     """Shares of the scatter that the best rising and the best falling sequence remove."""
+    from scipy.optimize import isotonic_regression  # takes long to import, and few curves are in doubt
+
     centred = values - values.mean()
     total = float(centred @ centred)
     fits = (isotonic_regression(centred, increasing=up).x for up in (True, False))

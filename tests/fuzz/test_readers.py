@@ -11,7 +11,7 @@ from hypothesis import strategies as st
 import cornerwise
 from cornerwise.errors import DataRefused
 from fuzz import readers
-from intake.writing import content
+from intake.writing import content, mingled
 
 KINDS = (*readers.READERS, "result")
 TABLES = ("curves", "medians", "charges", "openings")
@@ -114,7 +114,8 @@ def rewritings(draw: st.DrawFn) -> Callable[[bytes], bytes]:
 
     def rewrite(data: bytes) -> bytes:
         header, *rows = readers.fields_of(data)
-        order.shuffle(rows)
+        order.shuffle(shuffled := list(rows))
+        rows = mingled(rows, shuffled) if "construct" in header else rows
         lines = [mark.join(map(field, row)) for row in (header, *rows)]
         for line in noise:
             lines.insert(order.randrange(len(lines)), line)

@@ -47,6 +47,12 @@ def wide_rows(names: Iterable[str] = tuple(f"{label}/c1" for label in LABELS)) -
     return [["voltage_mV", *columns], *body]
 
 
+def mingled(body: Sequence[list[str]], order: Sequence[list[str]]) -> Rows:
+    """Rows in another order that keeps those of each cell in theirs, as a voltage out of order is refused."""
+    own = {tuple(row[:2]): iter([one for one in body if one[:2] == row[:2]]) for row in body}
+    return [next(own[tuple(row[:2])]) for row in order]
+
+
 def text_of(rows: Rows, delimiter: str = ",") -> str:
     """Rows as a text file."""
     return "".join(delimiter.join(row) + "\n" for row in rows)

@@ -4,10 +4,12 @@ import math
 
 import numpy as np
 import pytest
+from scipy.optimize import curve_fit
 
 from cornerwise.campaign import Curve
 from cornerwise.gating import LinearSequence, TwoStates, example_schemes
-from cornerwise.median.single_sigmoid import sigmoid_of_cell, single_sigmoid
+from cornerwise.median.single_sigmoid import sigmoids_of_cells, single_sigmoid
+from cornerwise.units import thermal_voltage_mv
 
 
 def curve(v: np.ndarray, charge: np.ndarray, cell: str = "c1") -> Curve:
@@ -40,7 +42,7 @@ def test_more_states_give_less_charge_than_they_move() -> None:
 def test_the_temperature_scales_the_slope_charge_alone() -> None:
     scheme = TwoStates(charge_e0=4.0, midpoint_mv=-30.0)
     v = np.arange(-120.0, 61.0, 5.0)
-    cold, warm = (sigmoid_of_cell(curve(v, scheme.q(v)), temperature_c=t) for t in (10.0, 30.0))
+    cold, warm = (sigmoids_of_cells([curve(v, scheme.q(v))], temperature_c=t)[0] for t in (10.0, 30.0))
     assert warm.midpoint_mv == pytest.approx(cold.midpoint_mv, abs=1e-9)
     assert warm.slope_charge_e0 / cold.slope_charge_e0 == pytest.approx(303.15 / 283.15, rel=1e-12)
 
@@ -53,7 +55,7 @@ def test_unreadable_curves_are_left_out() -> None:
     assert [cell.cell for cell in found.cells] == ["c1"]
     assert single_sigmoid([flat], temperature_c=22.0) is None
     with pytest.raises(ValueError, match="invented/flat: no rise"):
-        sigmoid_of_cell(flat, temperature_c=22.0)
+        sigmoids_of_cells([good, flat], temperature_c=22.0)
 
 
 def test_mean_and_standard_error_are_over_cells() -> None:
@@ -64,3 +66,24 @@ def test_mean_and_standard_error_are_over_cells() -> None:
     assert found is not None
     assert found.midpoint_mv == pytest.approx(np.mean(mids), abs=1e-6)
     assert found.midpoint_sem_mv == pytest.approx(np.std(mids, ddof=1) / math.sqrt(3), abs=1e-6)
+
+
+def test_no_other_midpoint_and_slope_fit_better_and_cells_are_fitted_apart() -> None:
+    generator = np.random.default_rng(4)
+    made = []
+    for number, scheme in enumerate(example_schemes().values()):
+        v = np.linspace(-160.0, 80.0, 15 + number % 3 * 8)
+        made.append(curve(v, 40.0 * scheme.q(v) + generator.normal(0.0, 0.8, len(v)), f"c{number}"))
+    together = sigmoids_of_cells(made, temperature_c=22.0)
+    assert together == tuple(sigmoids_of_cells([one], temperature_c=22.0)[0] for one in made)
+    kt_mv = thermal_voltage_mv(22.0)
+
+    def model(v: np.ndarray, midpoint: float, charge: float, low: float, high: float) -> np.ndarray:
+        return low + (high - low) / (1.0 + np.exp(-charge * (v - midpoint) / kt_mv))
+
+    for one, found in zip(made, together, strict=True):
+        start = (found.midpoint_mv + 1.0, found.slope_charge_e0 * 1.05, found.low_plateau, found.high_plateau)
+        best, _ = curve_fit(model, one.voltage_mv, one.charge, p0=start, ftol=1e-15, xtol=1e-15, gtol=1e-15)
+        least = float(((one.charge - model(one.voltage_mv, *best)) ** 2).sum())
+        assert found.residual_sum_of_squares == pytest.approx(least, rel=1e-9)
+        assert (found.midpoint_mv, found.slope_charge_e0) == pytest.approx(tuple(best[:2]), rel=1e-5)

@@ -9,7 +9,7 @@ from reference_values import load
 
 from cornerwise.campaign import Curve
 from cornerwise.median import CellReading, read_construct
-from cornerwise.median.single_sigmoid import CellSigmoid, sigmoid_of_cell
+from cornerwise.median.single_sigmoid import CellSigmoid, sigmoids_of_cells
 from cornerwise.units import thermal_voltage_mv
 
 NIST, RECALLED = load("nist_sigmoids"), load("recalled")
@@ -24,7 +24,9 @@ def _curve(x: np.ndarray, y: np.ndarray) -> Curve:
 @functools.cache
 def _rat42() -> CellSigmoid:
     case = NIST["rat42"]
-    return sigmoid_of_cell(_curve(case["x"], case["y"]), temperature_c=22.0, low_plateau_is_zero=True)
+    curves = [_curve(case["x"], case["y"])]
+    (found,) = sigmoids_of_cells(curves, temperature_c=22.0, low_plateau_is_zero=True)
+    return found
 
 
 @functools.cache

@@ -11,15 +11,13 @@ import os
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
 from pathlib import Path
-from typing import TypeVar
+from typing import TYPE_CHECKING, TypeVar
 
 from ..campaign import Campaign, InputFile
 from ..errors import DataRefused, Origin
-from . import text, workbook
+from . import text
 from .assemble import assemble
-from .book import Book, from_book
 from .charges import ChargesRead, read_charges
-from .coordinates import read_model
 from .curves import CurvesRead, read_curves
 from .distances import DistancesRead, read_distances
 from .exclusions import read_exclusions
@@ -33,6 +31,9 @@ from .parts import Parts
 from .settings import KEYS, SECTIONS, Document, read_settings
 from .structure import StructureFile, open_structure
 from .toml_file import read_toml
+
+if TYPE_CHECKING:
+    from .coordinates import Model
 
 _Read = TypeVar("_Read")
 
@@ -127,6 +128,9 @@ def _with_structure(
 
 
 def _open_workbook(path: Path, findings: Findings) -> Source | None:
+    from . import workbook  # imported where there is one to read
+    from .book import Book, from_book
+
     contents = read_bytes(path, findings)
     if contents is None:
         return None
@@ -143,7 +147,16 @@ def _table(data: bytes, path: Path, name: str, findings: Findings) -> RawTable |
     if path.suffix.casefold() != ".xlsx":
         decoded = text.decode(data, path.name, findings)
         return None if decoded is None else text.split(decoded, path.name, findings)
+    from . import workbook
+    from .book import from_book
+
     return from_book(data, path.name, findings, lambda book: workbook.read_single_table(book, name, findings))
+
+
+def _model(structure: StructureFile, findings: Findings) -> Model | None:
+    from .coordinates import read_model  # imported where there is a structure to read
+
+    return read_model(structure, findings)
 
 
 def _campaign(source: Source | None, findings: Findings) -> Campaign | None:
@@ -156,7 +169,7 @@ def _campaign(source: Source | None, findings: Findings) -> Campaign | None:
     charges_read = _read("charges", read_charges, ChargesRead, source, findings)
     openings_read = _read("openings", read_openings, OpeningsRead, source, findings)
     distances_read = _read("distances", read_distances, DistancesRead, source, findings)
-    model = None if source.structure is None else read_model(source.structure, findings)
+    model = None if source.structure is None else _model(source.structure, findings)
     document = source.document
     if document is None:
         return None

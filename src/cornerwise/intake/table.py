@@ -5,7 +5,6 @@ from __future__ import annotations
 from collections.abc import Collection, Sequence
 
 import numpy as np
-import pandas as pd
 from numpy.typing import NDArray
 
 from ..campaign import FloatArray
@@ -188,5 +187,6 @@ class Table:
 
 def factorize(texts: Sequence[str] | TextArray) -> tuple[IntArray, list[str]]:
     """Codes, shape (n,), of each text in the list of different texts."""
-    codes, uniques = pd.factorize(np.array(texts, dtype=object))
-    return codes.astype(np.int64), [str(text) for text in uniques]
+    number: dict[str, int] = {}
+    codes = np.fromiter((number.setdefault(text, len(number)) for text in texts), np.int64, len(texts))
+    return codes, list(number)

@@ -188,19 +188,34 @@ def _quantiles(cells: Cells) -> tuple[Mapping[float, float], FloatArray]:
     return dict(zip(_QUANTILES, mean.tolist(), strict=True)), shift
 
 
-def fit_single(cells: Cells) -> PooledFit:
-    """Fit the single sigmoid, slope and midpoint shared by the cells, to full precision."""
-    quantiles, shift = _quantiles(cells)
-    return _fit_single(cells, quantiles, shift, tolerance=1e-14)
+def single_starts(v_mv: FloatArray, y: FloatArray) -> tuple[FloatArray, FloatArray]:
+    """Where the search for the single sigmoid of each cell begins, and how steep it may be.
+
+    Parameters
+    ----------
+    v_mv, y : ndarray, shape (n_cells, n_points)
+        Voltages (mV) and charges, each cell scaled to about 0..1 and rising.
+
+    Returns
+    -------
+    start : ndarray, shape (n_cells, 2)
+        Midpoint (mV) and logarithm of the slope (1/mV).
+    slopes : ndarray, shape (n_cells, 2)
+        Smallest and largest logarithm of the slope.
+    """
+    rising = np.maximum.accumulate(y, axis=1)
+    quartiles = np.array([np.interp((0.25, 0.5, 0.75), q, v) for q, v in zip(rising, v_mv, strict=True)])
+    start = np.stack([quartiles[:, 1], _log_slope(quartiles[:, 2] - quartiles[:, 0])], axis=1)
+    finest = np.median(np.diff(v_mv, axis=1), axis=1)
+    steepest = np.maximum(np.log(_STEEPEST_E0 / _ROOM_KT_MV), -np.log(finest))
+    return start, np.stack([np.full(len(y), np.log(_SHALLOWEST_E0 / _ROOM_KT_MV)), steepest], axis=1)
 
 
-def _fit_single(
-    cells: Cells, quantiles: Mapping[float, float], shift: FloatArray, *, tolerance: float = _TOLERANCE
-) -> PooledFit:
+def _fit_single(cells: Cells, quantiles: Mapping[float, float], shift: FloatArray) -> PooledFit:
     low, high = _bounds(cells, SINGLE)
     flat = Prior(mean=np.zeros(2), sd=np.full(2, 1e6), low=low, high=high, variance=_VARIANCE_FLOOR)
-    start = np.array([[quantiles[0.5], _log_slope(quantiles)]])
-    return fit_shape(cells, SINGLE, start, shift, flat, tolerance=tolerance)
+    start = np.array([[quantiles[0.5], _log_slope(np.array(quantiles[0.75] - quantiles[0.25]))]])
+    return fit_shape(cells, SINGLE, start, shift, flat, tolerance=_TOLERANCE)
 
 
 def _fit_settled(
@@ -224,10 +239,9 @@ def _fit_settled(
     return fit
 
 
-def _log_slope(quantiles: Mapping[float, float]) -> float:
-    """Logarithm of kappa of the sigmoid with the same quartiles."""
-    width = max(quantiles[0.75] - quantiles[0.25], 1e-3)
-    return float(np.log(2.0 * np.log(3.0) / width))
+def _log_slope(between_quartiles_mv: FloatArray) -> FloatArray:
+    """Logarithm of kappa of the sigmoid with the same distance between its quartiles."""
+    return np.asarray(np.log(2.0 * np.log(3.0) / np.maximum(between_quartiles_mv, 1e-3)), dtype=np.float64)
 
 
 def _bounds(cells: Cells, family: Family) -> tuple[FloatArray, FloatArray]:
@@ -269,7 +283,7 @@ def _prior_moments(family: Family, single: PooledFit) -> tuple[FloatArray, Float
 
 def _starts(family: Family, at: Mapping[float, float]) -> FloatArray:
     """Starting points: steps spread evenly, bunched, or one of them apart from the rest."""
-    s = _log_slope(at)
+    s = float(_log_slope(np.array(at[0.75] - at[0.25])))
     steep = s + 0.4
     table: dict[tuple[str, int], list[list[float]]] = {
         ("parallel", 2): [

@@ -180,10 +180,13 @@ def _search(
         new_cost = _cost(there, new_theta, prior)
         better = new_cost <= cost
         small = np.where(better, cost - new_cost < tolerance * cost, damping > _STUCK)
-        theta = np.where(better[:, None], new_theta, theta)
-        shift = np.where(better[:, None], new_shift, shift)
-        here = _Point(*(_pick(better, new, old) for new, old in zip(there, here, strict=True)))
-        cost = np.where(better, new_cost, cost)
+        if better.all():
+            theta, shift, here, cost = new_theta, new_shift, there, new_cost
+        else:
+            theta = np.where(better[:, None], new_theta, theta)
+            shift = np.where(better[:, None], new_shift, shift)
+            here = _Point(*(_pick(better, new, old) for new, old in zip(there, here, strict=True)))
+            cost = np.where(better, new_cost, cost)
         damping = np.clip(np.where(better, damping * 0.1, damping * 6.0), 1e-10, 100.0 * _STUCK)
         best = int(np.argmin(cost))
         if (small[best] and step > 2) or cost[best] <= _TINY**2:
@@ -197,8 +200,6 @@ def _search(
 
 
 def _pick(better: NDArray[np.bool_], new: FloatArray, old: FloatArray) -> FloatArray:
-    if better.all():
-        return new
     return np.where(better.reshape((-1,) + (1,) * (new.ndim - 1)), new, old)
 
 

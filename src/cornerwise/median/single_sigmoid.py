@@ -7,15 +7,18 @@ times midpoint is not the activation energy; it is given so that a user can see 
 
 from __future__ import annotations
 
+from collections import defaultdict
 from collections.abc import Sequence
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 
 import numpy as np
 
 from ..campaign import Curve
 from ..units import thermal_voltage_mv
-from .scaled_cells import canonical, scale, why_unreadable
-from .shape_average import fit_single
+from .each_sigmoid import fit_each
+from .plateaus import plain_median_mv, plain_plateaus
+from .scaled_cells import canonical, why_unreadable
+from .shape_average import single_starts
 
 
 @dataclass(frozen=True, kw_only=True, slots=True)
@@ -49,13 +52,15 @@ class SingleSigmoid:
     energy_sem_mev: float | None
 
 
-def sigmoid_of_cell(curve: Curve, *, temperature_c: float, low_plateau_is_zero: bool = False) -> CellSigmoid:
-    """Fit a single sigmoid to one readable curve by least squares.
+def sigmoids_of_cells(
+    curves: Sequence[Curve], *, temperature_c: float, low_plateau_is_zero: bool = False
+) -> tuple[CellSigmoid, ...]:
+    """Fit a single sigmoid to each of several readable curves by least squares.
 
     Parameters
     ----------
-    curve : Curve
-        One cell's Q-V curve.
+    curves : sequence of Curve
+        Q-V curves of cells; what is found for one does not depend on the others.
     temperature_c : float
         Temperature (degrees Celsius), which turns the slope into a charge.
     low_plateau_is_zero : bool, default False
@@ -63,34 +68,52 @@ def sigmoid_of_cell(curve: Curve, *, temperature_c: float, low_plateau_is_zero: 
 
     Returns
     -------
-    CellSigmoid
+    tuple of CellSigmoid
+        In the order of `curves`.
 
     Raises
     ------
     ValueError
-        If nothing can be read from the curve; the message says why.
+        If nothing can be read from a curve; the message says why.
     """
-    reason = why_unreadable(curve)
-    if reason is not None:
-        raise ValueError(f"{curve.construct}/{curve.cell}: {reason}")
-    scaled = scale([curve])
-    low, height = float(scaled.low[0]), float(scaled.height[0])
-    cells = scaled.cells
+    for curve in curves:
+        if (reason := why_unreadable(curve)) is not None:
+            raise ValueError(f"{curve.construct}/{curve.cell}: {reason}")
+    by_length: dict[int, list[int]] = defaultdict(list)
+    for place, curve in enumerate(curves):
+        by_length[len(curve.voltage_mv)].append(place)
+    found: dict[int, CellSigmoid] = {}
+    for places in by_length.values():
+        alike = [curves[place] for place in places]
+        found.update(zip(places, _fitted(alike, temperature_c, low_plateau_is_zero), strict=True))
+    return tuple(found[place] for place in range(len(curves)))
+
+
+def _fitted(curves: Sequence[Curve], temperature_c: float, low_plateau_is_zero: bool) -> list[CellSigmoid]:
+    """Sigmoids of curves with equally many points."""
+    v = np.array([curve.voltage_mv for curve in curves])
+    charge = np.array([curve.charge for curve in curves])
+    origin = np.array([plain_median_mv(curve.voltage_mv, curve.charge) for curve in curves])
+    plateaus = np.array([plain_plateaus(curve.charge) for curve in curves])
+    low, height = plateaus[:, 0], plateaus[:, 1] - plateaus[:, 0]
+    relative, y = v - origin[:, None], (charge - low[:, None]) / height[:, None]
+    start, slopes = single_starts(relative, y)
     if low_plateau_is_zero:
-        cells = replace(cells, y=cells.y + low / height, baseline="zero")
-        low = 0.0
-    fit = fit_single(cells)
-    low += float(fit.offset[0]) * height
-    midpoint, log_slope = fit.theta
-    return CellSigmoid(
-        construct=curve.construct,
-        cell=curve.cell,
-        midpoint_mv=float(midpoint + fit.shift_mv[0]) + scaled.origin_mv,
-        slope_charge_e0=float(np.exp(log_slope)) * thermal_voltage_mv(temperature_c),
-        low_plateau=low,
-        high_plateau=low + float(fit.gain[0]) * height,
-        residual_sum_of_squares=fit.sum_of_squares * height**2,
-    )
+        y, low = charge / height[:, None], np.zeros(len(curves))
+    fit = fit_each(relative, y, start, slopes, baseline_is_zero=low_plateau_is_zero)
+    plateau = low + fit.offset * height
+    return [
+        CellSigmoid(
+            construct=curve.construct,
+            cell=curve.cell,
+            midpoint_mv=float(fit.midpoint_mv[i] + origin[i]),
+            slope_charge_e0=float(np.exp(fit.log_slope[i])) * thermal_voltage_mv(temperature_c),
+            low_plateau=float(plateau[i]),
+            high_plateau=float(plateau[i] + fit.gain[i] * height[i]),
+            residual_sum_of_squares=float(fit.sum_of_squares[i] * height[i] ** 2),
+        )
+        for i, curve in enumerate(curves)
+    ]
 
 
 def single_sigmoid(curves: Sequence[Curve], *, temperature_c: float) -> SingleSigmoid | None:
@@ -111,7 +134,7 @@ def single_sigmoid(curves: Sequence[Curve], *, temperature_c: float) -> SingleSi
     readable = [curve for curve in sorted(curves, key=canonical) if why_unreadable(curve) is None]
     if not readable:
         return None
-    cells = tuple(sigmoid_of_cell(curve, temperature_c=temperature_c) for curve in readable)
+    cells = sigmoids_of_cells(readable, temperature_c=temperature_c)
     midpoint, midpoint_sem = _mean([cell.midpoint_mv for cell in cells])
     charge, charge_sem = _mean([cell.slope_charge_e0 for cell in cells])
     energy, energy_sem = _mean([cell.energy_mev for cell in cells])
