@@ -1,6 +1,6 @@
 """Whether plans come true: half-width, power, ranges and splits against simulated campaigns.
 
-    python tests/bench/planning.py [--campaigns N] [--workers N]
+    python tests/bench/planning.py [--part grid|pilots|splits] [--campaigns N] [--workers N]
 
 Campaigns are invented; each is estimated by the package's own functions (energies, interactions, intervals),
 which know nothing of the plan. Prints Markdown tables; asserts nothing.
@@ -16,6 +16,7 @@ import time
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
 from itertools import combinations
+from multiprocessing.pool import Pool
 from pathlib import Path
 
 import numpy as np
@@ -282,39 +283,55 @@ def of_splits(task: tuple[Splitting, int]) -> tuple[Splitting, list[float]]:
     return case, [float(number) for number in numbers]
 
 
+def print_grid(pool: Pool, campaigns: int) -> None:
+    """Half-width and power at n cells of each kind."""
+    print("| charges | order | scatter | n | planned half-width | simulated | difference, % "
+          "| planned power, % | simulated | difference |\n" + "|---" * 10 + "|")  # fmt: skip
+    worst = np.zeros(2)
+    for case, (w, v, p, q) in pool.imap(at_n, [(case, campaigns) for case in grid()]):
+        off = 100 * (w / v - 1), p - q
+        worst = np.maximum(worst, np.abs(off))
+        shown = f"{w:.3f} | {v:.3f} | {off[0]:+.1f} | {p:.1f} | {q:.1f} | {off[1]:+.1f}"
+        print(f"| {case.charges} | {case.order} | {case.scatter} | {case.n} | {shown} |", flush=True)
+    print(f"\nlargest difference: half-width {worst[0]:.1f} %, power {worst[1]:.1f} points\n")
+
+
+def print_pilots(pool: Pool, campaigns: int) -> None:
+    """What pilots tell of cells that are then recorded."""
+    print("| charges | pilot | further | scatter | below the range, % | within | above "
+          "| expected / final | power, % | assurance, % | found, % |\n" + "|---" * 11 + "|")  # fmt: skip
+    for which, numbers in pool.imap(of_pilots, [(one, campaigns) for one in PILOTS]):
+        low, inside, high, ratio, *powers = numbers
+        first = f"{' | '.join(map(str, which))} | {low:.1f} | {inside:.1f} | {high:.1f} | {ratio:.3f}"
+        print(f"| {first} | {' | '.join(f'{one:.1f}' for one in powers)} |", flush=True)
+
+
+def print_splits(pool: Pool, campaigns: int) -> None:
+    """What the best split earns over equal numbers."""
+    print("| pairs | charges | scatter | recordings | mean: promised gain, % | simulated "
+          "| largest: promised gain, % | simulated |\n" + "|---" * 8 + "|")  # fmt: skip
+    for case, numbers in pool.imap(of_splits, [(one, campaigns) for one in SPLITTINGS]):
+        kinds = 1 + 3 * case.pairs
+        kinds *= 2 if case.charges == "separate" else 1
+        kinds += case.charges == "shared"
+        first = f"{case.pairs} | {case.charges} | {case.scatter} | {case.each * kinds}"
+        print(f"| {first} | {' | '.join(f'{one:.1f}' for one in numbers)} |", flush=True)
+
+
+PARTS = {"grid": print_grid, "pilots": print_pilots, "splits": print_splits}
+
+
 def main() -> None:
     parser = argparse.ArgumentParser()
-    parser.add_argument("--campaigns", type=int, default=4000)
+    parser.add_argument("--part", choices=tuple(PARTS), help="only this one")
+    parser.add_argument("--campaigns", type=int, default=1500, help="a case; four times as many in the grid")
     parser.add_argument("--workers", type=int, default=2)
     asked = parser.parse_args()
     started = time.perf_counter()
     with multiprocessing.Pool(asked.workers) as pool:
-        print("| charges | order | scatter | n | planned half-width | simulated | difference, % "
-              "| planned power, % | simulated | difference |\n" + "|---" * 10 + "|")  # fmt: skip
-        worst = np.zeros(2)
-        for case, (w, v, p, q) in pool.imap(at_n, [(case, asked.campaigns) for case in grid()]):
-            off = 100 * (w / v - 1), p - q
-            worst = np.maximum(worst, np.abs(off))
-            shown = f"{w:.3f} | {v:.3f} | {off[0]:+.1f} | {p:.1f} | {q:.1f} | {off[1]:+.1f}"
-            print(f"| {case.charges} | {case.order} | {case.scatter} | {case.n} | {shown} |", flush=True)
-        print(f"\nlargest difference: half-width {worst[0]:.1f} %, power {worst[1]:.1f} points\n")
-        print("| charges | pilot | further | scatter | below the range, % | within | above "
-              "| expected / final | power, % | assurance, % | found, % |\n" + "|---" * 11 + "|")  # fmt: skip
-        for which, numbers in pool.imap(of_pilots, [(one, asked.campaigns // 2) for one in PILOTS]):
-            low, inside, high, ratio, *powers = numbers
-            print(f"| {' | '.join(map(str, which))} | {low:.1f} | {inside:.1f} | {high:.1f} | {ratio:.3f} | "
-                  f"{' | '.join(f'{one:.1f}' for one in powers)} |", flush=True)  # fmt: skip
-        print("\n| pairs | charges | scatter | recordings | mean: promised gain, % | simulated "
-              "| largest: promised gain, % | simulated |\n" + "|---" * 8 + "|")  # fmt: skip
-        for case, numbers in pool.imap(of_splits, [(one, asked.campaigns // 2) for one in SPLITTINGS]):
-            kinds = 1 + 3 * case.pairs
-            kinds *= 2 if case.charges == "separate" else 1
-            kinds += case.charges == "shared"
-            shown = " | ".join(f"{one:.1f}" for one in numbers)
-            print(
-                f"| {case.pairs} | {case.charges} | {case.scatter} | {case.each * kinds} | {shown} |",
-                flush=True,
-            )
+        for part in [asked.part] if asked.part else PARTS:
+            PARTS[part](pool, asked.campaigns * (4 if part == "grid" else 1))
+            print()
     print(f"{time.perf_counter() - started:.0f} s", file=sys.stderr)
 
 
