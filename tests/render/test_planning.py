@@ -2,10 +2,11 @@
 
 import io
 import re
+from dataclasses import replace
 
 import pytest
 
-from cornerwise.plan_rows import NeedRow, Share
+from cornerwise.plan_rows import NeedRow, OutlookRow, Share
 from cornerwise.planning.assumed import Assumptions
 from cornerwise.planning.plan import Plan, plan_assumed
 from cornerwise.planning.request import PlanRequest
@@ -13,6 +14,7 @@ from cornerwise.render.figures.marks import Area, Line, Words
 from cornerwise.render.figures.plan import plan_sheets
 from cornerwise.render.plan_files import plan_files
 from cornerwise.render.planning import further_words, print_plan, range_words
+from cornerwise.tables import Table
 
 
 class _Terminal(io.StringIO):
@@ -102,7 +104,9 @@ def test_every_cycle_has_a_panel_with_both_curves_and_their_ranges() -> None:
 
 
 def test_many_cycles_take_several_sheets() -> None:
-    sheets = plan_sheets(_plan(pairs=20, drawn=True, cells=(4, 8)))
+    one = _plan(pairs=1, drawn=True, cells=(4, 8), recordings=60)
+    rows = [replace(row, cycle=f"A{i}/B{i}") for i in range(20) for row in one.outlooks]
+    sheets = plan_sheets(replace(one, outlooks=Table(OutlookRow, rows)))
     assert {"figures/plan-1-85mm", "figures/plan-3-85mm", "figures/plan-2-180mm"} <= set(sheets)
     assert max(sheet.height for sheet in sheets.values()) <= 230
 
