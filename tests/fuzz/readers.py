@@ -14,6 +14,7 @@ from __future__ import annotations
 import csv
 import io
 import json
+import math
 import re
 import tempfile
 import tomllib
@@ -81,6 +82,44 @@ SUMMARIES = _lines(
         *((x, 12.5, 0.25, "", "J. Invented 1, 2") if x == "WT" else (x, 12.5, 0.25, 4, "") for x in LABELS),
     ]
 ).replace(b"J. Invented 1, 2", b'"J. Invented 1, 2"')
+DISTANCES = _lines(
+    [
+        ("residue_a", "residue_b", "distance_A", "citation", "definition"),
+        ("E181", "Arg212", 3.25, "", "OE1 to NH2"),
+        ("K95", "E181", 12.5, "invented", ""),
+    ]
+)
+_FRAGMENT = (
+    ("CB", "C", "", "GLU", 181, (0.0, 0.0, -9.5)), ("OE1", "O", "A", "GLU", 181, (0.0, 0.0, 0.0)),
+    ("OE1", "O", "B", "GLU", 181, (1.5, 0.0, 0.0)), ("CB", "C", "", "ARG", 212, (12.25, 3.0, 6.0)),
+    ("NH2", "N", "", "ARG", 212, (2.0, 3.0, 6.0)), ("O", "O", "", "HOH", 301, (40.0, 41.0, -42.5)),
+)  # fmt: skip
+_TAGS = (
+    "group_PDB", "id", "type_symbol", "label_atom_id", "label_alt_id", "label_comp_id", "auth_asym_id",
+    "auth_seq_id", "occupancy", "Cartn_x", "Cartn_y", "Cartn_z", "pdbx_PDB_model_num",
+)  # fmt: skip
+PDB = "".join(
+    [
+        "HEADER    INVENTED\n",
+        *(
+            f"ATOM  {i:5d}  {name:<3s}{letter:1s}{residue} A{number:4d}    {x:8.3f}{y:8.3f}{z:8.3f}"
+            f"  1.00 10.00          {element:>2s}\n"
+            for i, (name, element, letter, residue, number, (x, y, z)) in enumerate(_FRAGMENT, start=1)
+        ),
+        "TER\nEND\n",
+    ]
+).encode()
+MMCIF = "".join(
+    [
+        "data_invented\n_entry.id 'an invented one'\nloop_\n",
+        *(f"_atom_site.{tag}\n" for tag in _TAGS),
+        *(
+            f"ATOM {i} {element} {name} {letter or '.'} {residue} A {number} 1.0 {x} {y} {z} 1\n"
+            for i, (name, element, letter, residue, number, (x, y, z)) in enumerate(_FRAGMENT, start=1)
+        ),
+        "#\n_symmetry.entry_id\n;over\ntwo lines\n;\n",
+    ]
+).encode()
 TOML = b"""title = "An invented channel"  # a note
 wild_type = "WT"
 temperature_C = 22.5
@@ -222,9 +261,25 @@ READERS: Mapping[str, Reader] = {
         seeds=(OPENINGS,),
         beside={"campaign.toml": MEASURED, "medians.csv": MEDIANS},
     ),
+    "distances": Reader(
+        file="distances.csv", seeds=(DISTANCES,), beside={"campaign.toml": STATED, "medians.csv": MEDIANS}
+    ),
+    "pdb": Reader(
+        file="a.pdb",
+        seeds=(PDB,),
+        beside={"campaign.toml": STATED + b'[structure]\nfile = "a.pdb"\n', "medians.csv": MEDIANS},
+    ),
+    "mmcif": Reader(
+        file="a.cif",
+        seeds=(MMCIF,),
+        beside={"campaign.toml": STATED + b'[structure]\nfile = "a.cif"\n', "medians.csv": MEDIANS},
+    ),
     "sheet": Reader(file="curves.xlsx", seeds=(SHEET, shared(SHEET)), beside={"campaign.toml": STATED}),
     "book": Reader(file="book.xlsx", seeds=(BOOK, shared(BOOK)), beside={}),
 }
+
+
+STRUCTURES = ("pdb", "mmcif")  # read by an optional library
 
 
 def judge(kind: str, data: bytes, folder: Path) -> Outcome:
@@ -282,6 +337,7 @@ def numbers_in(data: bytes) -> frozenset[float]:
 
 def _measured(campaign: Campaign) -> Iterator[float]:
     """Every number of a campaign that stands in a table as it is."""
+    yield from (one.angstrom for one in campaign.distances if one.atoms == "")
     for construct in campaign.constructs:
         for curve in construct.curves:
             yield from (*curve.voltage_mv, *curve.charge)
@@ -315,7 +371,7 @@ def _check_sound(campaign: object) -> Campaign:
 def _check_table(data: bytes) -> Callable[[object], None]:
     def check(found: object) -> None:
         campaign = _check_sound(found)
-        if b"_\0V" in data or b"_V" in data or b"_pC" in data:  # scaled when read
+        if b"_\0V" in data or b"_V" in data or b"_pC" in data or b"_nm" in data:  # scaled when read
             return
         known = numbers_in(data)
         strange = [value for value in _measured(campaign) if value not in known]
@@ -364,6 +420,34 @@ def _in_workbook(data: bytes) -> frozenset[float]:
     return frozenset((*map(float, numbers), *(float(text) for text in texts if _TOKEN.fullmatch(text))))
 
 
+_DECIMAL = re.compile(rb"[+-]?(?:[0-9]+\.?[0-9]*|\.[0-9]+)")
+_IN_ORDER = b"_atom_site.Cartn_x\n_atom_site.Cartn_y\n_atom_site.Cartn_z"
+
+
+def _check_structure(data: bytes) -> Callable[[object], None]:
+    """Every distance must be one between two places that an independent, careless reader finds."""
+
+    def check(found: object) -> None:
+        campaign = _check_sound(found)
+        places = [tuple(map(float, three)) for three in _threes(data) if all(map(_DECIMAL.fullmatch, three))]
+        for one in campaign.distances:
+            assert 1 <= one.angstrom <= 500
+            if b"_atom_site" in data and _IN_ORDER not in data:
+                continue
+            apart = (math.dist(a, b) for i, a in enumerate(places) for b in places[:i])
+            assert any(math.isclose(one.angstrom, distance, abs_tol=1e-4) for distance in apart), one
+
+    return check
+
+
+def _threes(data: bytes) -> Iterator[tuple[bytes, ...]]:
+    """Three words side by side, by the columns of a line or by spaces."""
+    for line in re.split(rb"[\r\n]", data):
+        yield line[30:38].strip(), line[38:46].strip(), line[46:54].strip()
+    words = [word.partition(b"(")[0].strip(b"'\"") for word in data.split()]
+    yield from zip(words, words[1:], words[2:], strict=False)
+
+
 def _check_result(data: bytes) -> Callable[[object], None]:
     """What is read of a ``result.json`` must give the same contents when it is written again."""
 
@@ -377,6 +461,7 @@ def _check_result(data: bytes) -> Callable[[object], None]:
 
 _CHECKS: Mapping[str, Callable[[bytes], Callable[[object], None]]] = {
     "toml": _check_toml, "sheet": _check_book, "book": _check_book, "result": _check_result,
+    "pdb": _check_structure, "mmcif": _check_structure,
 }  # fmt: skip
 
 

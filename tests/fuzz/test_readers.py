@@ -7,14 +7,18 @@ from pathlib import Path
 import pytest
 from hypothesis import HealthCheck, given, settings
 from hypothesis import strategies as st
+from structure_library import needs_gemmi
 
 import cornerwise
 from cornerwise.errors import DataRefused
 from fuzz import readers
 from intake.writing import content, mingled
 
-KINDS = (*readers.READERS, "result")
-TABLES = ("curves", "medians", "charges", "openings")
+KINDS = [
+    pytest.param(kind, marks=needs_gemmi if kind in readers.STRUCTURES else ())
+    for kind in (*readers.READERS, "result")
+]
+TABLES = ("curves", "medians", "charges", "openings", "distances")
 
 _often = settings(max_examples=40, deadline=None, suppress_health_check=[HealthCheck.function_scoped_fixture])
 _damage = st.lists(

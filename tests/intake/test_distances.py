@@ -1,5 +1,6 @@
 """The table of distances between side chains."""
 
+from dataclasses import replace
 from pathlib import Path
 
 import pytest
@@ -50,7 +51,7 @@ def test_citation_and_definition_travel(tmp_path: Path) -> None:
 
 def test_distances_change_nothing_else(tmp_path: Path) -> None:
     with_distances = _read(tmp_path, HEADER + "E181,R212,3.25\n")
-    assert content(with_distances) == content(read(folder(tmp_path / "b", TOML)))
+    assert content(replace(with_distances, distances=())) == content(read(folder(tmp_path / "b", TOML)))
 
 
 def test_pairs_without_a_cycle_are_said(tmp_path: Path) -> None:

@@ -139,9 +139,11 @@ def content(campaign: Campaign) -> object:
         )
         for construct in campaign.constructs
     ]
+    distances = [(d.residues, d.angstrom, d.atoms, d.source, d.definition) for d in campaign.distances]
     requests = [(request.name, request.mutations) for request in campaign.requests]
     return (
-        campaign.settings, constructs, campaign.cycles, requests, campaign.background, campaign.exclusions
+        campaign.settings, constructs, campaign.cycles, requests, campaign.background, campaign.exclusions,
+        distances,
     )  # fmt: skip
 
 

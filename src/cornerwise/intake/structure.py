@@ -22,7 +22,7 @@ from .spelling import meant_keys
 
 MMCIF_SUFFIXES = (".cif", ".mmcif")
 PDB_SUFFIXES = (".pdb", ".ent")
-MOST_STRUCTURE_BYTES = 50_000_000
+MOST_STRUCTURE_BYTES = 20_000_000
 LARGEST_OFFSET = 100_000
 
 _FILE_EXPECTED = "the name of a file in the campaign's folder, in quotes"
