@@ -1,14 +1,15 @@
 """docs/formats.md and the starter name every key and column that is read, and no other."""
 
 import re
+import shutil
 from importlib import resources
 from pathlib import Path
 from types import ModuleType
 
 import pytest
 
-from cornerwise.campaign import Settings
-from cornerwise.intake import charges, curves, distances, medians, openings
+from cornerwise.campaign import Settings, distance_between
+from cornerwise.intake import charges, curves, distances, medians, openings, read
 from cornerwise.intake.settings import KEYS, SECTIONS
 from cornerwise.intake.structure import STRUCTURE_KEYS
 from cornerwise.render.legend import setting_values
@@ -79,3 +80,18 @@ def test_every_choice_of_a_manuscript_table_is_named() -> None:
     assert re.findall(r"`([\w-]+)`", digits.split("|")[2]) == list(DIGIT_RULES)
     (unit,) = [line for line in PAGE.splitlines() if line.startswith("| `--unit`")]
     assert re.findall(r"`([\w/]+)`", unit.split("|")[2]) == list(ENERGY_UNITS)
+
+
+def test_the_distances_shown_are_read_with_the_shipped_campaign(tmp_path: Path) -> None:
+    folder = tmp_path / "campaign"
+    shutil.copytree(Path(__file__).parents[1] / "cycles" / "orvane", folder)
+    (shown,) = re.findall(r"^```csv\n(residue_a.*?)```", PAGE, flags=re.MULTILINE | re.DOTALL)
+    (folder / "distances.csv").write_text(shown, encoding="utf-8")
+    campaign = read(folder)
+    known = {
+        cycle.name: distance.angstrom
+        for cycle in campaign.cycles
+        if (distance := distance_between(cycle.mutations, campaign.distances)) is not None
+    }
+    assert known == {"D171N/K232Q": 3.1, "E154Q/R226Q": 7.4}
+    assert campaign.notes == ()

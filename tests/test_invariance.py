@@ -28,8 +28,8 @@ OF_MANY = {
 }  # fmt: skip
 
 
-def _many_pairs(folder: Path) -> Path:
-    """Forty pairs of summaries on one wild type, with every kind of comparison asked for."""
+def _many_pairs(folder: Path, asked: str) -> Path:
+    """Forty pairs of summaries on one wild type, with a kind of interval that is asked for."""
     folder.mkdir()
     rng = np.random.default_rng(8)
     lines = ["construct,median_mV,sem_mV,n", "WT,-40,1,5"]
@@ -41,15 +41,14 @@ def _many_pairs(folder: Path) -> Path:
         ]
     (folder / "medians.csv").write_text("\n".join(lines) + "\n")
     (folder / "campaign.toml").write_text(
-        'wild_type = "WT"\ncharge = { value_e0 = 13.0, sem_e0 = 0.5 }\ninterval = "monte-carlo"\n'
-        "simultaneous = true\n"
+        f'wild_type = "WT"\ncharge = {{ value_e0 = 13.0, sem_e0 = 0.5 }}\n{asked}\n'
     )
     return folder
 
 
-@pytest.mark.parametrize("which", ["starter", "many pairs"])
+@pytest.mark.parametrize("which", ["starter", "simultaneous = true", 'interval = "monte-carlo"'])
 def test_the_number_of_threads_changes_no_byte(which: str, tmp_path: Path) -> None:
-    folder = STARTER if which == "starter" else _many_pairs(tmp_path / "many")
+    folder = STARTER if which == "starter" else _many_pairs(tmp_path / "many", which)
     printed = [
         subprocess.run(
             [sys.executable, "-m", "cornerwise", "couple", str(folder), "--json"],

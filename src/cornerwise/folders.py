@@ -91,7 +91,7 @@ def write_folder(
         with _beside(place) as fresh:
             for name, contents in files.items():
                 _write_file(_place_below(fresh, name), contents)
-            if place.exists():
+            with suppress(FileNotFoundError):  # none yet, or another run is just replacing it
                 shutil.copymode(place, fresh)
             _put_in_place(fresh, place, force=force)
         _sync(place.parent)

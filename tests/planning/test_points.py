@@ -12,6 +12,14 @@ def test_the_table_of_t_is_right_to_a_millionth(level: float) -> None:
     assert t_quantiles(level, dofs) == pytest.approx(exact, rel=1e-6)
 
 
+def test_a_few_quantiles_are_computed_each_by_itself() -> None:
+    dofs = np.array([0.4, 1.0, 3.7, np.inf])
+    exact = [stats.t.ppf(0.99, dof) for dof in dofs[:3]] + [stats.norm.ppf(0.99)]
+    assert t_quantiles(0.99, dofs) == pytest.approx(exact, rel=1e-9)
+    many = t_quantiles(0.99, np.tile(dofs, 100))
+    assert many == pytest.approx(np.tile(exact, 100), rel=1e-6)
+
+
 @pytest.mark.parametrize("dof", [1.0, 2.0, 4.5, 30.0])
 def test_mean_squares_have_the_distribution_of_chi_square(dof: float) -> None:
     found = mean_squares(dof, 3, MANY)

@@ -8,8 +8,6 @@ import numpy as np
 from numpy.typing import NDArray
 from scipy import special
 
-from ..intervals import t_quantile
-
 FloatArray = NDArray[np.float64]
 IntArray = NDArray[np.int64]
 
@@ -20,6 +18,7 @@ _MULTIPLIERS = {509: 27, 2039: 1487}
 MANY, FEW = 2039, 509
 
 _TABLE = np.linspace(0.0, 1.0, 4097)  # of 1 / dof
+_WORTH_A_TABLE = 200  # quantiles at once; fewer are sooner computed than the table of a level
 
 
 def _order(points: int, dimension: int) -> IntArray:
@@ -61,16 +60,26 @@ def mean_squares(dof: float, dimension: int, points: int) -> FloatArray:
 
 @lru_cache(maxsize=64)
 def _log_t_table(level: float) -> FloatArray:
-    quantiles = [t_quantile(level, 1 / x if x > 0 else np.inf) for x in _TABLE]
-    table: FloatArray = np.log(np.array(quantiles))
+    with np.errstate(divide="ignore"):
+        table: FloatArray = np.log(_each(level, 1 / _TABLE))
     return table
 
 
-def t_quantiles(level: float, dofs: FloatArray) -> FloatArray:
-    """Quantiles of Student's t, from a table of their logarithms for 1 degree of freedom and above.
+def _each(level: float, dofs: FloatArray) -> FloatArray:
+    """Quantiles of Student's t, each by itself."""
+    limited = ~np.isposinf(dofs)
+    found = np.full(dofs.shape, special.ndtri(level))
+    found[limited] = special.stdtrit(dofs[limited], level)
+    return found
 
-    The table is right to 1e-6 of the quantile. Below 1 degree of freedom each is computed.
+
+def t_quantiles(level: float, dofs: FloatArray) -> FloatArray:
+    """Quantiles of Student's t; many at once come from a table of their logarithms.
+
+    The table is right to 1e-6 of the quantile for 1 degree of freedom and above; below it each is computed.
     """
+    if dofs.size < _WORTH_A_TABLE:
+        return _each(level, dofs)
     found: FloatArray = np.exp(np.interp(1 / np.maximum(dofs, 1.0), _TABLE, _log_t_table(level)))
     few = dofs < 1
-    return np.where(few, special.stdtrit(np.where(few, dofs, 1.0), level), found) if few.any() else found
+    return np.where(few, _each(level, np.where(few, dofs, 1.0)), found) if few.any() else found
