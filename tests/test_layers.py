@@ -31,7 +31,7 @@ FLOORS = [
     {"coupling", "surveying"},
     {"unit_change"},
     {"intake", "render", "starter"},
-    {"console", "formats"},
+    {"console", "formats", "process"},
     {"plan_command", "design_commands"},
     {"cli"},
     {"__main__"},

@@ -1,6 +1,15 @@
-"""``python -m cornerwise``."""
+"""``python -m cornerwise``, and what the installed command runs."""
 
-from .cli import main
+import signal
+
+
+def main() -> None:
+    """Entry point of the ``cornerwise`` command."""
+    signal.signal(signal.SIGINT, signal.SIG_DFL)  # until everything is loaded an interrupt ends it wordlessly
+    from .cli import main as run
+
+    run()
+
 
 if __name__ == "__main__":
     main()

@@ -2,10 +2,7 @@
 
 from __future__ import annotations
 
-import gc
-import os
 import sys
-import traceback
 from pathlib import Path
 from typing import Annotated
 
@@ -16,8 +13,7 @@ from .console import CampaignPath, Force, Json, expect_room, progress, report, w
 from .design_commands import protocol, simulate
 from .errors import CornerwiseError, UsageError
 from .plan_command import plan
-
-_FEWEST_NEW_OBJECTS = 100_000  # between two looks for garbage; importing alone makes many that stay
+from .process import let_go_of_stdout, print_json, run
 
 
 class _Boundary(TyperGroup):
@@ -30,7 +26,7 @@ class _Boundary(TyperGroup):
             report(error)
             raise SystemExit(error.exit_code) from None
         except BrokenPipeError:  # the reader of a pipe went away; nothing is wrong
-            os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+            let_go_of_stdout()
             raise SystemExit(0) from None
 
 
@@ -69,7 +65,7 @@ def _cornerwise(
 
     \b
     Exit codes: 0 done, 1 a fault of the program, 2 a wrong call,
-    3 the data were refused.
+    3 the data were refused, 130 or 143 stopped by a signal.
     """  # noqa: D301 - the \b keeps the lines below it as they are
 
 
@@ -122,7 +118,7 @@ def check(
 
         write(curve_files(found), figures, force=force)
     if as_json:
-        print(survey_json(found), end="")
+        print_json(survey_json(found))
     else:
         print_survey(found, sys.stdout)
 
@@ -162,14 +158,16 @@ def couple(
     if out is not None:  # before the table is printed: the reader of a pipe may go away
         write(output_files(result, figures=figures, progress=progress()), out, force=force)
     if as_json:
-        print(result.to_json(), end="")
+        print_json(result.to_json())
     else:
         print_result(result, sys.stdout)
 
 
 @app.command()
 def render(  # noqa: PLR0913 - one parameter an option
-    path: Annotated[Path, typer.Argument(metavar="RESULT.json", help="A result.json that couple wrote.")],
+    path: Annotated[
+        Path, typer.Argument(metavar="RESULT.json", help="What couple wrote; - for standard input.")
+    ],
     out: Annotated[Path, typer.Option(metavar="DIR", help="Folder to write into.")],
     unit: Annotated[
         str | None, typer.Option(metavar="UNIT", help="Energies in kcal/mol, kJ/mol, kT or meV.")
@@ -200,6 +198,7 @@ def render(  # noqa: PLR0913 - one parameter an option
       cornerwise render results/result.json --out again
       cornerwise render results/result.json --out si --unit kJ/mol
       cornerwise render results/result.json --out si --columns cycle,interaction
+      cornerwise couple trial --json | cornerwise render - --out again
     """  # noqa: D301
     from . import TableOptions, output_files, read_result
 
@@ -243,7 +242,7 @@ def rank(
 
     result = run(ranked_by(read(path), lower_limit=by_lower_limit, first=first), progress())
     if as_json:
-        print(ranking_json(result), end="")
+        print_json(ranking_json(result))
     else:
         print_ranking(result, sys.stdout)
 
@@ -274,10 +273,15 @@ def explain(
 
 def main() -> None:
     """Entry point of the ``cornerwise`` command."""
-    gc.set_threshold(_FEWEST_NEW_OBJECTS)
+    run(_app)
+
+
+def _app() -> None:
     try:
         app()
     except Exception:  # whatever is left is no message for the user but a fault of ours
+        import traceback
+
         traceback.print_exc()
         print("cornerwise: this is a fault of the program, please report it", file=sys.stderr)
         raise SystemExit(CornerwiseError.exit_code) from None

@@ -10,6 +10,7 @@ import typer
 
 from .console import Force, Json, expect_room, progress, write
 from .errors import UsageError
+from .process import print_json
 
 
 def simulate(
@@ -38,7 +39,7 @@ def simulate(
     truth = truth_of(model)
     write(campaign_files(draw(model), truth, model), out, force=force)
     if as_json:
-        print(truth_json(truth), end="")
+        print_json(truth_json(truth))
     else:
         print_truth(truth, sys.stdout)
 
@@ -91,6 +92,6 @@ def protocol(
     curves = expected_curves(pairs) if model is None else curves_of(model)
     found = check_protocols(curves, asked, progress())
     if as_json:
-        print(protocols_json(found), end="")
+        print_json(protocols_json(found))
     else:
         print_protocols(found, sys.stdout)

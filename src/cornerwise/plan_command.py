@@ -11,6 +11,7 @@ import typer
 
 from .console import Force, Json, expect_room, progress, write
 from .errors import UsageError
+from .process import print_json
 
 if TYPE_CHECKING:
     from .planning.plan import Plan
@@ -201,6 +202,6 @@ def _show(found: Plan, out: Path | None, *, force: bool, as_json: bool) -> None:
 
         write(plan_files(found), out, force=force)
     if as_json:
-        print(plan_json(found), end="")
+        print_json(plan_json(found))
     else:
         print_plan(found, sys.stdout)

@@ -6,6 +6,7 @@ import dataclasses
 import json
 import math
 import os
+import sys
 import types
 from collections.abc import Callable, Mapping
 from pathlib import Path
@@ -52,7 +53,7 @@ def read_result(path: str | os.PathLike[str]) -> Result:
     Parameters
     ----------
     path : str or path-like
-        A ``result.json``.
+        A ``result.json``, the folder of output that holds one, or ``-`` for standard input.
 
     Returns
     -------
@@ -65,10 +66,14 @@ def read_result(path: str | os.PathLike[str]) -> Result:
         If the file cannot be read, is cut short, has another schema version, was edited, or holds a field
         that is missing, unknown or of the wrong type; names the place.
     """
-    file = str(path)
+    file, data = str(path), b""
     try:
-        with Path(path).open("rb") as stream:
-            data = stream.read(MOST_BYTES + 1)
+        if file == "-":
+            file, data = "standard input", sys.stdin.buffer.read(MOST_BYTES + 1)
+        else:
+            place = Path(path) / "result.json" if Path(path).is_dir() else Path(path)
+            with place.open("rb") as stream:
+                data = stream.read(MOST_BYTES + 1)
         text = data.decode("utf-8")
     except (OSError, UnicodeDecodeError) as error:
         _refuse(file, f"no readable file ({error})", "a result.json written by cornerwise")

@@ -62,7 +62,7 @@ def locate(folder: Path, findings: Findings) -> dict[str, Path]:
             _judge_stray(path, findings)
     _refuse_several(known, findings)
     if "campaign" not in known:
-        _refuse_missing_campaign(files, findings)
+        _refuse_missing_campaign(folder, files, findings)
     if not {"curves", "medians"} & known.keys():
         findings.add(
             Origin(),
@@ -102,10 +102,10 @@ def stays_below(folder: Path, path: Path) -> bool:
 
 
 def _refuse_link(path: Path, findings: Findings) -> None:
-    if path.is_file() and _is_known(path):
+    if _is_known(path):
         findings.add(
             Origin(file=path.name),
-            found="a link to a file outside the folder",
+            found="a link to something outside the folder",
             expected="the campaign's files inside its folder",
             remedy="put a copy of the file there, so that the campaign is whole wherever it is kept",
         )
@@ -192,11 +192,15 @@ def _judge_stray(path: Path, findings: Findings) -> None:
     )
 
 
-def _refuse_missing_campaign(files: list[Path], findings: Findings) -> None:
+def _refuse_missing_campaign(folder: Path, files: list[Path], findings: Findings) -> None:
     close = nearest(CAMPAIGN_FILE, (path.name for path in files))
+    below = [path.parent.name for path in sorted(folder.glob(f"*/{CAMPAIGN_FILE}"))]
+    remedy = f"rename {close}" if close else 'write one with the line wild_type = "WT"'
+    if below and not close:
+        remedy = f"did you mean the folder {folder / below[0]}?"
     findings.add(
         Origin(file=CAMPAIGN_FILE),
         found="no such file",
         expected=f"a file {CAMPAIGN_FILE} that names at least the wild type",
-        remedy=f"rename {close}" if close else 'write one with the line wild_type = "WT"',
+        remedy=remedy,
     )

@@ -9,6 +9,7 @@ from __future__ import annotations
 
 import os
 from collections.abc import Callable, Mapping, Sequence
+from contextlib import suppress
 from dataclasses import dataclass
 from pathlib import Path
 from typing import TYPE_CHECKING, TypeVar
@@ -22,7 +23,7 @@ from .curves import CurvesRead, read_curves
 from .distances import DistancesRead, read_distances
 from .exclusions import read_exclusions
 from .files import TABLES, locate, read_bytes
-from .findings import Findings
+from .findings import Findings, nearest
 from .header import RawTable
 from .listed import cycle_requests, listed_mutations
 from .medians import MediansRead, read_medians
@@ -79,7 +80,7 @@ def _open(path: Path, findings: Findings) -> Source | None:
         return _open_folder(path, findings)
     if path.is_file() and path.suffix.casefold() == ".xlsx":
         return _open_workbook(path, findings)
-    found, remedy = "nothing under this path", "check the path"
+    found, remedy = "nothing under this path", _nearby(path)
     if path.exists():
         found = "a file that is no .xlsx workbook"
         remedy = "give the folder that holds campaign.toml and the tables, or save the workbook as .xlsx"
@@ -90,6 +91,15 @@ def _open(path: Path, findings: Findings) -> Source | None:
         remedy=remedy,
     )
     return None
+
+
+def _nearby(path: Path) -> str:
+    """What to do about a path under which there is nothing: perhaps take one that is spelt almost so."""
+    there: list[str] = []
+    with suppress(OSError):
+        there = [one.name for one in path.absolute().parent.iterdir() if not one.name.startswith(".")]
+    close = nearest(path.name, there)
+    return f"did you mean {path.with_name(close)}?" if close else "check the path"
 
 
 def _open_folder(folder: Path, findings: Findings) -> Source:

@@ -102,6 +102,8 @@ def _fitted(curves: Sequence[Curve], temperature_c: float, low_plateau_is_zero: 
         y, low = charge / height[:, None], np.zeros(len(curves))
     fit = fit_each(relative, y, start, slopes, baseline_is_zero=low_plateau_is_zero)
     plateau = low + fit.offset * height
+    with np.errstate(over="ignore"):  # of charges beyond 1e150 of their unit
+        squares = fit.sum_of_squares * height**2
     return [
         CellSigmoid(
             construct=curve.construct,
@@ -110,7 +112,7 @@ def _fitted(curves: Sequence[Curve], temperature_c: float, low_plateau_is_zero: 
             slope_charge_e0=float(np.exp(fit.log_slope[i])) * thermal_voltage_mv(temperature_c),
             low_plateau=float(plateau[i]),
             high_plateau=float(plateau[i] + fit.gain[i] * height[i]),
-            residual_sum_of_squares=float(fit.sum_of_squares[i] * height[i] ** 2),
+            residual_sum_of_squares=float(squares[i]),
         )
         for i, curve in enumerate(curves)
     ]

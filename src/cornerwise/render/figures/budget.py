@@ -36,7 +36,7 @@ def cycle_budget(row: InteractionRow, parts: Sequence[BudgetRow], width: float) 
         Of the sheet (mm).
     """
     known = _known(parts)
-    if not known:
+    if not known or not known[0].share:  # no uncertainty at all: cells that agree to the last digit
         return None
     shown = known[:_MOST_SOURCES]
     bottom = 1.0 + len(shown) * _SOURCE_MM

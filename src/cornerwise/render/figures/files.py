@@ -4,10 +4,13 @@ from __future__ import annotations
 
 import os
 import re
-from collections.abc import Callable, Iterable, Mapping, Sequence
+import signal
+import threading
+from collections.abc import Callable, Iterable, Iterator, Mapping, Sequence
 from concurrent.futures import ProcessPoolExecutor
+from contextlib import contextmanager
 from functools import partial
-from multiprocessing import get_context
+from multiprocessing import active_children, get_context
 from pathlib import Path
 from tempfile import TemporaryDirectory
 
@@ -187,8 +190,32 @@ def drawn_files(
         if many == 1 or len(sheets) <= _ALONE:
             return _gather(sheets, map(draw, sheets.values()), progress)
         # Fresh processes rather than copies of this one, whose numerical libraries may hold threads.
-        with ProcessPoolExecutor(max_workers=many, mp_context=get_context("spawn")) as pool:
-            return _gather(sheets, pool.map(draw, sheets.values(), chunksize=4), progress)
+        pool = ProcessPoolExecutor(max_workers=many, mp_context=get_context("spawn"))
+        others = active_children()
+        try:
+            with _deaf_to_interrupts():
+                drawn = pool.map(draw, sheets.values(), chunksize=4)
+            return _gather(sheets, drawn, progress)
+        except BaseException:  # stopped: what is being drawn is of no use
+            for child in active_children():
+                if child not in others:
+                    child.terminate()
+            raise
+        finally:
+            pool.shutdown(cancel_futures=True)
+
+
+@contextmanager
+def _deaf_to_interrupts() -> Iterator[None]:
+    """Have processes that begin here leave an interrupt to this one, which stops them without a word."""
+    if threading.current_thread() is not threading.main_thread():  # where signals cannot be set
+        yield
+        return
+    heard = signal.signal(signal.SIGINT, signal.SIG_IGN)
+    try:
+        yield
+    finally:
+        signal.signal(signal.SIGINT, heard)
 
 
 def _gather(
