@@ -17,6 +17,7 @@ import errno
 import os
 import secrets
 import shutil
+import stat
 import sys
 import time
 from collections.abc import Iterator, Mapping
@@ -49,12 +50,14 @@ def check_destination(folder: Path, *, force: bool) -> None:
     """
     place = _followed(folder)
     try:
-        exists, is_folder = place.exists(), place.is_dir()
+        mode = place.stat().st_mode  # one look: between two, another run may put a folder there
+    except (FileNotFoundError, NotADirectoryError):
+        mode = None
     except OSError as error:
         raise UsageError(f"cannot write {folder}: {error.strerror}; give another folder") from error
-    if exists and not is_folder:
+    if mode is not None and not stat.S_ISDIR(mode):
         raise UsageError(f"{folder} is a file; give a folder to write to")
-    if exists and not force:
+    if mode is not None and not force:
         raise UsageError(f"{folder} exists; use --force to replace it as a whole, or give another folder")
     if not place.parent.is_dir():
         raise UsageError(f"{place.parent} is not a folder; make it first")
@@ -105,8 +108,8 @@ def clear_left_behind(folder: Path) -> None:
         with _locked(left) as mine:
             if not mine:
                 continue
-            if left.name.endswith(_OLD) and not folder.exists():
-                left.rename(folder)
+            if left.name.endswith(_OLD):
+                _put_back(left, folder)
             else:
                 shutil.rmtree(left, ignore_errors=True)
 
@@ -229,14 +232,27 @@ def _move_aside(fresh: Path, place: Path) -> None:
     with _locked(aside):
         try:
             fresh.rename(place)
-        except OSError as error:
-            if error.errno not in _OCCUPIED:
-                aside.rename(place)
-                raise
-            raise FileNotFoundError(error.errno, "another run was quicker") from error
-        finally:
-            if place.exists():
-                shutil.rmtree(aside, ignore_errors=True)
+        except BaseException as error:
+            _put_back(aside, place)
+            if isinstance(error, OSError) and error.errno in _OCCUPIED:
+                raise FileNotFoundError(error.errno, "another run was quicker") from error
+            raise
+        shutil.rmtree(aside, ignore_errors=True)
+
+
+def _put_back(aside: Path, place: Path) -> None:
+    """Put back what was moved aside; delete it where another run has filled its place.
+
+    The renaming itself tells which: between a look and a deed other runs may do theirs.
+    """
+    try:
+        aside.rename(place)
+    except FileNotFoundError:  # another run has dealt with it
+        return
+    except OSError as error:
+        if error.errno not in _OCCUPIED:
+            raise
+        shutil.rmtree(aside, ignore_errors=True)
 
 
 def _exchange(one: Path, other: Path) -> None:
