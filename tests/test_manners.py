@@ -1,6 +1,7 @@
 """The command line among shells, pipes, terminals, signals, locales and the files of other systems."""
 
 import fcntl
+import io
 import json
 import os
 import pty
@@ -18,6 +19,7 @@ from pathlib import Path
 import pytest
 
 import cornerwise
+from cornerwise import console
 from cornerwise.errors import DataRefused
 from fuzz.readers import CURVES, LABELS, MEASURED, READERS, REPLICATES, STATED
 from intake.writing import content
@@ -141,6 +143,42 @@ def test_colours_only_where_they_are_wanted(changes: Mapping[str, str], allowed:
     else:
         assert found <= allowed
     assert not _ESCAPE.search(_run("couple", PUBLISHED, **changes).stdout.decode())
+
+
+class _Screen(io.StringIO):
+    def isatty(self) -> bool:
+        return True
+
+
+@pytest.mark.parametrize("terminal", ["xterm", "dumb"])
+def test_progress_takes_one_line_of_a_terminal_and_goes(
+    terminal: str, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setenv("TERM", terminal)
+    monkeypatch.setattr(console, "_PATIENCE_S", 0.0)
+    monkeypatch.setattr(sys, "stderr", screen := _Screen())
+
+    def interrupted() -> None:
+        with console.progress() as told:
+            for done in (1, 2, 3):
+                told("medians", done, 3)
+            raise KeyboardInterrupt
+
+    with pytest.raises(KeyboardInterrupt):
+        interrupted()
+    said = [f"cornerwise: medians, {done} of 3" for done in (1, 2, 3)]
+    if terminal == "dumb":
+        assert screen.getvalue().splitlines() == said
+    else:
+        clear = "\r\x1b[K"
+        assert screen.getvalue() == clear + clear.join(said) + clear
+
+
+def test_progress_says_nothing_of_what_is_quick(monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr(sys, "stderr", screen := _Screen())
+    with console.progress() as told:
+        told("medians", 1, 3)
+    assert screen.getvalue() == ""
 
 
 # Pipes

@@ -187,12 +187,15 @@ def test_table_in_words(found: ProtocolCheck) -> None:
     row = found.advised
     assert row is not None
     assert f"Within the bounds with the fewest points: {row.first_mv:g} to {row.last_mv:g} mV" in told
-    assert told.splitlines()[1].split()[:4] == [
-        f"{found.rows[0].first_mv:g}",
-        "to",
-        f"{found.rows[0].last_mv:g}",
-        "10",
+    lines = told.splitlines()[1 : 1 + len(found.rows)]
+    narrowest = found.rows[0]
+    assert lines[0].split()[:4] == [f"{narrowest.first_mv:g}", "to", f"{narrowest.last_mv:g}", "10"]
+    assert [line.startswith("*") for line in lines] == [one.within for one in found.rows]
+    assert [int(line.split()[-1]) for line in lines] == [
+        1 + found.curves.index(one.curve) for one in found.rows
     ]
+    assert all(f"{number}  {curve}" in told for number, curve in enumerate(found.curves, start=1))
+    assert max(map(len, lines)) <= 80
     stream = io.StringIO()
     print_protocols(replace(found, advised=None), stream)
     assert "None of these stays within the bounds" in stream.getvalue()

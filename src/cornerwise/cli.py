@@ -61,7 +61,7 @@ def _cornerwise(
       cornerwise check trial                  read and judge the data
       cornerwise couple trial --out results   the coupling table and its files
       cornerwise plan trial                   what to record next
-      cornerwise simulate model.toml --out it  a campaign with a known truth
+      cornerwise simulate m.toml --out drawn  a campaign with a known truth
 
     \b
     Exit codes: 0 done, 1 a fault of the program, 2 a wrong call,
@@ -112,7 +112,8 @@ def check(
     from .render.terminal import print_survey
 
     expect_room(figures, force=force)
-    found = survey(read(path), progress())
+    with progress() as told:
+        found = survey(read(path), told)
     if figures is not None:  # before the table is printed: the reader of a pipe may go away
         from .render.figures.files import curve_files
 
@@ -154,9 +155,12 @@ def couple(
     if figures and out is None:
         raise UsageError("--figures needs a folder to draw into; give --out DIR")
     expect_room(out, force=force)
-    result = run(read(path), progress())
+    with progress() as told:
+        result = run(read(path), told)
     if out is not None:  # before the table is printed: the reader of a pipe may go away
-        write(output_files(result, figures=figures, progress=progress()), out, force=force)
+        with progress() as told:
+            files = output_files(result, figures=figures, progress=told)
+        write(files, out, force=force)
     if as_json:
         print_json(result.to_json())
     else:
@@ -206,7 +210,8 @@ def render(  # noqa: PLR0913 - one parameter an option
     options = TableOptions(
         columns=_named(columns), construct_columns=_named(construct_columns), group=group, digits=digits
     )
-    files = output_files(read_result(path), tables=options, unit=unit, figures=figures, progress=progress())
+    with progress() as told:
+        files = output_files(read_result(path), tables=options, unit=unit, figures=figures, progress=told)
     write(files, out, force=force)
 
 
@@ -240,7 +245,8 @@ def rank(
     from .render.machine import ranking_json
     from .render.ranking import print_ranking
 
-    result = run(ranked_by(read(path), lower_limit=by_lower_limit, first=first), progress())
+    with progress() as told:
+        result = run(ranked_by(read(path), lower_limit=by_lower_limit, first=first), told)
     if as_json:
         print_json(ranking_json(result))
     else:
@@ -268,7 +274,9 @@ def explain(
     from . import read
     from .render.terminal import print_paragraphs
 
-    print_paragraphs(put_in_words(run(read(path), progress()), cycle), sys.stdout)
+    with progress() as told:
+        result = run(read(path), told)
+    print_paragraphs(put_in_words(result, cycle), sys.stdout)
 
 
 def main() -> None:

@@ -2,10 +2,12 @@
 
 from __future__ import annotations
 
+import os
 import sys
 import time
 from collections import Counter
-from collections.abc import Callable, Iterable, Mapping
+from collections.abc import Callable, Iterable, Iterator, Mapping
+from contextlib import contextmanager
 from pathlib import Path
 from typing import Annotated
 
@@ -30,17 +32,28 @@ def report(error: CornerwiseError) -> None:
         print(f"cornerwise: {error}", file=sys.stderr)
 
 
-def progress() -> Callable[[str, int, int], None]:
-    """Report to stderr once the work has taken longer than a second, and then each further second."""
+@contextmanager
+def progress() -> Iterator[Callable[[str, int, int], None]]:
+    """Report to stderr once the work has taken longer than a second, and then each further second.
+
+    At a terminal each report takes the place of the one before, and the last one goes when the work ends.
+    """
     last = time.monotonic()
+    rewriting = sys.stderr.isatty() and os.environ.get("TERM", "dumb") != "dumb"
+    clear, end = ("\r\x1b[K", "") if rewriting else ("", "\n")
+    shown = False
 
     def told(step: str, done: int, total: int) -> None:
-        nonlocal last
+        nonlocal last, shown
         if time.monotonic() - last >= _PATIENCE_S:
-            last = time.monotonic()
-            print(f"cornerwise: {step}, {done} of {total}", file=sys.stderr, flush=True)
+            last, shown = time.monotonic(), True
+            print(f"{clear}cornerwise: {step}, {done} of {total}", end=end, file=sys.stderr, flush=True)
 
-    return told
+    try:
+        yield told
+    finally:
+        if shown and rewriting:
+            print(clear, end="", file=sys.stderr, flush=True)
 
 
 def expect_room(folder: Path | None, *, force: bool) -> None:

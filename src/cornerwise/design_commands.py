@@ -53,17 +53,24 @@ def protocol(
         typer.Option(metavar="MEDIAN:SLOPE", help="Instead: median and slope in mV; may be repeated."),
     ] = None,
     bound: Annotated[
-        float | None, typer.Option(min=0.01, help="Largest bias of a median in mV; 1 by default.")
+        float | None,
+        typer.Option(metavar="MV", min=0.01, help="Largest bias of a median in mV; 1 by default."),
     ] = None,
     share: Annotated[
         float | None,
-        typer.Option(min=1e-4, max=0.2, help="Largest part of the charge beyond an end; 0.02 by default."),
+        typer.Option(
+            metavar="F", min=1e-4, max=0.2, help="Largest part of the charge beyond an end; 0.02 by default."
+        ),
     ] = None,
     noise: Annotated[
         float | None,
-        typer.Option(min=0.0, max=0.5, help="Of a point, part of the charge; the model's, or 0.01."),
+        typer.Option(
+            metavar="F", min=0.0, max=0.5, help="Of a point, part of the charge; the model's, or 0.01."
+        ),
     ] = None,
-    step: Annotated[list[float] | None, typer.Option(help="Step in mV; may be repeated.")] = None,
+    step: Annotated[
+        list[float] | None, typer.Option(metavar="MV", help="Step in mV; may be repeated.")
+    ] = None,
     ends: Annotated[
         tuple[float, float] | None,
         typer.Option("--range", metavar="FIRST LAST", help="A range in mV to judge as well; the model's."),
@@ -90,7 +97,8 @@ def protocol(
     asked = question_for(model, bound_mv=bound, share=share, noise=noise, steps_mv=step, ends_mv=ends)
     pairs = [median_and_slope(words) for words in curve or ()]
     curves = expected_curves(pairs) if model is None else curves_of(model)
-    found = check_protocols(curves, asked, progress())
+    with progress() as told:
+        found = check_protocols(curves, asked, told)
     if as_json:
         print_json(protocols_json(found))
     else:

@@ -36,7 +36,7 @@ def _whole(text: str | None) -> tuple[int, ...]:
 
 
 _Pilot = Annotated[
-    Path | None, typer.Argument(metavar="[PATH]", help="Pilot campaign; without it, scatters are assumed.")
+    Path | None, typer.Argument(metavar="PATH", help="Pilot campaign; without it, scatters are assumed.")
 ]
 _Cells = Annotated[str | None, typer.Option(metavar="N,N,...", help="Cells of each kind to tell of.")]
 _HalfWidth = Annotated[float | None, typer.Option(metavar="E", help="Wanted half-width of the interval.")]
@@ -190,7 +190,8 @@ def _of_pilot(path: Path, request: PlanRequest, constructs: Mapping[str, tuple[f
     given = [f"--{name.replace('_', '-')}" for name, values in constructs.items() if values]
     if given:
         raise UsageError(f"{given[0]} is for constructs yet to be recorded; leave out {path} or the option")
-    return run(read(path), request, progress())
+    with progress() as told:
+        return run(read(path), request, told)
 
 
 def _show(found: Plan, out: Path | None, *, force: bool, as_json: bool) -> None:

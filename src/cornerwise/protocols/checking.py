@@ -66,6 +66,7 @@ class ProtocolCheck:
     question: ProtocolQuestion
     rows: Table[ProtocolRow]  # by range, the widest last, and step
     advised: ProtocolRow | None  # the one within the bounds with the fewest points, then the narrowest
+    curves: tuple[str, ...]  # that were tried
 
 
 def check_protocols(
@@ -111,7 +112,9 @@ def check_protocols(
         rows.append(_judged(curves, protocol, question))
     good = [row for row in rows if row.within]
     fewest = min(good, key=lambda row: (row.points, row.last_mv - row.first_mv), default=None)
-    return ProtocolCheck(question=question, rows=Table(ProtocolRow, rows), advised=fewest)
+    return ProtocolCheck(
+        question=question, rows=Table(ProtocolRow, rows), advised=fewest, curves=tuple(curves)
+    )
 
 
 def _protocols(

@@ -39,6 +39,7 @@ def protocols_json(found: ProtocolCheck) -> str:
     document = {
         "schema": PROTOCOLS_SCHEMA,
         "question": dataclasses.asdict(found.question),
+        "curves": list(found.curves),
         "protocols": [dataclasses.asdict(row) for row in found.rows],
         "advised": None if found.advised is None else dataclasses.asdict(found.advised),
     }

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from typing import IO
 
 from rich.text import Text
@@ -9,9 +10,10 @@ from rich.text import Text
 from ..protocols import ProtocolCheck, ProtocolQuestion, ProtocolRow
 from .legend import percent
 from .rounding import number, with_uncertainty
-from .terminal import plain_grid, screen_on
+from .terminal import plain_grid, plus_minus_of, screen_on
 
-_COLUMNS = (
+_COLUMNS = (  # as many as 80 columns hold
+    ("", False),
     ("range (mV)", True),
     ("step", True),
     ("points", True),
@@ -21,9 +23,9 @@ _COLUMNS = (
     ("scatter", True),
     ("stated", True),
     ("lost", True),
-    ("within", False),
-    ("bias of", False),
+    ("curve", True),
 )
+_WITHIN = "*"
 
 
 def print_protocols(found: ProtocolCheck, stream: IO[str]) -> None:
@@ -36,29 +38,31 @@ def print_protocols(found: ProtocolCheck, stream: IO[str]) -> None:
     stream : text stream
         At a terminal the table is fitted to its width; elsewhere the text is plain and never cut.
     """
-    grid = plain_grid(_COLUMNS, folding=("bias of",))
-    for row in found.rows:
-        grid.add_row(*map(Text, _line(row)))
+    numbers = {curve: str(number) for number, curve in enumerate(found.curves, start=1)}
     with screen_on(stream) as screen:
+        plus_minus = plus_minus_of(screen)
+        grid = plain_grid(_COLUMNS)
+        for row in found.rows:
+            grid.add_row(*map(Text, _line(row, numbers[row.curve], plus_minus)))
         screen.print(grid)
         screen.print()
-        for line in (_advice(found), "", *_legend(found.question)):
+        for line in (_advice(found), "", *_legend(found.question, plus_minus), "", *_curves(numbers)):
             screen.print(Text(line))
 
 
-def _line(row: ProtocolRow) -> list[str]:
+def _line(row: ProtocolRow, curve: str, plus_minus: str) -> list[str]:
     return [
+        _WITHIN if row.within else "",
         f"{row.first_mv:g} to {row.last_mv:g}",
         f"{row.step_mv:g}",
         str(row.points),
         f"{row.share_outside:.2%}",
         "-" if row.bias_mv is None else f"{number(row.bias_mv, 2)}",
-        with_uncertainty(row.noisy_bias_mv, row.noisy_bias_sem_mv, "+/-") or "-",
+        with_uncertainty(row.noisy_bias_mv, row.noisy_bias_sem_mv, plus_minus) or "-",
         number(row.scatter_mv, 2) or "-",
         number(row.stated_mv, 2) or "-",
         "-" if row.lost is None else f"{row.lost:.0%}",
-        "yes" if row.within else "no",
-        row.curve,
+        curve,
     ]
 
 
@@ -75,15 +79,20 @@ def _advice(found: ProtocolCheck) -> str:
     )
 
 
-def _legend(question: ProtocolQuestion) -> list[str]:
+def _curves(numbers: Mapping[str, str]) -> list[str]:
+    return ["Curves that were tried:", *(f"{number:>3}  {curve}" for curve, number in numbers.items())]
+
+
+def _legend(question: ProtocolQuestion, plus_minus: str) -> list[str]:
     return [
-        f"Bounds: {question.bound_mv:g} mV on bias and stated uncertainty, {percent(question.share)} of the "
-        "charge outside at either end",
+        f"{_WITHIN}: within the bounds, which are {question.bound_mv:g} mV on bias and stated uncertainty, "
+        f"{percent(question.share)} of the charge outside at either end; whether a membrane bears the range "
+        "is not judged",
         f"Constructs of {question.cells} cells, medians scattering by {question.cell_sd_mv:g} mV, noise of "
         f"{percent(question.noise)} of the charge at each point, {question.trials} constructs a curve",
         "outside: charge beyond the worse end, of the curve that reaches furthest",
-        "bias, with noise: mean error of a construct's median in mV, of the curve named last, +/- its "
-        "standard error; - where the bounds were left before noise was added",
+        "bias, with noise: mean error of a construct's median in mV, of the curve numbered last, "
+        f"{plus_minus} its standard error; - where the bounds were left before noise was added",
         "scatter: standard deviation that noise gives that median, in mV",
         "stated: largest uncertainty in mV that a reading would state for shape and extrapolation",
         "lost: cells that would be set aside or flagged coarse-steps",

@@ -56,7 +56,8 @@ def screen_on(stream: IO[str]) -> Iterator[Console]:
     stream.writelines(f"{line.rstrip()}\n" for line in captured.get().splitlines())
 
 
-def _plus_minus(screen: Console) -> str:
+def plus_minus_of(screen: Console) -> str:
+    """The sign between a value and its uncertainty, spelt where the screen lacks it."""
     try:
         "±".encode(screen.encoding)
     except (UnicodeEncodeError, LookupError):
@@ -192,7 +193,7 @@ def _show_result(result: Result, screen: Console) -> None:
         [f"Interaction energies I in {unit_phrase(result.settings)}{_at(result.settings)}, strongest first"],
     )
     screen.print()
-    screen.print(_interaction_grid(result, marks, _plus_minus(screen), screen.width))
+    screen.print(_interaction_grid(result, marks, plus_minus_of(screen), screen.width))
     _print_flags(screen, relevant, marks)
     screen.print()
     orders = {row.order for row in result.interactions}
@@ -275,7 +276,7 @@ def _show_survey(survey: Survey, screen: Console) -> None:
         [("construct", False), ("cells", True), ("Vm (mV)", True), ("Q (e0)", True), ("flags", False)]
     )
     for row in survey.constructs:
-        grid.add_row(*_survey_line(row, marks, _plus_minus(screen)))
+        grid.add_row(*_survey_line(row, marks, plus_minus_of(screen)))
     screen.print(grid)
     _show_cells(screen, survey, marks)
     _print_flags(screen, survey.flags, marks)
