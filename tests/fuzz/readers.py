@@ -368,10 +368,15 @@ def _check_sound(campaign: object) -> Campaign:
     return campaign
 
 
+def _squeezed(data: bytes) -> bytes:
+    """The plain letters of a text, which may be UTF-16 or UTF-32."""
+    return data.replace(b"\0", b"")
+
+
 def _check_table(data: bytes) -> Callable[[object], None]:
     def check(found: object) -> None:
         campaign = _check_sound(found)
-        if b"_\0V" in data or b"_V" in data or b"_pC" in data or b"_nm" in data:  # scaled when read
+        if any(unit in _squeezed(data) for unit in (b"_V", b"_pC", b"_nm")):  # scaled when read
             return
         known = numbers_in(data)
         strange = [value for value in _measured(campaign) if value not in known]
@@ -429,10 +434,11 @@ def _check_structure(data: bytes) -> Callable[[object], None]:
 
     def check(found: object) -> None:
         campaign = _check_sound(found)
-        places = [tuple(map(float, three)) for three in _threes(data) if all(map(_DECIMAL.fullmatch, three))]
+        text = _squeezed(data)
+        places = [tuple(map(float, three)) for three in _threes(text) if all(map(_DECIMAL.fullmatch, three))]
         for one in campaign.distances:
             assert 1 <= one.angstrom <= 500
-            if b"_atom_site" in data and _IN_ORDER not in data:
+            if b"_atom_site" in text and _IN_ORDER not in text:
                 continue
             apart = (math.dist(a, b) for i, a in enumerate(places) for b in places[:i])
             assert any(math.isclose(one.angstrom, distance, abs_tol=1e-4) for distance in apart), one

@@ -113,10 +113,24 @@ def test_values_that_cannot_be(column: str, value: str, match: str, tmp_path: Pa
     assert_refused(path, file="charges.csv", row=3, column=column, match=match)
 
 
-def test_a_wrong_unit_is_told_once(tmp_path: Path) -> None:
-    path = folder(tmp_path / "a", MEASURED, charges=changed(RAW, 1, "charge_pC", "charge_nC"))
-    match = r"8 of 8 charges impossible for one channel, the first 1.25e\+04 e0 in row 2.*correct the unit"
-    assert_refused(path, file="charges.csv", row=1, column="charge_nC", match=match)
+@pytest.mark.parametrize(("unit", "first"), [("nC", r"1.25e\+04"), ("fC", "0.0125")])
+def test_a_wrong_unit_is_told_once(unit: str, first: str, tmp_path: Path) -> None:
+    path = folder(tmp_path / "a", MEASURED, charges=changed(RAW, 1, "charge_pC", f"charge_{unit}"))
+    match = rf"8 of 8 charges impossible for one channel, the first {first} e0 in row 2.*correct the unit"
+    assert_refused(path, file="charges.csv", row=1, column=f"charge_{unit}", match=match)
+
+
+@pytest.mark.parametrize("traces", [4, 5])
+def test_few_traces_of_a_charge_are_poor_cells_and_most_are_a_wrong_unit(traces: int, tmp_path: Path) -> None:
+    rows = RAW
+    for row in range(2, 2 + traces):
+        rows = changed(rows, row, "charge_pC", "0.048")  # 0.0999 e0 a channel
+    path = folder(tmp_path / "a", MEASURED, charges=rows)
+    if traces == 4:  # half of them
+        assert read(path).construct("WT").charge_replicates[0].charge_e0 == pytest.approx(0.0999, rel=1e-3)
+    else:
+        match = "5 of 8 charges impossible for one channel, the first 0.0999 e0 in row 2; .* at least 0.1 e0"
+        assert_refused(path, file="charges.csv", row=1, column="charge_pC", match=match)
 
 
 @pytest.mark.parametrize(

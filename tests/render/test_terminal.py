@@ -1,5 +1,6 @@
 """What a person reads: fitted at a terminal, uncut in a pipe, labels always plain text."""
 
+import dataclasses
 import io
 import re
 
@@ -9,6 +10,7 @@ from builders import campaign, construct
 from cornerwise.campaign import Campaign, StatedCharge
 from cornerwise.coupling import couple
 from cornerwise.errors import DataRefused, Origin, Problem
+from cornerwise.flags import Flag, FlagCode
 from cornerwise.render.problems import print_problems
 from cornerwise.render.terminal import print_result, print_survey
 from cornerwise.surveying import survey
@@ -124,3 +126,23 @@ def test_every_problem_is_shown_under_its_place() -> None:
     assert "2 problems" in text
     for part in ("curves.csv, row 7, column voltage_mV", "600", "check the unit", "'sede'", "write seed"):
         assert part in text
+
+
+@pytest.mark.parametrize("unit", ["kcal/mol", "kJ/mol"])
+def test_numbers_of_flags_told_in_short_have_their_unit(unit: str) -> None:
+    def flags(code: FlagCode, *values: float) -> list[Flag]:
+        return [
+            Flag(code=code, subject=f"E{n}A", construct=f"E{n}A", message="first.", value=value)
+            for n, value in enumerate(values)
+        ]
+
+    told = survey(_campaign(energy_unit=unit))
+    shown = [*flags("few-cells", 3, 2), *flags("midpoint-misleads", 4.0, -0.95712)]
+    shown += [*flags("charge-shift", 0.6, 0.7), *flags("mixed-ranges", 70.0, 80.0)]
+    stream = io.StringIO()
+    print_survey(dataclasses.replace(told, flags=tuple(shown)), stream)
+    short = re.findall(r"([\w-]+): first\.; likewise E1A \((.*)\)", stream.getvalue())
+    assert dict(short) == {
+        "few-cells": "2 cells", "midpoint-misleads": f"-0.957 {unit}", "charge-shift": "0.700 times",
+        "mixed-ranges": "80 mV",
+    }  # fmt: skip

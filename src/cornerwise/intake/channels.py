@@ -16,9 +16,10 @@ from ..units import ChargeUnit, elementary_charges
 from . import allowed
 from .findings import Findings, nearest, shown
 from .header import Field, RawTable
-from .table import BoolArray, Table
+from .table import BoolArray, IntArray, Table
 
 FEWEST_CHANNELS = 1
+TRACE_E0 = 0.1  # per channel; one charge that crosses a tenth of the field, far below any sensor
 RAW = "raw charge"
 RAW_UNITS: tuple[ChargeUnit, ...] = ("fC", "pC", "nC")
 CHARGE = Field(
@@ -164,19 +165,15 @@ def _counts_sem(table: Table, channels: FloatArray) -> FloatArray:
 
 def _possible(table: Table, charge_e0: FloatArray, is_raw: BoolArray) -> FloatArray:
     """Refuse charges no channel can move and put NaN in their place; a wrong unit is told once."""
-    wrong = np.flatnonzero(allowed.outside(CHARGE.values, charge_e0))
-    raw = wrong[is_raw[wrong]]
-    count = int(np.count_nonzero(is_raw))
-    once = len(raw) > max(2, count // 2)
+    impossible = allowed.outside(CHARGE.values, charge_e0)
+    # A single trace of a charge may be a poor cell; most of a table are a unit a thousand times too small.
+    is_sure = RAW in table and table.unit(RAW) in RAW_UNITS
+    traces = is_raw & (charge_e0 < TRACE_E0) & is_sure
+    most = max(2, int(np.count_nonzero(is_raw)) // 2)
+    once = int(np.count_nonzero(is_raw & (impossible | traces))) > most
+    wrong = np.flatnonzero(impossible | traces if once else impossible)
     if once:
-        first = int(raw[0])
-        table.findings.add(
-            table.raw.header_origin(table.header(RAW)),
-            found=f"{len(raw)} of {count} charges impossible for one channel, the first "
-            f"{charge_e0[first]:.3g} e0 in row {table.raw.rows[first]}",
-            expected=_EXPECTED,
-            remedy="correct the unit in the header, or the numbers of channels",
-        )
+        _refuse_unit(table, charge_e0, wrong[is_raw[wrong]], int(np.count_nonzero(is_raw)))
     for index in wrong.tolist():
         found, remedy = (
             f"{charge_e0[index]:g} e0",
@@ -191,3 +188,15 @@ def _possible(table: Table, charge_e0: FloatArray, is_raw: BoolArray) -> FloatAr
     possible = charge_e0.copy()
     possible[wrong] = np.nan
     return possible
+
+
+def _refuse_unit(table: Table, charge_e0: FloatArray, wrong: IntArray, count: int) -> None:
+    """Refuse the header of raw charge of which most values, those in the rows `wrong`, cannot be right."""
+    first = int(wrong[0])
+    table.findings.add(
+        table.raw.header_origin(table.header(RAW)),
+        found=f"{len(wrong)} of {count} charges impossible for one channel, the first "
+        f"{charge_e0[first]:.3g} e0 in row {table.raw.rows[first]}",
+        expected=f"{_EXPECTED}, most of them at least {TRACE_E0:g} e0",
+        remedy="correct the unit in the header, or the numbers of channels",
+    )

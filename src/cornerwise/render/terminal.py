@@ -38,6 +38,18 @@ _VERDICT_STYLE = {
 }
 
 
+_FLAG_UNITS = {  # of the number that raised a flag, where that is no energy
+    "few-cells": "cells",
+    "single-batch": "batch",
+    "charge-shift": "times",
+    "charge-nonadditive": "e0",
+    "charge-methods-differ": "e0",
+    "charge-lower-bound": "e0",
+    "charge-implausible": "e0",
+    "mixed-ranges": "mV",
+    "mixed-protocol": "protocols",
+}
+
 WIDE = 100  # columns from which a long name of a cycle has room
 NARROW_NAME = 12  # columns of such a name elsewhere; two mutations fit
 _NARROWEST = 80  # columns in which the coupling table keeps its numbers whole
@@ -121,7 +133,7 @@ def _interaction_grid(result: Result, marks: dict[str, str], plus_minus: str, wi
     return grid
 
 
-def _flag_lines(flags: Sequence[Flag], marks: dict[str, str]) -> list[tuple[str, str]]:
+def _flag_lines(flags: Sequence[Flag], marks: dict[str, str], energy_unit: str) -> list[tuple[str, str]]:
     """Mark and sentence of each code: the first subject in full, the others with their number."""
     lines = []
     for code, mark in marks.items():
@@ -131,17 +143,23 @@ def _flag_lines(flags: Sequence[Flag], marks: dict[str, str]) -> list[tuple[str,
                 groups.setdefault(flag.construct or flag.subject, []).append(flag)
         (_, first), *others = groups.items()
         more = f" ({len(first) - 1} more of its cells too)" if len(first) > 1 else ""
-        likewise = f"; likewise {', '.join(_short(*other) for other in others)}" if others else ""
+        likewise = (
+            f"; likewise {', '.join(_short(*other, energy_unit) for other in others)}" if others else ""
+        )
         named = first[0].message if first[0].cell is None else f"{first[0].subject}: {first[0].message}"
         lines.append((mark, f"{code}: {named}{more}{likewise}"))
     return lines
 
 
-def _short(subject: str, flags: Sequence[Flag]) -> str:
+def _short(subject: str, flags: Sequence[Flag], energy_unit: str) -> str:
     """A subject with what raised the flag: its number, or how many of its cells carry it."""
+    value, unit = flags[0].value, _FLAG_UNITS.get(flags[0].code, "")
     if flags[0].cell is not None:
         return f"{subject} ({len(flags)} cell{'s' if len(flags) > 1 else ''})"
-    return subject if flags[0].value is None else f"{subject} ({flags[0].value:.3g})"
+    if value is None:
+        return subject
+    digits = f"{value:.0f}" if value == round(value) else f"{value:#.3g}".removesuffix(".")
+    return f"{subject} ({digits} {unit or energy_unit})"
 
 
 def print_lines(screen: Console, lines: Sequence[str], indent: int = 2) -> None:
@@ -159,9 +177,9 @@ def hanging(screen: Console, head: str, text: str) -> None:
     screen.print(grid)
 
 
-def _print_flags(screen: Console, flags: Sequence[Flag], marks: dict[str, str]) -> None:
+def _print_flags(screen: Console, flags: Sequence[Flag], marks: dict[str, str], energy_unit: str) -> None:
     grid = Grid.grid(padding=(0, 1, 0, 0))
-    for mark, sentence in _flag_lines(flags, marks):
+    for mark, sentence in _flag_lines(flags, marks, energy_unit):
         grid.add_row(Text(f" {mark}"), Text(sentence))
     if marks:
         screen.print()
@@ -194,7 +212,7 @@ def _show_result(result: Result, screen: Console) -> None:
     )
     screen.print()
     screen.print(_interaction_grid(result, marks, plus_minus_of(screen), screen.width))
-    _print_flags(screen, relevant, marks)
+    _print_flags(screen, relevant, marks, result.settings.energy_unit)
     screen.print()
     orders = {row.order for row in result.interactions}
     reference = result.settings.reference_voltage_mv
@@ -279,7 +297,7 @@ def _show_survey(survey: Survey, screen: Console) -> None:
         grid.add_row(*_survey_line(row, marks, plus_minus_of(screen)))
     screen.print(grid)
     _show_cells(screen, survey, marks)
-    _print_flags(screen, survey.flags, marks)
+    _print_flags(screen, survey.flags, marks, survey.settings.energy_unit)
     screen.print()
     count = len(survey.cycles)
     lines = [f"{count} complete cycle{'' if count == 1 else 's'}: {', '.join(survey.cycles)}"]
