@@ -15,6 +15,7 @@ from cornerwise.measurements import Measurement
 from cornerwise.mutations import Cycle, find_cycles
 from cornerwise.quantities import Summary
 from cornerwise.sources import linear
+from cornerwise.units import EnergyUnit
 
 LABELS = ("WT", "A1G", "C2S", "A1G/C2S")
 SIGNS = (1, -1, -1, 1)
@@ -118,6 +119,24 @@ def test_own_charges_and_shortcut_bias() -> None:
     of_charges = sum((KCAL * s * q.sem) ** 2 for s, q in zip(sensitivities, charges, strict=True))
     of_medians = sum((KCAL * (q.mean - 13) * u) ** 2 for q, u in zip(charges, sems, strict=True))
     assert book.ledger.spread(found.shortcut_bias).variance == pytest.approx(of_charges + of_medians)
+
+
+@pytest.mark.parametrize("unit", ["kcal/mol", "meV"])
+def test_energy_of_separate_cells_is_the_product_of_means(unit: EnergyUnit) -> None:
+    rng = np.random.default_rng(1)
+    v, q = rng.normal(-40, 3, 6), rng.normal(13, 1, 5)
+    scale = {"kcal/mol": KCAL, "meV": 1.0}[unit]
+    book = _book([measurement("WT", cells(v), cells(q, "n"))], energy_unit=unit)
+    energy = book.energies["WT"].energy
+    variance = (q.mean() ** 2 * np.var(v, ddof=1) / 6) + (v.mean() ** 2 * np.var(q, ddof=1) / 5)
+    assert energy.value == pytest.approx(scale * q.mean() * v.mean(), rel=1e-12)
+    assert book.ledger.spread(energy).variance == pytest.approx(scale**2 * variance, rel=1e-12)
+
+
+def test_one_cell_that_shows_both_has_no_covariance_to_add() -> None:
+    v, q = {"c0": -40.0, "a": -36.0}, {"c0": 12.0, "d": 14.0}
+    energy = _book([measurement("WT", v, q)]).energies["WT"].energy
+    assert energy.value == pytest.approx(KCAL * 13.0 * -38.0, rel=1e-12)
 
 
 def test_energy_of_paired_cells_is_formed_cell_by_cell() -> None:

@@ -3,6 +3,7 @@ import math
 import numpy as np
 import pytest
 from builders import cells
+from scipy import stats
 
 from cornerwise.ledger import Ledger
 from cornerwise.quantities import Sample
@@ -14,6 +15,7 @@ from cornerwise.sources import (
     cell_source,
     linear,
     log_ratio,
+    t_factors,
 )
 
 V, Q, X = Component("median", "WT"), Component("charge", "WT"), Component("median", "A1G")
@@ -158,3 +160,106 @@ def test_log_ratio_to_first_order() -> None:
     assert ratio.value == pytest.approx(math.log(0.8))
     assert ledger.spread(ratio).variance == pytest.approx(0.05**2 + 0.03**2)
     assert ledger.spread(log_ratio(_one(V, 8.0), _one(V, 8.0))).variance == 0
+
+
+def _partly(seed: int, lone_v: int, both: int, lone_q: int) -> CellSource:
+    rng = np.random.default_rng(seed)
+    n = lone_v + both + lone_q
+    v = rng.normal(0, 2, n)
+    q = 0.2 * v + rng.normal(0, 1, n)
+    vs = {f"c{i}": v[i] for i in range(lone_v + both)}
+    qs = {f"c{i}": q[i] for i in range(lone_v, n)}
+    return cell_source("partly", {V: _sample(vs), Q: _sample(qs)})
+
+
+def _centring(members: np.ndarray) -> np.ndarray:
+    m = members.astype(float)
+    return np.diag(m) - np.outer(m, m) / m.sum()
+
+
+@pytest.mark.parametrize(("lone_v", "both", "lone_q"), [(2, 3, 3), (1, 4, 0), (3, 2, 1), (4, 6, 2)])
+@pytest.mark.parametrize("weights", [(1.5, 0.5), (1.0, -3.0)])
+def test_degrees_of_freedom_of_partly_shared_cells(
+    weights: tuple[float, float], lone_v: int, both: int, lone_q: int
+) -> None:
+    # The variance is a quadratic form z'Az of all numbers z. For normal cells with covariance S its own
+    # variance is 2 tr(ASAS) (a standard result on quadratic forms of normal variables; from memory).
+    source = _partly(13, lone_v, both, lone_q)
+    shown = source.shown
+    n_v, n_q = shown.sum(axis=1)
+    shared = shown[0] & shown[1]
+    a, b = weights[0] / n_v, weights[1] / n_q
+    cross = 2 * a * b * both * _centring(shared) / (both - 1) / 2
+    form = np.block([
+        [a * a * n_v * _centring(shown[0]) / (n_v - 1), cross],
+        [cross, b * b * n_q * _centring(shown[1]) / (n_q - 1)],
+    ])  # fmt: skip
+    (var_v, cov), (_, var_q) = source.covariance
+    assert cov**2 < 0.99 * var_v * var_q  # within what the two variances allow
+    pairs = np.diag(shared.astype(float)) * cov
+    covariance = np.block([
+        [np.diag(shown[0] * var_v), pairs], [pairs, np.diag(shown[1] * var_q)]
+    ])  # fmt: skip
+    z = np.where(shown, source.values, 0.0).ravel()
+    product = form @ covariance
+    variance = z @ form @ z
+    expected = 2 * variance**2 / (2 * np.trace(product @ product))
+    spread = source.spread(list(weights))
+    assert 1 < expected < n_v + n_q - 2
+    assert spread.variance == pytest.approx(variance, rel=1e-12)
+    assert spread.dof == pytest.approx(expected, rel=1e-12)
+
+
+def test_degrees_of_freedom_of_partly_shared_cells_stay_possible() -> None:
+    alike = cell_source("alike", {V: _sample({"a": 1.0, "b": 1.0}), Q: _sample(cells([2.0] * 3, "b"))})
+    assert alike.spread([1.0, 1.0]) == (0.0, 2 + 3 - 2)
+    few = cell_source("few", {V: _sample({"a": 1.0, "b": 3.0}), Q: _sample({"b": 2.0, "c": 2.1})})
+    spread = few.spread([1.0, 1.0])
+    assert spread.variance == pytest.approx(1.0 + 0.05**2)
+    assert 1 <= spread.dof <= 2
+    # Where the two halves nearly cancel, little is known of what is left: one degree of freedom at least.
+    v, q = {"c0": 0.0, "c1": 10.0, "a": 5.0}, {"c0": 0.0, "c1": -10.0, "d": -5.0}
+    assert cell_source("opposed", {V: _sample(v), Q: _sample(q)}).spread([1.0, 1.0]).dof == 1
+
+
+def test_one_cell_of_a_number_that_others_share_shows_no_scatter() -> None:
+    source = cell_source("one", {V: _sample({"a": 1.0}), Q: _sample({"a": 2.0, "b": 2.2, "c": 2.3})})
+    spread = source.spread([1.0, 1.0])
+    assert math.isnan(spread.variance)
+    assert math.isnan(spread.dof)
+
+
+def test_deviations_of_a_stated_number_are_normal_of_its_uncertainty() -> None:
+    source = StatedSource(name="stated", component=V, mean=40.0, std_uncertainty=0.5)
+    drawn = source.deviations_drawn([-4.0], lambda _: np.random.default_rng(1), 100_000)
+    assert drawn.shape == (100_000,)
+    assert drawn.mean() == pytest.approx(0.0, abs=0.03)
+    assert drawn.std() == pytest.approx(2.0, rel=0.01)
+
+
+@pytest.mark.parametrize("dof", [0.5, 1.0, 7.0])
+def test_factors_turn_normal_replicates_into_students_t(dof: float) -> None:
+    rng = np.random.default_rng(2)
+    t = rng.standard_normal(20_000) * t_factors(dof, rng, 20_000)
+    assert stats.kstest(t, stats.t(dof).cdf).pvalue > 1e-3
+
+
+def test_factors_at_the_ends() -> None:
+    rng = np.random.default_rng(3)
+    assert np.array_equal(t_factors(math.inf, rng, 3), np.ones(3))
+    for dof in (0.0, -1.0, math.nan):
+        none = t_factors(dof, rng, 3)
+        assert none.shape == (3,)
+        assert np.isnan(none).all()
+
+
+def test_conservative_draws_of_partly_shared_cells() -> None:
+    source = _partly(12, 4, 9, 5)  # 13 and 14 cells, 9 of them the same
+    drawn = source.conservative_draws(np.random.default_rng(5), 400_000)
+    n_v, n_q = 13, 14
+    (var_v, cov), (_, var_q) = source.covariance
+    of_means = np.array([[var_v / n_v, cov * 9 / (n_v * n_q)], [cov * 9 / (n_v * n_q), var_q / n_q]])
+    dof = n_v - 1  # of the fewer cells
+    assert np.cov(drawn) == pytest.approx(of_means * dof / (dof - 2), rel=0.03)
+    means = [row[seen].mean() for row, seen in zip(source.values, source.shown, strict=True)]
+    assert drawn.mean(axis=1) == pytest.approx(means, abs=0.01)

@@ -44,10 +44,6 @@ class BatchMeans:
         """The mean of the batch means less the mean of all cells."""
         return float(np.sum(np.asarray(gradient) * self._shift))
 
-    def draws(self, rng: np.random.Generator, replicates: int) -> FloatArray:
-        """Bootstrap replicates of the means of batch means, batches resampled."""
-        return self._means.draws(rng, replicates)
-
     def deviations_drawn(self, gradient: Sequence[float], stream: Stream, replicates: int) -> FloatArray:
         """Bootstrap replicates of the weighted sum, batches resampled."""
         return self._means.deviations_drawn(gradient, stream, replicates)
@@ -58,10 +54,6 @@ class BatchMeans:
         named = Component(first.kind, f"{first.construct} by batch")
         (errors,) = self._means.footprint(gradient).values()
         return {named: errors}
-
-    def conservative_draws(self, rng: np.random.Generator, replicates: int) -> FloatArray:
-        """Multivariate Student's t replicates of the means of batch means."""
-        return self._means.conservative_draws(rng, replicates)
 
 
 class Blocks:
@@ -151,7 +143,7 @@ class Blocks:
     def _scatter(self, residuals: FloatArray) -> tuple[FloatArray, FloatArray]:
         """Variance of one cell of each construct, and its degrees of freedom."""
         squares, dof = self._by_construct(residuals**2), self._dof
-        own = dof >= _OWN_SCATTER_DOF
+        own = dof >= _OWN_SCATTER_DOF - _ROUNDING
         pooled = squares.sum() / dof.sum()
         variances = np.where(own, squares / np.where(own, dof, 1.0), pooled)
         return variances, np.where(own, dof, dof.sum())
@@ -171,10 +163,6 @@ class Blocks:
         """The least squares estimate less that from plain means; 0 for complete blocks."""
         plain = self.signs[self.construct] / self._counts[self.construct]
         return float(np.sum((self.weights - plain) * self._values(gradient)))
-
-    def draws(self, rng: np.random.Generator, replicates: int) -> FloatArray:
-        """Not available: only comparisons can be drawn."""
-        raise NotImplementedError("draw deviations of a comparison instead")
 
     def deviations_drawn(self, gradient: Sequence[float], stream: Stream, replicates: int) -> FloatArray:
         """Bootstrap replicates of the comparison: residuals resampled within construct.
@@ -212,10 +200,6 @@ class Blocks:
         scale = self.signs * np.sqrt(self._by_construct(self.weights**2) / self._counts)
         errors = self._scaled_residuals(gradient) * scale[self.construct]
         return {corner.components[0]: errors[self.construct == k] for k, corner in enumerate(self.corners)}
-
-    def conservative_draws(self, rng: np.random.Generator, replicates: int) -> FloatArray:
-        """Not available: only comparisons can be drawn."""
-        raise NotImplementedError("draw deviations of a comparison instead")
 
 
 def weighted_sums(

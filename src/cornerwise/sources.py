@@ -16,7 +16,7 @@ from typing import Literal, NamedTuple, Protocol
 import numpy as np
 from numpy.typing import NDArray
 
-from .intervals import Interval, t_interval, t_p_value
+from .intervals import Interval, t_interval
 from .quantities import Sample, Summary
 
 FloatArray = NDArray[np.float64]
@@ -72,11 +72,6 @@ class Derived:
         spread = ledger.spread(self)
         return t_interval(self.value, math.sqrt(spread.variance), spread.dof, confidence)
 
-    def p_value(self, ledger: Spreads) -> float:
-        """Two-sided p value against 0."""
-        spread = ledger.spread(self)
-        return t_p_value(self.value, math.sqrt(spread.variance), spread.dof)
-
 
 def linear(terms: Iterable[tuple[float, Derived]]) -> Derived:
     """Weighted sum of derived quantities; what they share is added before it is squared."""
@@ -120,10 +115,6 @@ class Source(Protocol):
         """What its estimate of ``sum(gradient * components)`` adds to that from the plain means of cells."""
         ...
 
-    def draws(self, rng: np.random.Generator, replicates: int) -> FloatArray:
-        """Joint replicates of the components' means, shape (n_components, replicates)."""
-        ...
-
     def deviations_drawn(self, gradient: Sequence[float], stream: Stream, replicates: int) -> FloatArray:
         """Replicates of ``sum(gradient * components)`` less its estimate, shape (replicates,)."""
         ...
@@ -134,10 +125,6 @@ class Source(Protocol):
         Products of two footprints, summed, are the covariance of two quantities; the sum of squares is the
         squared standard uncertainty.
         """
-        ...
-
-    def conservative_draws(self, rng: np.random.Generator, replicates: int) -> FloatArray:
-        """As `draws`, from Student's t distributions: shape (n_components, replicates)."""
         ...
 
 
