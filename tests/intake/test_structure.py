@@ -335,6 +335,9 @@ DAMAGED = {
     "cut.pdb": (ONE[: len(ONE) // 2], "coordinate|END"),
     "cut_between_lines.pdb": (ATOMS, "'TER' as the last line; expected the record END"),
     "letter.pdb": (ONE.replace(NH2, "   2.000   3.0O0   6.000"), "row 15.*the coordinate '   3.0O0'"),
+    # What is a blank to one reader is none to the next, which then reads 0.
+    "control.pdb": (ONE.replace(NH2, "   2.000 \x1d 3.000   6.000"), r"row 15.*the coordinate .*3\.000"),
+    "tab.pdb": (ONE.replace(NH2, "   2.000 \t 3.000   6.000"), r"row 15.*the coordinate .*3\.000"),
     "blank.pdb": (ONE.replace(NH2, "   2.000           6.000"), "row 15.*the coordinate nothing"),
     "not_a_number.pdb": (ONE.replace(NH2, "   2.000     nan   6.000"), "'     nan'; expected a number"),
     "number.pdb": (ONE.replace("A 212 ", "A 2x2 "), "the residue number ' 2x2'"),

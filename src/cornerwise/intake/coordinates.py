@@ -202,7 +202,7 @@ def _of_pdb(decoded: str) -> _Atoms:
             if not (_WHOLE_NUMBER.fullmatch(number) or _WITH_LETTERS.fullmatch(number)):
                 raise _Broken(f"the residue number {shown(number)}", "a whole number", row=row)
             for start, end in _COORDINATE_COLUMNS:
-                if len(line) < end or not _NUMBER.fullmatch(line[start:end].strip()):
+                if len(line) < end or not _NUMBER.fullmatch(line[start:end].strip(" ")):
                     raise _Broken(f"the coordinate {shown(line[start:end])}", "a number", row=row)
     last = next((line.rstrip() for line in reversed(lines) if line.strip()), "")
     if last != "END":
