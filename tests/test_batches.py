@@ -2,6 +2,7 @@
 
 import math
 from collections.abc import Sequence
+from dataclasses import replace
 
 import numpy as np
 import pytest
@@ -9,7 +10,7 @@ import statsmodels.api as sm
 from builders import batched, campaign, construct, measurement
 from scipy import stats
 
-from cornerwise.batches import alone, regroup, units_notes
+from cornerwise.batches import Units, alone, regroup, units_notes
 from cornerwise.blocks import Blocks
 from cornerwise.campaign import Settings, StatedCharge
 from cornerwise.coupling import couple
@@ -262,3 +263,43 @@ def test_coverage_with_batch_effects_of_twice_the_scatter(rule: str) -> None:
         covered += not found.energy.interval(found.ledger, 0.95).excludes(truth)
     assert 0.92 <= covered / 400 <= 0.99
     assert stats.binomtest(covered, 400, 0.95).pvalue > 1e-4
+
+
+@pytest.mark.parametrize(
+    ("cycles", "sizes", "told"),
+    [
+        (
+            ["A1G/C2S"],
+            [(2, 16)],
+            "interaction of A1G/C2S (medians): shared; cells are the units (2 batches, 16 cells)",
+        ),
+        (
+            ["one", "two", "two", "three"],
+            [(1, 1), (1, 1), (1, 1), (1, 1)],
+            "interaction of one, two, three (medians): shared; cells are the units (1 batch, 1 cell)",
+        ),
+        (
+            ["one", "two", "three", "four"],
+            [(1, 8), (3, 6), (2, 9), (2, 9)],
+            "interaction of one, two and 2 more (medians): shared; cells are the units "
+            "(1 to 3 batches, 6 to 9 cells)",
+        ),
+    ],
+)
+def test_notes_name_few_and_count_many(cycles: list[str], sizes: list[tuple[int, int]], told: str) -> None:
+    counted = [
+        (name, (Units(family="medians", rule="cells", cells=cells, batches=batches, reason="shared"),))
+        for name, (batches, cells) in zip(cycles, sizes, strict=True)
+    ]
+    assert units_notes("interaction", counted) == (told,)
+
+
+def test_notes_keep_families_of_one_rule_together_and_rules_apart() -> None:
+    medians = Units(family="medians", rule="cells", cells=8, batches=2, reason="shared")
+    charges = replace(medians, family="charges")
+    own = replace(charges, rule="batch means", reason="own")
+    notes = units_notes("energy", [("WT", (medians, charges)), ("A1G", (medians, own))])
+    assert notes == (
+        "energy of WT, A1G (medians and charges): shared; cells are the units (2 batches, 8 cells)",
+        "energy of A1G (charges): own; batch means are the units (2 batches, 8 cells)",
+    )
