@@ -6,7 +6,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from cornerwise.intervals import Interval
+from cornerwise.intervals import Interval, t_p_value
 from cornerwise.ledger import Ledger
 from cornerwise.quantities import Quantity, Sample, Summary
 from cornerwise.sources import Component, Derived, Source, cell_source, linear, summary_source
@@ -32,8 +32,7 @@ class Known:
 
     def p_against(self, bound: float) -> float:
         """Two-sided p value against a bound."""
-        moved = Derived(value=self.derived.value - bound, sensitivities=self.derived.sensitivities)
-        return moved.p_value(self.ledger)
+        return t_p_value(self.derived.value - bound, self.u, self.dof)
 
     def one_sided(self, *bounds: float) -> tuple[float, ...]:
         """p values on the near side of each bound."""
