@@ -11,7 +11,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from .intervals import welch_satterthwaite
-from .sources import CellSource, Component, Derived, Part, Source, Spread, StatedSource, t_factors
+from .sources import Component, Derived, DrawnSource, Part, Source, Spread, t_factors
 from .streams import named_stream
 
 FloatArray = NDArray[np.float64]
@@ -125,9 +125,7 @@ class Ledger:
         number, column = self._place[component]
         if number not in self._draws:
             source = self.sources[number]
-            assert isinstance(
-                source, StatedSource | CellSource
-            )  # of cells in batches only comparisons are drawn
+            assert isinstance(source, DrawnSource)  # of cells in batches only comparisons are drawn
             rng = self._stream(source.components[0])
             draw = source.conservative_draws if self.conservative else source.draws
             self._draws[number] = draw(rng, self.replicates)

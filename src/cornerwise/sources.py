@@ -11,7 +11,7 @@ from __future__ import annotations
 import math
 from collections.abc import Callable, Iterable, Mapping, Sequence
 from dataclasses import dataclass, field
-from typing import Literal, NamedTuple, Protocol
+from typing import Literal, NamedTuple, Protocol, runtime_checkable
 
 import numpy as np
 from numpy.typing import NDArray
@@ -125,6 +125,19 @@ class Source(Protocol):
         Products of two footprints, summed, are the covariance of two quantities; the sum of squares is the
         squared standard uncertainty.
         """
+        ...
+
+
+@runtime_checkable
+class DrawnSource(Source, Protocol):
+    """A source whose components can be drawn one by one, not only a comparison of several constructs."""
+
+    def draws(self, rng: np.random.Generator, replicates: int) -> FloatArray:
+        """Joint replicates of the components' means, shape (n_components, replicates)."""
+        ...
+
+    def conservative_draws(self, rng: np.random.Generator, replicates: int) -> FloatArray:
+        """As `draws`, from Student's t distributions: shape (n_components, replicates)."""
         ...
 
 
