@@ -195,3 +195,27 @@ CHARGES3 = [13.0, 12.5, 13.3]
 )
 def test_minus_signs_are_set_before_numbers_and_between_terms(plain: str, read: str) -> None:
     assert typeset(plain) == read
+
+
+@pytest.mark.parametrize(
+    ("double", "verdict", "said"),
+    [
+        (-20.0, "coupled", "The only pair, E5A/R9Q, is coupled by more than 1 kcal/mol."),
+        (-42.0, "detected", "The only pair, E5A/R9Q, interacts, but is not shown to be coupled by more than"),
+        (-45.0, "uncoupled", "The only pair, E5A/R9Q, is shown not to be coupled by more than 1 kcal/mol."),
+    ],
+)
+def test_the_headline_of_a_single_pair(double: float, verdict: str, said: str) -> None:
+    medians = {"WT": -40.0, "E5A": -33.0, "R9Q": -52.0, "E5A/R9Q": double}
+    made = [construct(label, [m - 1, m, m + 0.7, m + 1.4]) for label, m in medians.items()]
+    found = couple(campaign(made, charge=StatedCharge(value_e0=10.0, sem_e0=0.1)))
+    assert found.interactions[0].interaction_verdict == verdict
+    assert typeset(said) in html.unescape(report_html(found))
+
+
+@pytest.mark.parametrize("charge", ["measured", "wild-type"])
+def test_measured_charges_that_enter_no_energy_are_told(charge: str) -> None:
+    made = [construct(label, [m - 1, m, m + 0.7], [13.0, 12.6, 13.2]) for label, m in MEDIANS.items()]
+    page = html.unescape(report_html(couple(campaign(made, charge=charge))))
+    told = "The charges that were measured of 7 mutants enter no energy"
+    assert (told in page) == (charge == "wild-type")

@@ -100,12 +100,24 @@ def _headline(cycles: Sequence[CycleView], threshold: str) -> str:
     coupled = sum(one.row.interaction_verdict == "coupled" for one in cycles)
     detected = sum(one.row.interaction_verdict == "detected" for one in cycles)
     kinds = "cycle" if any(one.row.order != 2 for one in cycles) else "pair"
+    if len(cycles) == 1:
+        return _headline_of_one(cycles[0].row, kinds, threshold)
     found = "None" if not coupled else str(coupled)
     verb = "are" if coupled > 1 else "is"
     text = f"{found} of {counted(len(cycles), kinds)} {verb} coupled by more than {threshold}"
     if not detected:
         return f"{text}."
     return f"{text}; {detected} more {'is' if detected == 1 else 'are'} detected."
+
+
+def _headline_of_one(row: InteractionRow, kind: str, threshold: str) -> str:
+    said = {
+        "coupled": f"is coupled by more than {threshold}",
+        "detected": f"interacts, but is not shown to be coupled by more than {threshold}",
+        "uncoupled": f"is shown not to be coupled by more than {threshold}",
+        "unresolved": "is unresolved: the data show neither an interaction nor that there is none",
+    }
+    return f"The only {kind}, {row.cycle}, {said[row.interaction_verdict]}."
 
 
 def _sureness(result: Result, cycles: Sequence[CycleView]) -> list[str]:
@@ -115,6 +127,13 @@ def _sureness(result: Result, cycles: Sequence[CycleView]) -> list[str]:
         f"Every interval is a {level} interval for that cycle alone, from the scatter of cells and from all "
         f"stated uncertainties{adjusted}."
     ]
+    unused = [row.construct for row in result.constructs if row.charge_verdict not in (None, "assumed")]
+    if unused and result.settings.charge != "measured":
+        sentences.append(
+            "One total charge serves every construct. The charges that were measured of "
+            f"{counted(len(unused), 'mutant')} enter no energy; they decide on charge verdicts and the "
+            "shortcut."
+        )
     untested = sum(any(one.verdict == "assumed" for one in view.row.corner_charges) for view in cycles)
     if untested:
         sentences.append(
