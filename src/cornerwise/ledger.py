@@ -5,7 +5,7 @@ from __future__ import annotations
 import math
 from collections.abc import Hashable, Iterator, Sequence
 from dataclasses import replace
-from typing import NamedTuple
+from typing import NamedTuple, cast
 
 import numpy as np
 from numpy.typing import NDArray
@@ -124,8 +124,8 @@ class Ledger:
         """Replicates of one component, shape (replicates,), jointly with all others."""
         number, column = self._place[component]
         if number not in self._draws:
-            source = self.sources[number]
-            assert isinstance(source, DrawnSource)  # of cells in batches only comparisons are drawn
+            # Of cells in batches only comparisons are drawn, by `linear_draws`.
+            source = cast(DrawnSource, self.sources[number])
             rng = self._stream(source.components[0])
             draw = source.conservative_draws if self.conservative else source.draws
             self._draws[number] = draw(rng, self.replicates)

@@ -11,7 +11,7 @@ from __future__ import annotations
 import math
 from collections.abc import Callable, Iterable, Mapping, Sequence
 from dataclasses import dataclass, field
-from typing import Literal, NamedTuple, Protocol, runtime_checkable
+from typing import Literal, NamedTuple, Protocol
 
 import numpy as np
 from numpy.typing import NDArray
@@ -128,7 +128,6 @@ class Source(Protocol):
         ...
 
 
-@runtime_checkable
 class DrawnSource(Source, Protocol):
     """A source whose components can be drawn one by one, not only a comparison of several constructs."""
 
