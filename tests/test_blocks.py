@@ -50,6 +50,25 @@ def test_what_leaves_out_a_corner_is_no_comparison() -> None:
     assert all(np.array_equal(footprint[key], expected[key]) for key in expected)
 
 
+def test_batch_means_of_two_numbers_of_the_same_cells() -> None:
+    days = ["a", "a", "a", "b", "b", "c"]
+    v, q = np.array([1.0, 2.0, 4.0, 8.0, 9.0, 3.0]), np.array([3.0, 1.0, 7.0, 2.0, 6.0, 5.0])
+    kinds = (Component("median", "w"), Component("charge", "w"))
+    cells = cell_source("w", {kind: batched(x, days) for kind, x in zip(kinds, (v, q), strict=True)})
+    means = BatchMeans(cells)
+    by_batch = np.array([[x[:3].mean(), x[3:5].mean(), x[5]] for x in (v, q)])
+    gradient = [2.0, -0.5]
+    (part,) = means.parts(gradient)
+    assert part.spread.variance == pytest.approx(np.var(gradient @ by_batch, ddof=1) / 3)
+    assert part.spread.dof == 2
+    assert part.name == "w in 3 batches"
+    shift = by_batch.mean(axis=1) - np.array([v.mean(), q.mean()])
+    assert means.shift(gradient) == pytest.approx(gradient @ shift)
+    ((named, errors),) = means.footprint(gradient).items()
+    assert named == Component("median", "w by batch")
+    assert np.sum(errors**2) == pytest.approx(part.spread.variance)
+
+
 def test_a_construct_without_residuals_of_its_own_borrows_the_others() -> None:
     # The only cell of `z`, in a batch that others share, keeps less than half a degree of freedom.
     corners = _corners((["a", "a", "b"], ["a", "b", "b"], ["b", "b", "a"], ["a"]))
@@ -74,6 +93,7 @@ def test_half_a_degree_of_freedom_is_enough() -> None:
     blocks = Blocks(corners, (1.0, -1.0))
     parts = blocks.parts([1.0, -1.0])
     assert [part.spread.dof for part in parts] == pytest.approx([0.5, 0.5])
+    assert blocks.has_scatter  # one degree of freedom in all
 
 
 @pytest.mark.parametrize("shift", [0.0, 3.0])  # all alike, or a batch effect alone

@@ -174,9 +174,9 @@ def test_covariance_part_is_exact_in_expectation() -> None:
     # Of 2 paired and 2 lone cells each: product of means plus (1 - S/(n m)) c is what a mean over pairs
     # of the same cells would be on average; written out for one set of numbers.
     v = {"c0": -40.0, "c1": -36.0, "a": -39.0, "b": -41.0}
-    q = {"c0": 12.0, "c1": 14.0, "d": 13.0, "e": 13.5}
+    q = {"c0": 11.5, "c1": 14.5, "d": 13.0, "e": 13.5}
     book = _book([measurement("WT", v, q)])
-    covariance = ((-40 + 38) * (12 - 13) + (-36 + 38) * (14 - 13)) / 1
+    covariance = ((-40 + 38) * (11.5 - 13) + (-36 + 38) * (14.5 - 13)) / 1
     expected = np.mean(list(v.values())) * np.mean(list(q.values())) + covariance * (1 - 2 / 16)
     assert book.energies["WT"].energy.value == pytest.approx(KCAL * expected, rel=1e-12)
 
