@@ -13,6 +13,7 @@ from scipy import stats
 from cornerwise.batches import Units, alone, regroup, units_notes
 from cornerwise.blocks import Blocks
 from cornerwise.campaign import Settings, StatedCharge
+from cornerwise.charge_judgement import compared_charges
 from cornerwise.coupling import couple
 from cornerwise.energies import EnergyBook
 from cornerwise.interactions import Interaction, interact, interaction_draws
@@ -303,3 +304,34 @@ def test_notes_keep_families_of_one_rule_together_and_rules_apart() -> None:
         "energy of WT, A1G (medians and charges): shared; cells are the units (2 batches, 8 cells)",
         "energy of A1G (charges): own; batch means are the units (2 batches, 8 cells)",
     )
+
+
+@pytest.mark.parametrize("paired", [True, False])
+def test_a_ratio_of_charges_does_not_depend_on_which_construct_is_paired(paired: bool) -> None:
+    # Charges of the mutant come from the cells of its curves or from others; the wild type's from others.
+    # The days are shared, so no two of them stand for all days: cells are counted, not day means.
+    rng = np.random.default_rng(9)
+    days = ["d1", "d1", "d1", "d2", "d2"]
+    charges = [rng.normal(13, 0.5, 5) + np.array([0.4] * 3 + [-0.4] * 2) for _ in range(2)]
+    made = [
+        measurement(
+            label,
+            batched(rng.normal(mean, 1, 5), days, f"{label} "),
+            batched(own, days, f"{label} " if paired and label == "A1G" else f"{label} n"),
+        )
+        for label, mean, own in zip(("WT", "A1G"), MEANS, charges, strict=False)
+    ]
+    book = EnergyBook(made, Settings(wild_type="WT", charge="measured", replicates=100))
+    found = compared_charges("A1G", book, "WT")
+    assert found is not None
+    logarithm, ledger = found
+    spread = ledger.spread(logarithm)
+    relative = [q / q.mean() for q in charges]
+    variances = [np.var(q, ddof=1) / 5 for q in relative]
+    if paired:
+        assert spread.variance == pytest.approx(sum(variances))
+        assert spread.dof == pytest.approx(sum(variances) ** 2 / sum(v * v / 4 for v in variances))
+    else:  # within days, whose effects cancel
+        assert spread.dof > 4
+        assert spread.variance < sum(variances)
+    assert logarithm.value == pytest.approx(math.log(charges[1].mean() / charges[0].mean()), abs=1e-9)

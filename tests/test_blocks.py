@@ -28,17 +28,11 @@ def _corners(days: tuple[list[str], ...] = DAYS) -> list[CellSource]:
     ]
 
 
-def _alone(corner: CellSource) -> BatchMeans | CellSource:
-    return BatchMeans(corner) if len(set(corner.batches)) > 1 else corner
-
-
-def test_what_leaves_out_a_corner_is_no_comparison() -> None:
+def test_what_leaves_out_a_corner_is_no_comparison_and_counts_cells() -> None:
     corners = _corners((DAYS[0], DAYS[1], ["a", "a"], DAYS[3]))
     blocks = Blocks(corners, SIGNS)
     gradient = [2.0, 0.0, -3.0, 0.0]
-    first, third = _alone(corners[0]), _alone(corners[2])
-    assert isinstance(first, BatchMeans)
-    assert third is corners[2]
+    first, _, third, _ = corners
     assert not blocks.whole(gradient)
     assert blocks.parts(gradient) == (*first.parts([2.0]), *third.parts([-3.0]))
     drawn = blocks.deviations_drawn(gradient, _stream, 500)

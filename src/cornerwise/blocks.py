@@ -8,7 +8,7 @@ from functools import cached_property
 import numpy as np
 from numpy.typing import NDArray
 
-from .sources import CellSource, Component, Part, Source, Spread, Stream, resampled_sums
+from .sources import CellSource, Component, Part, Spread, Stream, resampled_sums
 
 FloatArray = NDArray[np.float64]
 
@@ -132,13 +132,14 @@ class Blocks:
         """Whether every construct takes part, so that batch effects can cancel."""
         return all(any(own) for own in self.by_corner(gradient))
 
-    def alone(self, gradient: Sequence[float]) -> list[tuple[Source, list[float]]]:
-        """The constructs that take part, each by itself."""
-        return [
-            (BatchMeans(corner) if len(set(corner.batches)) > 1 else corner, own)
-            for corner, own in zip(self.corners, self.by_corner(gradient), strict=True)
-            if any(own)
-        ]
+    def alone(self, gradient: Sequence[float]) -> list[tuple[CellSource, list[float]]]:
+        """The constructs that take part, each by itself, as its cells.
+
+        Batches that other constructs share are no sample of batches: what is said of some of the constructs
+        holds for the batches recorded.
+        """
+        pairs = zip(self.corners, self.by_corner(gradient), strict=True)
+        return [(corner, own) for corner, own in pairs if any(own)]
 
     def _scatter(self, residuals: FloatArray) -> tuple[FloatArray, FloatArray]:
         """Variance of one cell of each construct, and its degrees of freedom."""
