@@ -130,6 +130,7 @@ def construct_row(
         units=units,
         curve=averaged_curve(measurement),
         charge_values=_charge_values(measurement),
+        median_uncertainty_mv=available(measurement.median_uncertainty_mv),
     )
     return row, flags, judged
 

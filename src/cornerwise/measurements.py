@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass, replace
 
@@ -35,6 +36,11 @@ class Measurement:
     def label(self) -> str:
         """The construct's label."""
         return self.construct.label
+
+    @property
+    def median_uncertainty_mv(self) -> float:
+        """Standard uncertainty of the median: scatter of cells, and what was extrapolated for all of them."""
+        return math.hypot(self.median_mv.sem, self.truncation_mv)
 
     @property
     def charge_e0(self) -> Quantity | None:

@@ -8,9 +8,11 @@ import os
 import signal
 import sys
 from collections.abc import Callable
+from contextlib import suppress
 from types import FrameType
 from typing import NoReturn
 
+INTERRUPTED = 128 + signal.SIGINT
 TERMINATED = 128 + signal.SIGTERM
 
 _FEWEST_NEW_OBJECTS = 100_000  # between two looks for garbage; importing alone makes many that stay
@@ -36,6 +38,9 @@ def run(command: Callable[[], object]) -> NoReturn:
         command()
     except SystemExit as ended:
         code = ended.code
+    if code in (INTERRUPTED, TERMINATED):
+        with suppress(OSError):
+            print("cornerwise: stopped; no output was left half written", file=sys.stderr)
     broken = sys.stdout is not screen  # put aside while the help was printed
     try:
         screen.flush()

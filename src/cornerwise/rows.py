@@ -242,6 +242,7 @@ class ConstructRow:
     units: tuple[Units, ...]  # what its energy's uncertainty counts in each family of cells
     curve: DrawnCurve | None  # averaged over the cells that are used; None without curves
     charge_values: tuple[float, ...] = ()  # e0 per channel, its own cell by cell; empty for summaries
+    median_uncertainty_mv: float | None = None  # of `median_mv`: cells' scatter and what was extrapolated
 
     def cells(self) -> tuple[Value, ...]:
         """Values in the order of `columns`."""

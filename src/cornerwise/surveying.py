@@ -36,6 +36,7 @@ class SurveyRow:
     charge_n: int | None
     flags: tuple[str, ...]
     curve: DrawnCurve | None  # averaged over the cells that are used
+    median_uncertainty_mv: float | None  # cells' scatter and what was extrapolated for all of them
 
     def cells(self) -> tuple[Value, ...]:
         """Values in the order of `columns`."""
@@ -71,6 +72,7 @@ def _row(measurement: Measurement) -> tuple[SurveyRow, tuple[Flag, ...]]:
         charge_n=None if charge is None else charge.n,
         flags=codes(flags),
         curve=averaged_curve(measurement),
+        median_uncertainty_mv=available(measurement.median_uncertainty_mv),
     )
     return row, flags
 

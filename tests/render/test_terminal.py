@@ -137,12 +137,14 @@ def test_numbers_of_flags_told_in_short_have_their_unit(unit: str) -> None:
         ]
 
     told = survey(_campaign(energy_unit=unit))
-    shown = [*flags("few-cells", 3, 2), *flags("midpoint-misleads", 4.0, -0.95712)]
-    shown += [*flags("charge-shift", 0.6, 0.7), *flags("mixed-ranges", 70.0, 80.0)]
+    # The worst comes first in full, whichever way is worse.
+    shown = [*flags("few-cells", 2, 3), *flags("midpoint-misleads", -4.0, -0.95712)]
+    shown += [*flags("charge-shift", 0.6, 1.5), *flags("mixed-ranges", 80.0, 70.0)]
+    shown = shown[::-1]
     stream = io.StringIO()
     print_survey(dataclasses.replace(told, flags=tuple(shown)), stream)
     short = re.findall(r"([\w-]+): first\.; likewise E1A \((.*)\)", stream.getvalue())
     assert dict(short) == {
-        "few-cells": "2 cells", "midpoint-misleads": f"-0.957 {unit}", "charge-shift": "0.700 times",
-        "mixed-ranges": "80 mV",
+        "few-cells": "3 cells", "midpoint-misleads": f"-0.957 {unit}", "charge-shift": "1.50 times",
+        "mixed-ranges": "70 mV",
     }  # fmt: skip

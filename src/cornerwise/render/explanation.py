@@ -144,10 +144,10 @@ def _measured(row: InteractionRow, corners: list[ConstructRow]) -> str:
             n = "" if one.charge_n is None else f", n = {one.charge_n}"
             charge = f"Q {with_uncertainty(one.charge_e0, one.charge_sem_e0)} e0 ({one.charge_source}{n})"
         parts.append(
-            f"{one.construct}: Vm {with_uncertainty(one.median_mv, one.median_sem_mv)} mV (n = "
+            f"{one.construct}: Vm {with_uncertainty(one.median_mv, one.median_uncertainty_mv)} mV (n = "
             f"{one.cells_used}), {charge}"
         )
-    return f"Measured, mean ± standard error: {'; '.join(parts)}."
+    return f"Measured, mean ± standard uncertainty: {'; '.join(parts)}."
 
 
 def _assumed(result: Result, row: InteractionRow, corners: list[ConstructRow]) -> str:

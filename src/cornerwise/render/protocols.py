@@ -10,7 +10,7 @@ from rich.text import Text
 from ..protocols import ProtocolCheck, ProtocolQuestion, ProtocolRow
 from .legend import percent
 from .rounding import number, with_uncertainty
-from .terminal import plain_grid, plus_minus_of, screen_on
+from .terminal import plain_grid, plus_minus_of, screen_on, show_grid
 
 _COLUMNS = (  # as many as 80 columns hold
     ("", False),
@@ -41,10 +41,10 @@ def print_protocols(found: ProtocolCheck, stream: IO[str]) -> None:
     numbers = {curve: str(number) for number, curve in enumerate(found.curves, start=1)}
     with screen_on(stream) as screen:
         plus_minus = plus_minus_of(screen)
-        grid = plain_grid(_COLUMNS)
+        grid = plain_grid(_COLUMNS, folding=("curve",))
         for row in found.rows:
             grid.add_row(*map(Text, _line(row, numbers[row.curve], plus_minus)))
-        screen.print(grid)
+        show_grid(screen, grid)
         screen.print()
         for line in (_advice(found), "", *_legend(found.question, plus_minus), "", *_curves(numbers)):
             screen.print(Text(line))

@@ -17,7 +17,7 @@ from .legend import (
     unit_phrase,
 )
 from .rounding import decimals_for, number, span
-from .terminal import NARROW_NAME, WIDE, broken, plain_grid, print_lines, screen_on
+from .terminal import NARROW_NAME, WIDE, broken, plain_grid, print_lines, screen_on, show_grid
 
 _WORDS = ("cycle", "verdict", "native pair")  # columns of words
 _LEFT_OUT = ("at least", "shrunken")  # on a screen too narrow for all columns
@@ -56,14 +56,14 @@ def print_ranking(result: Result, stream: IO[str]) -> None:
         narrow = screen.width < WIDE
         left_out = _LEFT_OUT if narrow else ()
         shown = [(header, header not in _WORDS) for header in headers if header not in left_out]
-        grid = plain_grid(shown, folding=("native pair",) if narrow else ())
+        grid = plain_grid(shown, folding=("native pair",))
         for row in result.ranking:
             line = dict(zip(headers, _line(row, uncertainty[row.cycle]), strict=True))
             line["cycle"] = broken(row.cycle, NARROW_NAME) if narrow else row.cycle
             grid.add_row(*(Text(line[header]) for header, _ in shown))
         if narrow:
             legend.insert(1, f"{' and '.join(_LEFT_OUT)}: shown in a wider terminal and in a pipe")
-        screen.print(grid)
+        show_grid(screen, grid)
         screen.print()
         print_lines(screen, legend)
         screen.print()

@@ -2,12 +2,14 @@
 
 from __future__ import annotations
 
+import math
 import re
 from collections.abc import Iterator, Sequence
 from contextlib import contextmanager
 from typing import IO
 
 from rich.console import Console
+from rich.table import Column
 from rich.table import Table as Grid
 from rich.text import Text
 
@@ -50,9 +52,10 @@ _FLAG_UNITS = {  # of the number that raised a flag, where that is no energy
     "mixed-protocol": "protocols",
 }
 
+_FEWER_IS_WORSE = ("few-cells", "single-batch", "coarse-steps")
+
 WIDE = 100  # columns from which a long name of a cycle has room
 NARROW_NAME = 12  # columns of such a name elsewhere; two mutations fit
-_NARROWEST = 80  # columns in which the coupling table keeps its numbers whole
 _UNCUT = 1_000_000  # columns; nothing wraps at this width
 
 
@@ -93,6 +96,28 @@ def plain_grid(headers: Sequence[tuple[str, bool]], folding: Sequence[str] = ())
     return grid
 
 
+def show_grid(screen: Console, grid: Grid) -> None:
+    """Print a table; where the screen is too narrow for its numbers, every row on several lines."""
+    if sum(map(_narrowest, grid.columns)) + len(grid.columns) - 1 <= screen.width:
+        screen.print(grid)
+        return
+    first, *heads = [str(column.header) for column in grid.columns]
+    widest = max(map(len, heads))
+    for name, *cells in zip(*(column.cells for column in grid.columns), strict=True):
+        if str(first) or str(name):
+            screen.print(Text(str(name).replace("\n", ""), style="bold"))
+        for head, cell in zip(heads, cells, strict=True):
+            if str(cell):
+                hanging(screen, f"  {head:{widest}} ", cell)
+
+
+def _narrowest(column: Column) -> int:
+    """Width of a column whose numbers stay whole and whose words, where it may fold, do."""
+    texts = [str(column.header), *map(str, column.cells)]
+    pieces = [piece for text in texts for piece in (text.split("\n") if column.no_wrap else text.split())]
+    return max(map(len, pieces), default=0)
+
+
 def broken(name: str, width: int) -> str:
     """A name of joined mutations on as many lines as a column of that width needs, broken after a slash."""
     lines = [""]
@@ -118,7 +143,7 @@ def _interaction_grid(result: Result, marks: dict[str, str], plus_minus: str, wi
             ("shortcut", False),
             ("flags", False),
         ],
-        folding=("flags",) if width >= _NARROWEST else (),
+        folding=("flags",),
     )
     for row in by_strength(result.interactions):
         grid.add_row(
@@ -134,14 +159,17 @@ def _interaction_grid(result: Result, marks: dict[str, str], plus_minus: str, wi
 
 
 def _flag_lines(flags: Sequence[Flag], marks: dict[str, str], energy_unit: str) -> list[tuple[str, str]]:
-    """Mark and sentence of each code: the first subject in full, the others with their number."""
+    """Mark and sentence of each code: the worst subject in full, the others with their number."""
     lines = []
     for code, mark in marks.items():
         groups: dict[str, list[Flag]] = {}
         for flag in flags:
             if flag.code == code:
                 groups.setdefault(flag.construct or flag.subject, []).append(flag)
-        (_, first), *others = groups.items()
+        worst_first = sorted(groups.items(), key=lambda group: -max(map(_severity, group[1])))
+        (_, first), *others = [
+            (subject, sorted(g, key=lambda f: -_severity(f))) for subject, g in worst_first
+        ]
         more = f" ({len(first) - 1} more of its cells too)" if len(first) > 1 else ""
         likewise = (
             f"; likewise {', '.join(_short(*other, energy_unit) for other in others)}" if others else ""
@@ -149,6 +177,14 @@ def _flag_lines(flags: Sequence[Flag], marks: dict[str, str], energy_unit: str) 
         named = first[0].message if first[0].cell is None else f"{first[0].subject}: {first[0].message}"
         lines.append((mark, f"{code}: {named}{more}{likewise}"))
     return lines
+
+
+def _severity(flag: Flag) -> float:
+    """How bad the number of a flag is, among flags of its code."""
+    value = abs(flag.value or 0.0)
+    if flag.code in _FEWER_IS_WORSE:
+        return -value
+    return abs(math.log(value)) if flag.code == "charge-shift" and value else value
 
 
 def _short(subject: str, flags: Sequence[Flag], energy_unit: str) -> str:
@@ -168,12 +204,12 @@ def print_lines(screen: Console, lines: Sequence[str], indent: int = 2) -> None:
         hanging(screen, line[:indent], line[indent:])
 
 
-def hanging(screen: Console, head: str, text: str) -> None:
+def hanging(screen: Console, head: str, text: str | Text) -> None:
     """A head and a text beside it; where the text has to wrap it stays beside the head."""
     grid = Grid.grid()
     grid.add_column(no_wrap=True)
     grid.add_column(overflow="fold")
-    grid.add_row(Text(head), Text(text))
+    grid.add_row(Text(head), Text(text) if isinstance(text, str) else text)
     screen.print(grid)
 
 
@@ -211,7 +247,7 @@ def _show_result(result: Result, screen: Console) -> None:
         [f"Interaction energies I in {unit_phrase(result.settings)}{_at(result.settings)}, strongest first"],
     )
     screen.print()
-    screen.print(_interaction_grid(result, marks, plus_minus_of(screen), screen.width))
+    show_grid(screen, _interaction_grid(result, marks, plus_minus_of(screen), screen.width))
     _print_flags(screen, relevant, marks, result.settings.energy_unit)
     screen.print()
     orders = {row.order for row in result.interactions}
@@ -253,7 +289,7 @@ def _survey_line(row: SurveyRow, marks: dict[str, str], plus_minus: str) -> list
     return [
         Text(row.construct),
         Text(cells),
-        Text(with_uncertainty(row.median_mv, row.median_sem_mv, plus_minus)),
+        Text(with_uncertainty(row.median_mv, row.median_uncertainty_mv, plus_minus)),
         Text(charge or "not measured"),
         Text(" ".join(marks[code] for code in row.flags)),
     ]
@@ -285,17 +321,18 @@ def _show_cells(screen: Console, survey: Survey, marks: dict[str, str]) -> None:
         aside = f" (not used: {reason})" if reason else ""
         grid.add_row(Text(construct), Text(", ".join(cells) + aside), Text(" ".join(marks[f] for f in flags)))
     screen.print()
-    screen.print(grid)
+    show_grid(screen, grid)
 
 
 def _show_survey(survey: Survey, screen: Console) -> None:
     marks = flag_marks([flag.code for flag in survey.flags])
     grid = plain_grid(
-        [("construct", False), ("cells", True), ("Vm (mV)", True), ("Q (e0)", True), ("flags", False)]
+        [("construct", False), ("cells", True), ("Vm (mV)", True), ("Q (e0)", True), ("flags", False)],
+        folding=("flags",),
     )
     for row in survey.constructs:
         grid.add_row(*_survey_line(row, marks, plus_minus_of(screen)))
-    screen.print(grid)
+    show_grid(screen, grid)
     _show_cells(screen, survey, marks)
     _print_flags(screen, survey.flags, marks, survey.settings.energy_unit)
     screen.print()
@@ -305,4 +342,11 @@ def _show_survey(survey: Survey, screen: Console) -> None:
     if survey.background:
         lines.append(f"Background of every construct: {'/'.join(survey.background)}")
     lines += [f"Note: {note}" for note in survey.notes]
-    print_lines(screen, [*lines, "Vm, Q: mean ± standard error over cells; no energy was computed"])
+    print_lines(
+        screen,
+        [
+            *lines,
+            "Vm, Q: mean ± standard uncertainty, from the scatter of cells and, for Vm, from what had to be "
+            "extrapolated; no energy was computed",
+        ],
+    )

@@ -9,7 +9,7 @@ from rich.text import Text
 from ..simulation import Truth
 from .legend import CAUTION, formula, sign_sentences
 from .rounding import number
-from .terminal import plain_grid, screen_on
+from .terminal import plain_grid, screen_on, show_grid
 
 
 def print_truth(truth: Truth, stream: IO[str]) -> None:
@@ -42,7 +42,7 @@ def print_truth(truth: Truth, stream: IO[str]) -> None:
     ]
     with screen_on(stream) as screen:
         for grid in (constructs, cycles):
-            screen.print(grid)
+            show_grid(screen, grid)
             screen.print()
         for line in legend:
             screen.print(Text(line))

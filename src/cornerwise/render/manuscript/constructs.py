@@ -55,13 +55,19 @@ RECIPES: tuple[Recipe[_Row], ...] = (
     ),
     Recipe(
         key="median", head="*V*~m~", unit="mV",
-        parts=csv_columns("constructs", "median_mV", "median_sem_mV"),
-        fill=lambda row, shared: shared.rounding.measured(row.median_mv, row.median_sem_mv),
+        parts=(
+            *csv_columns("constructs", "median_mV"),
+            (
+                "median_uncertainty_mV", "mV",
+                "standard uncertainty of the median: scatter of cells, and what was extrapolated",
+            ),
+        ),
+        fill=lambda row, shared: shared.rounding.measured(row.median_mv, row.median_uncertainty_mv),
     ),
     Recipe(
         key="midpoint", head="*V*~½~", unit="mV",
         parts=csv_columns("midpoints", "midpoint_mV"),
-        fill=lambda row, shared: shared.rounding.alone(row.midpoint_mv, row.median_sem_mv),
+        fill=lambda row, shared: shared.rounding.alone(row.midpoint_mv, row.median_uncertainty_mv),
     ),
     Recipe(
         key="charge", head="*Q*", unit="*e*~0~",

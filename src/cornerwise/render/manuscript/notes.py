@@ -123,7 +123,7 @@ def _energy(settings: Settings) -> Words:
     return words(
         f"Δ*G* = *F* *Q* {factor}, activation free energy{where}, negative where the activated state is "
         "favoured; *Q*, total gating charge per channel; *V*~m~, median voltage; *F*, Faraday constant; ±, "
-        "standard error of the mean of *V*~m~, standard uncertainty of *Q* and Δ*G*."
+        "standard uncertainty."
     )
 
 

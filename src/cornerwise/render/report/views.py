@@ -115,7 +115,7 @@ def construct_view(row: ConstructRow) -> ConstructView:
         ratio = f"{row.charge_ratio:.3f} ({row.charge_ratio_low:.3f} to {row.charge_ratio_high:.3f})"
     return ConstructView(
         row=row,
-        median=typeset(with_uncertainty(row.median_mv, row.median_sem_mv)),
+        median=typeset(with_uncertainty(row.median_mv, row.median_uncertainty_mv)),
         charge=typeset(with_uncertainty(row.charge_e0, row.charge_sem_e0)),
         energy=typeset(with_uncertainty(row.energy, row.std_uncertainty)),
         interval=typeset(span((row.low, row.high), row.std_uncertainty)),
