@@ -267,6 +267,33 @@ def test_wrong_calls_exit_2(words: list[str]) -> None:
     assert _run(*words).exit_code == 2
 
 
+@pytest.mark.parametrize(
+    ("words", "told"),
+    [
+        ("plan --unit kj", "'--unit': found 'kj'; it takes kcal/mol, kJ/mol, kT, meV; did you mean kJ/mol?"),
+        ("plan --unit stone", "'--unit': found 'stone'; it takes kcal/mol, kJ/mol, kT, meV"),
+        ("plan --charges pared", "did you mean paired?"),
+        ("plan --half-width abc", "'--half-width': 'abc' is not a number"),
+        ("plan --order 2.5", "'--order': '2.5' is not a whole number"),
+        ("rank trial --first 0", "'--first': must be 1 or more; found 0"),
+        ("protocol --bound 0", "'--bound': must be 0.01 or more; found 0"),
+        ("render result.json --out again --columns cycle;interaction", "join the columns by commas"),
+    ],
+)
+def test_a_refused_option_is_told_in_our_own_words(words: str, told: str) -> None:
+    done = _run(*words.split())
+    assert done.exit_code == 2
+    assert told in done.stderr
+    assert "Value error" not in done.stderr
+    assert "Input should" not in done.stderr
+
+
+def test_an_empty_name_of_a_cycle_is_asked_for() -> None:
+    done = _run("explain", PUBLISHED, "")
+    assert done.exit_code == 2
+    assert "give a cycle; there are " in done.stderr
+
+
 def test_path_that_does_not_exist_is_refused() -> None:
     done = _run("check", "no-such-folder")
     assert done.exit_code == 3

@@ -9,7 +9,7 @@ from typing import Annotated
 import typer
 from typer.core import TyperGroup
 
-from .console import CampaignPath, Force, Json, expect_room, progress, report, write
+from .console import CampaignPath, Force, Json, expect_room, progress, report, reworded, write
 from .design_commands import protocol, simulate
 from .errors import CornerwiseError, UsageError
 from .plan_command import plan
@@ -25,6 +25,8 @@ class _Boundary(TyperGroup):
         except CornerwiseError as error:
             report(error)
             raise SystemExit(error.exit_code) from None
+        except typer.BadParameter as error:
+            raise reworded(error) from None
         except BrokenPipeError:  # the reader of a pipe went away; nothing is wrong
             let_go_of_stdout()
             raise SystemExit(0) from None
@@ -216,6 +218,8 @@ def render(  # noqa: PLR0913 - one parameter an option
 
 
 def _named(columns: str) -> list[str]:
+    if ";" in columns:
+        raise UsageError(f"join the columns by commas; found {columns!r}")
     return [name.strip() for name in columns.split(",") if name.strip()]
 
 

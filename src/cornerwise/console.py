@@ -3,11 +3,13 @@
 from __future__ import annotations
 
 import os
+import re
 import sys
 import time
 from collections import Counter
 from collections.abc import Callable, Iterable, Iterator, Mapping
 from contextlib import contextmanager
+from difflib import get_close_matches
 from pathlib import Path
 from typing import Annotated
 
@@ -20,6 +22,30 @@ _PATIENCE_S = 1.0
 CampaignPath = Annotated[Path, typer.Argument(metavar="PATH", help="Campaign folder, or one .xlsx workbook.")]
 Json = Annotated[bool, typer.Option("--json", help="Print JSON on stdout instead of a table.")]
 Force = Annotated[bool, typer.Option("--force", help="Replace DIR as a whole if it exists.")]
+
+
+_PARSED = {"float": "a number", "int": "a whole number"}
+
+
+def reworded(error: typer.BadParameter) -> typer.BadParameter:
+    """The same refusal of an option in our own words, where the library that judged it told its kind."""
+    judged = getattr(error.__cause__, "errors", None)
+    if judged is None:
+        return error
+    fault = judged()[0]
+    found, told, limits = fault["input"], str(fault["msg"]), fault.get("ctx", {})
+    kind = str(fault["type"]).partition("_")[0]
+    if "is not one of" in told:
+        choices = re.findall(r"'([^']*)'", told.partition("is not one of")[2])
+        begun = [one for one in choices if found and one.casefold().startswith(str(found).casefold())]
+        near = begun or get_close_matches(str(found), choices, n=1)
+        hint = f"; did you mean {near[0]}?" if near else ""
+        error.message = f"found {found!r}; it takes {', '.join(choices)}{hint}"
+    elif kind in _PARSED:
+        error.message = f"{found!r} is not {_PARSED[kind]}"
+    elif "ge" in limits:
+        error.message = f"must be {limits['ge']:g} or more; found {found}"
+    return error
 
 
 def report(error: CornerwiseError) -> None:

@@ -132,6 +132,17 @@ class EnergyBook:
         self._energy_draws: dict[tuple[str, bool], FloatArray] = {}
         self.energies: Mapping[str, Energy] = {label: self._energy(label) for label in self._measurements}
 
+    @property
+    def sloping(self) -> frozenset[str]:
+        """Constructs whose plateaus slope while the settings do not ask for the slope to be taken off."""
+        if self._settings.correct_sloping_plateaus:
+            return frozenset()
+        return frozenset(
+            label
+            for label, one in self._measurements.items()
+            if any(flag.code == "sloping-plateau" for cell in one.cells if cell.used for flag in cell.flags)
+        )
+
     def _median(self, label: str) -> Derived:
         terms = [(1.0, _one(Component("median", label), self._measurements[label].median_mv.mean))]
         truncation = Component("truncation", label)

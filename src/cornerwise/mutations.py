@@ -3,12 +3,13 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Iterable, Mapping, Sequence
+from collections.abc import Collection, Iterable, Mapping, Sequence
 from dataclasses import dataclass, field
+from difflib import get_close_matches
 from itertools import combinations
 from typing import Literal
 
-from .errors import Origin
+from .errors import Origin, UsageError
 
 _THREE_LETTER = {
     "Ala": "A", "Arg": "R", "Asn": "N", "Asp": "D", "Cys": "C", "Gln": "Q", "Glu": "E",
@@ -289,6 +290,34 @@ def find_cycles(labels: Mapping[Mutations, str]) -> tuple[Cycle, ...]:
     fitting = (m for m in labels if len(m) >= 2 and 2 ** len(m) <= len(labels))
     candidates = sorted(fitting, key=_by_order_then_residue)
     return tuple(complete_cycle(m, labels) for m in candidates if not missing_corners(m, labels))
+
+
+def name_of_cycle(asked: str, cycles: Mapping[str, Collection[str]]) -> str:
+    """Name of the cycle that is asked for by its name, or by its mutations in any order.
+
+    Parameters
+    ----------
+    asked : str
+        What the user wrote.
+    cycles : mapping of str to collection of str
+        Mutations of every cycle by its name.
+
+    Raises
+    ------
+    UsageError
+        If there is no such cycle; names the nearest, or all.
+    """
+    if asked in cycles:
+        return asked
+    mutations = set(map(str, parse_label(asked) or ()))
+    for name, own in cycles.items():
+        if mutations == set(own):
+            return name
+    every = f"there are {', '.join(cycles)}" if cycles else "none is complete"
+    if not asked.strip():
+        raise UsageError(f"give a cycle; {every}")
+    near = get_close_matches(asked, cycles, n=1)
+    raise UsageError(f"no cycle is called {asked}; {f'did you mean {near[0]}?' if near else every}")
 
 
 def incomplete_cycles(labels: Mapping[Mutations, str]) -> tuple[tuple[str, tuple[str, ...]], ...]:

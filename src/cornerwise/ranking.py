@@ -21,7 +21,7 @@ Replicates = NDArray[np.float64] | NDArray[np.float32]
 _PAIRS_AT_ONCE = 2_000_000  # comparisons held in memory
 _STEP_DOWN_UP_TO = 2000  # estimates; each step needs its own p values
 _VALUES_AT_ONCE = 4_000_000  # replicates held in memory
-_FEWEST_TO_SHRINK = 4
+FEWEST_TO_SHRINK = 4  # estimates; fewer say too little of their own scatter
 _SIGNS = (-1.0, 1.0)  # of the difference and of the sum
 
 
@@ -221,7 +221,7 @@ def shrink(values: FloatArray, std_uncertainties: FloatArray) -> Shrunken:
     Morris, "Parametric Empirical Bayes Inference", J. Am. Stat. Assoc. 78 (1983) 47-55 (from memory).
     """
     n = len(values)
-    if n < _FEWEST_TO_SHRINK:
+    if n < FEWEST_TO_SHRINK:
         return Shrunken(values=values, std_uncertainties=std_uncertainties)
     squared = std_uncertainties**2
     scatter = _scatter_of_truth(values, squared)

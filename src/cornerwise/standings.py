@@ -14,6 +14,7 @@ from .campaign import Settings
 from .estimates import Estimate
 from .intervals import Interval, adjusted_p_values, t_interval, t_quantile
 from .ranking import (
+    FEWEST_TO_SHRINK,
     Estimates,
     first_probabilities,
     rank_intervals,
@@ -37,7 +38,7 @@ class Standing:
     ranks: tuple[int, int] | None = None  # limits of the rank by true size
     strength_low: float = math.nan  # lower limit of the absolute size; 0 where the interval includes 0
     first_probability: float = math.nan
-    shrunken: float = math.nan
+    shrunken: float = math.nan  # NaN among fewer than four
     simultaneous: Interval = _NOT_AVAILABLE  # NaN unless asked for
 
 
@@ -94,7 +95,7 @@ def standings(
             ranks=(min(low, ranks[place]), max(high, ranks[place])),
             strength_low=max(0.0, strengths[place]),
             first_probability=float(first[place]),
-            shrunken=float(shrunken.values[place]),
+            shrunken=float(shrunken.values[place]) if len(known) >= FEWEST_TO_SHRINK else math.nan,
             simultaneous=wide[place],
         )
     return found

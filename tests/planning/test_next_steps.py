@@ -2,6 +2,7 @@
 
 import math
 from collections.abc import Mapping, Sequence
+from dataclasses import replace
 
 import numpy as np
 import pytest
@@ -11,8 +12,10 @@ from cornerwise.campaign import Campaign, Settings, StatedCharge
 from cornerwise.construct_rows import construct_row
 from cornerwise.coupling import couple
 from cornerwise.energies import EnergyBook
+from cornerwise.flags import Flag, FlagCode
 from cornerwise.interaction_rows import Corners, interaction_rows
 from cornerwise.measurements import Measurement
+from cornerwise.median.cell_reading import CellReading
 from cornerwise.mutations import find_cycles
 from cornerwise.plan_rows import NextStepRow
 from cornerwise.planning.next_steps import next_steps
@@ -102,6 +105,34 @@ def test_what_holds_it_back_is_named_with_a_remedy() -> None:
     assert step.remedy == "measure the total charge"
 
 
+@pytest.mark.parametrize(
+    ("codes", "correct", "named"),
+    [
+        (("sloping-plateau",), False, True),
+        (("sloping-plateau",), True, False),
+        (("unsaturated-high",), False, False),
+    ],
+)
+def test_a_sloping_plateau_is_levelled_before_the_range_is_widened(
+    codes: tuple[FlagCode, ...], *, correct: bool, named: bool
+) -> None:
+    made = _made((-40.0, -33.0, -47.0, -30.0), SDS, COUNTS)
+    flags = tuple(Flag(code=code, subject="E5A/R9Q/c0", message="", value=1.0, limit=0.1) for code in codes)
+    cell = CellReading(
+        construct="E5A/R9Q", cell="c0", batch=None, median_mv=-30.0, midpoint_mv=-30.0, low_plateau=0.0,
+        high_plateau=1.0, points=20, plain_median_mv=-30.0, flags=flags,
+    )  # fmt: skip
+    double = replace(made[3], truncation_mv=40.0, cells=(cell,))
+    _, (step,) = _judged([*made[:3], double], correct_sloping_plateaus=correct)
+    assert step.limit == "curve shape and extrapolation of E5A/R9Q"
+    assert step.remedy is not None
+    assert ("correct_sloping_plateaus = true" in step.remedy) is named
+    assert (step.remedy == "record its curves over voltages that reach both plateaus") is not named
+    unused = replace(double, cells=(replace(cell, used=False),))
+    _, (other,) = _judged([*made[:3], unused], correct_sloping_plateaus=correct)
+    assert other.remedy == "record its curves over voltages that reach both plateaus"
+
+
 def test_adjustment_for_many_cycles_asks_for_more() -> None:
     medians = (-40.0, -33.0, -47.0, -30.0)
     alone = _judged(_made(medians, SDS, COUNTS))[1][0]
@@ -130,6 +161,9 @@ def test_the_result_holds_a_step_for_every_unresolved_cycle(campaign_of_orvane: 
     unresolved = [row.cycle for row in result.interactions if row.interaction_verdict == "unresolved"]
     assert [step.cycle for step in result.next_steps] == unresolved
     assert unresolved
+    sloping = next(step for step in result.next_steps if step.cycle == "Y241A/N250A")
+    assert sloping.remedy is not None  # its double slopes; the others are held back by a range
+    assert "correct_sloping_plateaus = true" in sloping.remedy
     for step in result.next_steps:
         assert (step.further is None) == (step.shares == ())
         assert step.limit is None or math.isfinite(step.half_width_wanted)

@@ -148,6 +148,8 @@ def test_cycles_are_chosen_by_name() -> None:
     assert len({row.cycle for row in plan(pilot).outlooks}) == 2
     found = plan(pilot, PlanRequest(cycles=("K3M/E5A",)))
     assert {row.cycle for row in found.outlooks} == {"K3M/E5A"}
+    turned = plan(pilot, PlanRequest(cycles=("E5A/K3M", "K3M/E5A")))
+    assert {row.cycle for row in turned.outlooks} == {"K3M/E5A"}
     with pytest.raises(UsageError, match="no cycle is called X"):
         plan(pilot, PlanRequest(cycles=("X",)))
 

@@ -60,6 +60,24 @@ def test_it_fits_80_columns_at_a_terminal(
     assert max(map(len, text.splitlines())) <= 80
 
 
+def test_what_power_counts_is_said_where_it_stands() -> None:
+    several, alone = _plan(pairs=6), _plan(pairs=1)
+    lines = _printed(several, io.StringIO()).splitlines()
+    heading = next(i for i, line in enumerate(lines) if line.startswith("Power against"))
+    assert lines[heading + 1] == (
+        "power: that the 95 % interval of this cycle alone excludes 0; the verdicts also need the p value "
+        "adjusted for 6 cycles"
+    )
+    (goal,) = [line for line in lines if line.startswith("Fewest further cells")]
+    assert goal.endswith("(p not adjusted)")
+    text = _printed(alone, io.StringIO())
+    assert "power: that the 95 % interval of this cycle alone excludes 0\n" in text
+    assert "adjusted" not in text
+    drawn = plan_sheets(_plan(pairs=6, drawn=True))["figures/plan-180mm"]
+    words = " ".join(mark.text for mark in drawn.marks if isinstance(mark, Words))
+    assert "p value adjusted for 6 cycles" in words
+
+
 def test_a_range_is_told_where_there_is_one() -> None:
     assert range_words(0.512, 0.488, 0.571, 2) == "0.51 (0.49-0.57)"
     assert range_words(0.512, 0.511, 0.513, 2) == "0.51"

@@ -132,3 +132,18 @@ def test_what_is_asked_for_is_no_default_any_more() -> None:
     assert ranked_by(given) == given
     asked = ranked_by(given, lower_limit=True, first=2).settings
     assert (asked.rank_by, asked.first, asked.defaulted) == ("lower bound", 2, ("seed",))
+
+
+def test_a_shrunken_estimate_takes_four_cycles() -> None:
+    few = couple(replace(_campaign(), cycles=_campaign().cycles[:3]))
+    assert [row.shrunken for row in few.ranking] == [None] * 3
+    assert [row.rank for row in few.ranking] == [1, 2, 3]
+    lines = _ranked(few)
+    at = lines[0].index("shrunken") + len("shrunken") - 1
+    assert [line[at] for line in lines[1:4]] == ["-"] * 3
+    assert any(line.startswith("shrunken: ") and line.endswith("it takes 4 cycles") for line in lines)
+    assert "takes 4 cycles<" in report_html(few)
+    assert all(row.shrunken is not None for row in RESULT.ranking)
+    assert "takes 4 cycles<" not in report_html(RESULT)
+    table = few.ranking.to_frame()
+    assert table["shrunken"].isna().all()

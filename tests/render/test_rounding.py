@@ -24,6 +24,12 @@ def test_value_with_uncertainty(value: float | None, uncertainty: float | None, 
     assert rounding.with_uncertainty(value, uncertainty) == expected
 
 
+def test_degrees_of_freedom_beyond_a_thousand_are_told_as_a_limit() -> None:
+    assert rounding.freedom_words(1000.0) == "1000.0 degrees of freedom"
+    assert rounding.freedom_words(1000.1) == "more than 1000 degrees of freedom, as good as normal"
+    assert rounding.freedom_words(None) == ""
+
+
 def test_interval_has_the_decimals_of_the_uncertainty() -> None:
     assert rounding.span((-0.00001, 3.666), 0.7651) == "0.00 to 3.67"
     assert rounding.span((None, 3.666), 0.7651) == ""

@@ -94,7 +94,7 @@ def _next_step(
     row: InteractionRow, cycle: Cycle, book: EnergyBook, settings: Settings, scatters: Scatters, cycles: int
 ) -> NextStepRow | None:
     interaction = interact(cycle, book, settings.wild_type)
-    one = prospect(row.cycle, interaction.energy, interaction.ledger, scatters)
+    one = prospect(row.cycle, interaction.energy, interaction.ledger, scatters, book.sloping)
     if one.unknown or not math.isfinite(one.value) or not one.terms:
         return None
     ways = _ways(row, one.value, settings, cycles)

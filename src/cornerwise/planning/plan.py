@@ -46,6 +46,7 @@ class Plan:
     energy_unit: EnergyUnit
     confidence: float
     true_interaction: float  # against which power counts
+    adjusted_for: int  # cycles of the campaign; `couple` adjusts p values for them, power does not
     request: PlanRequest
     cells: tuple[int, ...]  # numbers of cells told of; `outlooks` may hold more, for a figure
     outlooks: Table[OutlookRow]  # by cycle, then by cells
@@ -118,6 +119,7 @@ def _plan(subject: Subject, request: PlanRequest, progress: Progress | None) -> 
         energy_unit=subject.energy_unit,
         confidence=subject.confidence,
         true_interaction=truth,
+        adjusted_for=subject.adjusted_for,
         request=request,
         cells=told,
         outlooks=Table(OutlookRow, _outlooks(subject, request.drawn_at(told, kept), truth, progress)),

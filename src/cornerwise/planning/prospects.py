@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Mapping, Sequence
+from collections.abc import Collection, Mapping, Sequence
 from dataclasses import dataclass, replace
 from typing import Literal, NamedTuple
 
@@ -76,11 +76,18 @@ class Fixed(NamedTuple):
     variance: float
     dof: float
     kind: ComponentKind
+    sloping: bool = False  # the plateaus of its construct slope and are taken as they are
 
     @property
     def remedy(self) -> str:
         """What does make it smaller."""
-        return _REMEDIES[self.kind]
+        return _LEVEL_PLATEAUS if self.sloping else _REMEDIES[self.kind]
+
+
+_LEVEL_PLATEAUS = (
+    "set correct_sloping_plateaus = true in campaign.toml after a look at its plateaus, which slope, or "
+    "record it with better subtraction of leak and capacity"
+)
 
 
 _REMEDIES: Mapping[ComponentKind, str] = {
@@ -205,7 +212,9 @@ def _of_blocks(source: Blocks, weights: Sequence[float], scatters: Scatters) -> 
     ]
 
 
-def _recorded(source: Source, weights: Sequence[float], scatters: Scatters) -> tuple[list[Term], list[Fixed]]:
+def _recorded(
+    source: Source, weights: Sequence[float], scatters: Scatters, sloping: Collection[str] = ()
+) -> tuple[list[Term], list[Fixed]]:
     """What more can be recorded of a source, and what cannot."""
     gradient = _Gradient(source.components, weights)
     if isinstance(source, CellSource):
@@ -215,12 +224,16 @@ def _recorded(source: Source, weights: Sequence[float], scatters: Scatters) -> t
     if isinstance(source, Blocks):
         return _of_blocks(source, weights, scatters), []
     (part,) = source.parts(weights)
-    if source.components[0].kind in ("median", "charge") and not math.isinf(part.spread.dof):
+    kind, construct = source.components[0]
+    if kind in ("median", "charge") and not math.isinf(part.spread.dof):
         return [_of_cells(part, gradient, part.spread.dof + 1, scatters)], []
-    return [], [Fixed(part.name, *part.spread, source.components[0].kind)]
+    slopes = kind == "truncation" and construct in sloping
+    return [], [Fixed(part.name, *part.spread, kind, sloping=slopes)]
 
 
-def prospect(name: str, derived: Derived, ledger: Ledger, scatters: Scatters) -> Prospect:
+def prospect(
+    name: str, derived: Derived, ledger: Ledger, scatters: Scatters, sloping: Collection[str] = ()
+) -> Prospect:
     """What the uncertainty of a derived quantity is made of.
 
     Parameters
@@ -233,6 +246,8 @@ def prospect(name: str, derived: Derived, ledger: Ledger, scatters: Scatters) ->
         Its sources, grouped by batch where that is due.
     scatters : mapping of str to Scatter
         What constructs borrow that have too few cells to show a scatter.
+    sloping : collection of str
+        Constructs whose curves were read with plateaus that slope.
 
     Notes
     -----
@@ -244,7 +259,7 @@ def prospect(name: str, derived: Derived, ledger: Ledger, scatters: Scatters) ->
     terms, fixed = list[Term](), list[Fixed]()
     for source, gradient in ledger.gradients(derived):
         if any(gradient):
-            own, rest = _recorded(source, gradient, scatters)
+            own, rest = _recorded(source, gradient, scatters, sloping)
             terms += own
             fixed += [part for part in rest if part.variance > 0]
     return Prospect(name=name, value=derived.value, terms=tuple(terms), fixed=tuple(fixed))

@@ -31,7 +31,7 @@ class PlanRequest:
     recordings: int | None = None  # further cells to be split over all constructs
     criterion: Criterion = "mean"  # of the half-widths, which the split makes smallest
     anew: bool = False  # start without the pilot's cells, of which only the scatters are used
-    cycles: tuple[str, ...] = ()  # names; empty for all
+    cycles: tuple[str, ...] = ()  # names, or mutations in any order; empty for all
 
     def __post_init__(self) -> None:
         """Refuse what cannot be wanted."""

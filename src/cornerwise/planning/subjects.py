@@ -12,7 +12,7 @@ from ..energies import EnergyBook
 from ..errors import UsageError
 from ..interactions import interact
 from ..measurements import measure
-from ..mutations import Cycle
+from ..mutations import Cycle, name_of_cycle
 from ..units import EnergyUnit, convert_energy
 from .assumed import Assumptions, assumed_prospects
 from .pooling import pooled_scatters
@@ -33,18 +33,18 @@ class Subject:
     margin: float
     cycles: tuple[Prospect, ...]
     orders: tuple[int, ...]
+    adjusted_for: int  # cycles of the campaign, which p values are adjusted for
     ratios: tuple[Prospect, ...]  # logarithms of the mutants' charges over the wild type's
     notes: tuple[str, ...]
 
 
 def _chosen(campaign: Campaign, names: Sequence[str]) -> tuple[Cycle, ...]:
     known = {cycle.name: cycle for cycle in campaign.cycles}
-    unknown = [name for name in names if name not in known]
-    if unknown:
-        raise UsageError(f"no cycle is called {unknown[0]}; there are {', '.join(known)}")
     if not known:
         raise UsageError("no cycle is complete, so there is nothing to plan for")
-    return tuple(known[name] for name in dict.fromkeys(names)) or campaign.cycles
+    mutations = {name: [str(one) for one in cycle.mutations] for name, cycle in known.items()}
+    chosen = dict.fromkeys(name_of_cycle(name, mutations) for name in names)
+    return tuple(known[name] for name in chosen) or campaign.cycles
 
 
 def of_campaign(campaign: Campaign, request: PlanRequest, progress: Progress | None) -> Subject:
@@ -70,7 +70,7 @@ def of_campaign(campaign: Campaign, request: PlanRequest, progress: Progress | N
     book = EnergyBook(measure(campaign, step), settings)
     scatters = pooled_scatters(book.ledger)
     found = [interact(cycle, book, settings.wild_type) for cycle in cycles]
-    prospects = [prospect(one.cycle.name, one.energy, one.ledger, scatters) for one in found]
+    prospects = [prospect(one.cycle.name, one.energy, one.ledger, scatters, book.sloping) for one in found]
     ratios = []
     for label in dict.fromkeys(corner.label for cycle in cycles for corner in cycle.corners):
         compared = compared_charges(label, book, settings.wild_type)
@@ -84,6 +84,7 @@ def of_campaign(campaign: Campaign, request: PlanRequest, progress: Progress | N
         margin=settings.charge_margin,
         cycles=tuple(_started(one, request) for one in prospects),
         orders=tuple(cycle.order for cycle in cycles),
+        adjusted_for=len(campaign.cycles),
         ratios=tuple(_started(one, request) for one in ratios),
         notes=(
             *units_notes("interaction", [(one.cycle.name, one.units) for one in found]),
@@ -130,6 +131,7 @@ def of_assumptions(assumed: Assumptions, request: PlanRequest, confidence: float
         margin=settings.charge_margin,
         cycles=tuple(cycles),
         orders=(assumed.order,) * len(cycles),
+        adjusted_for=len(cycles),
         ratios=tuple(ratios),
         notes=(),
     )

@@ -3,16 +3,14 @@
 from __future__ import annotations
 
 from collections.abc import Iterable
-from difflib import get_close_matches
 
 from ..campaign import Settings, StatedCharge
-from ..errors import UsageError
-from ..mutations import parse_label
+from ..mutations import name_of_cycle
 from ..result import BudgetRow, ConstructRow, CornerCharge, InteractionRow, Result
 from ..units import in_percent
 from .legend import distance_words, percent
 from .planning import shares_words
-from .rounding import decimals_for, number, span, with_uncertainty
+from .rounding import decimals_for, freedom_words, number, span, with_uncertainty
 
 _STATED, _WILD_TYPES = "stated", "wild type"  # sources of charge, as the table of constructs names them
 
@@ -37,7 +35,8 @@ def explain(result: Result, cycle: str) -> str:
     UsageError
         If there is no cycle of that name; names the nearest.
     """
-    row = _find(result, cycle)
+    rows = {row.cycle: row for row in result.interactions}
+    row = rows[name_of_cycle(cycle, {name: one.mutations for name, one in rows.items()})]
     corners = [one for label, _ in row.corners for one in result.constructs if one.construct == label]
     budget = [part for part in result.budget if part.cycle == row.cycle]
     paragraphs = [
@@ -50,20 +49,6 @@ def explain(result: Result, cycle: str) -> str:
         _outlook(result, row, budget),
     ]
     return "\n\n".join(paragraph for paragraph in paragraphs if paragraph)
-
-
-def _find(result: Result, cycle: str) -> InteractionRow:
-    """The cycle of that name or of those mutations."""
-    rows = {row.cycle: row for row in result.interactions}
-    if cycle in rows:
-        return rows[cycle]
-    asked = set(map(str, parse_label(cycle) or ()))
-    for row in rows.values():
-        if asked == set(row.mutations):
-            return row
-    near = get_close_matches(cycle, rows, n=1)
-    hint = f"; did you mean {near[0]}?" if near else f"; there are {', '.join(rows)}"
-    raise UsageError(f"no cycle is called {cycle}{hint}")
 
 
 def _energy(result: Result, value: float | None, uncertainty: float | None) -> str:
@@ -105,8 +90,8 @@ def _interaction(result: Result, row: InteractionRow) -> str:
 def _kind(settings: Settings, dof: float) -> str:
     """How the interval and the p value beside it were formed."""
     if settings.interval == "monte-carlo":
-        return f"Monte Carlo; by Student's t with {dof:.1f} degrees of freedom"
-    return f"Student's t, {dof:.1f} degrees of freedom"
+        return f"Monte Carlo; by Student's t with {freedom_words(dof)}"
+    return f"Student's t, {freedom_words(dof)}"
 
 
 def _reason(row: InteractionRow, limit: float, threshold: str) -> str:

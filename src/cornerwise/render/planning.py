@@ -79,16 +79,28 @@ def _show_outlooks(plan: Plan, screen: Console) -> None:
     cycles = dict.fromkeys(row.cycle for row in plan.outlooks)
     width = f"Half-width of the {percent(plan.confidence)} interval, {_unit(plan)}"
     power = f"Power against {plan.true_interaction:.3g} {plan.energy_unit}, %"
-    for heading, words in ((width, half_width_words), (power, power_words)):
+    for heading, below, words in (
+        (width, "", half_width_words),
+        (power, power_sentence(plan), power_words),
+    ):
         grid = _plain_grid(headers, ("cycle",))
         for cycle in cycles:
             grid.add_row(*map(Text, (cycle, *(words(rows[cycle, cells]) for cells in shown))))
-        _show_grid(screen, heading, grid)
+        _show_grid(screen, heading, grid, below)
 
 
-def _show_grid(screen: Console, heading: str, grid: Grid) -> None:
+def power_sentence(plan: Plan) -> str:
+    """What power counts, and what it leaves out."""
+    cycles = plan.adjusted_for
+    adjusted = f"; the verdicts also need the p value adjusted for {cycles} cycles" if cycles > 1 else ""
+    return f"power: that the {percent(plan.confidence)} interval of this cycle alone excludes 0{adjusted}"
+
+
+def _show_grid(screen: Console, heading: str, grid: Grid, below: str = "") -> None:
     screen.print()
     screen.print(Text(heading, style="bold"))
+    if below:
+        screen.print(Text(below))
     screen.print(grid)
 
 
@@ -101,7 +113,9 @@ def goal_words(row: NeedRow, plan: Plan) -> str:
     if row.goal == "half-width":
         return f"a half-width of {row.wanted:.3g} {plan.energy_unit}"
     if row.goal == "power":
-        return f"a power of {percent(row.wanted)} against {plan.true_interaction:.3g} {plan.energy_unit}"
+        alone = " (p not adjusted)" if plan.adjusted_for > 1 else ""
+        truth = f"{plan.true_interaction:.3g} {plan.energy_unit}"
+        return f"a power of {percent(row.wanted)} against {truth}{alone}"
     return (
         f"the verdict {row.goal.removeprefix('charge ')} on a charge with {percent(row.wanted)} probability"
     )
@@ -175,8 +189,6 @@ def legend(plan: Plan) -> list[str]:
     lines = [
         "in parentheses: what 8 of 10 outcomes lie between, the scatters being as uncertain as the cells "
         "they are known from leave them",
-        f"power: how often the {percent(plan.confidence)} interval excludes 0 if the true interaction is so "
-        "large; not adjusted for the number of cycles",
         "cells each: curves and charges of every construct brought to that number, those with more keep them",
     ]
     if any(row.further is not None for row in plan.needs):

@@ -6,6 +6,7 @@ from typing import IO
 
 from rich.text import Text
 
+from ..ranking import FEWEST_TO_SHRINK
 from ..result import RankRow, Result
 from .legend import (
     CAUTION,
@@ -45,7 +46,8 @@ def print_ranking(result: Result, stream: IO[str]) -> None:
         f"I, interval, at least and shrunken in {unit_phrase(settings)}; ranked {_ORDERS[settings.rank_by]}",
         "at least: lower limit of the absolute size; 0 where the interval includes 0",
         f"ranks: those the data allow at {level}; first {settings.first}: probability of being among them",
-        "shrunken: the strongest of many tend to exaggerate; this is what to expect of a repetition",
+        "shrunken: the strongest of many tend to exaggerate; this is what to expect of a repetition; it "
+        f"takes {FEWEST_TO_SHRINK} cycles",
         "native pair: opposite charges make a candidate salt bridge and no more",
         *_distance_legend(result),
         *sign_sentences({row.order for row in result.interactions}),
@@ -96,7 +98,7 @@ def _line(row: RankRow, uncertainty: float | None) -> list[str]:
         number(row.strength_low, decimals),
         f"{row.rank_low} to {row.rank_high}",
         "" if row.first_probability is None else f"{row.first_probability:.2f}",
-        number(row.shrunken, decimals),
+        number(row.shrunken, decimals) or "-",
         row.interaction_verdict,
         ", ".join(native),
     ]

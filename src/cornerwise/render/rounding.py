@@ -9,6 +9,7 @@ from typing import TypeGuard
 Decimals = Callable[[float | None], int | None]
 
 SMALLEST_P = 1e-4  # smaller ones are told as a limit
+MOST_FREEDOM = 1000  # degrees; with more Student's t is told from the normal distribution by nobody
 _ONE_DIGIT_FROM, _NEXT_POWER_FROM = 3.55, 9.5
 
 
@@ -115,6 +116,23 @@ def p_words(p: float | None) -> str:
     if p < SMALLEST_P:
         return f"< {SMALLEST_P:.4f}"
     return f"{p:.2g}" if p < 0.1 else f"{p:.2f}"
+
+
+def freedom_words(dof: float | None) -> str:
+    """Degrees of freedom in a sentence or a list of facts; very many are told as a limit.
+
+    Examples
+    --------
+    >>> freedom_words(11.42)
+    '11.4 degrees of freedom'
+    >>> freedom_words(715546.4)
+    'more than 1000 degrees of freedom, as good as normal'
+    """
+    if dof is None:
+        return ""
+    if dof > MOST_FREEDOM:
+        return f"more than {MOST_FREEDOM} degrees of freedom, as good as normal"
+    return f"{dof:.1f} degrees of freedom"
 
 
 def typeset(text: str) -> str:

@@ -2,6 +2,7 @@
 
 import html
 import re
+from dataclasses import replace
 from html.parser import HTMLParser
 from pathlib import Path
 
@@ -13,9 +14,12 @@ from cornerwise.campaign import StatedCharge
 from cornerwise.coupling import couple
 from cornerwise.render.explanation import explain
 from cornerwise.render.methods import methods_paragraphs
+from cornerwise.render.report.next_recordings import next_views
 from cornerwise.render.report.page import RESEARCH_ONLY, report_html
+from cornerwise.render.report.views import CycleViews
 from cornerwise.render.rounding import span, typeset, with_uncertainty
-from cornerwise.result import Result
+from cornerwise.result import NextStepRow, Result
+from cornerwise.tables import Table
 
 
 @pytest.fixture(scope="module")
@@ -137,6 +141,14 @@ def test_what_to_record_next_is_told_for_every_unresolved_cycle(result: Result, 
     )
     assert not settled.next_steps
     assert "Every interaction that has an uncertainty is settled." in report_html(settled)
+
+
+def test_the_level_of_a_half_width_that_is_adjusted_stands_beside_it(result: Result) -> None:
+    usual = replace(result.next_steps[0], half_width=2.0, confidence=result.settings.confidence)
+    adjusted = replace(usual, half_width=2.95, confidence=1 - 0.05 / 7)
+    cycles = CycleViews(result, with_figures=False).all()
+    steps = replace(result, next_steps=Table(NextStepRow, [usual, adjusted]))
+    assert [view.now for view in next_views(steps, cycles)] == ["2.00", "2.95 (at 99.3 %)"]
 
 
 SETTLED = {"WT": -40.0, "E5A": -33.0, "R9Q": -52.0, "E5A/R9Q": -20.0}

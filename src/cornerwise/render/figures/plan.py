@@ -7,6 +7,7 @@ from collections.abc import Sequence
 from ...plan_rows import OutlookRow
 from ...planning.plan import Plan
 from ..legend import percent
+from ..planning import power_sentence
 from .marks import Point, Sheet
 from .scales import Scale, rule_below, rule_beside
 from .style import FULL_WIDTH_MM, HAIRLINE, SINGLE_COLUMN_MM, SMALL_TYPE, TALLEST_MM, WIDTHS_MM
@@ -62,10 +63,12 @@ def _sheet(panels: Sequence[Sequence[OutlookRow]], across: int, plan: Plan, widt
 
 def _legend(plan: Plan) -> list[str]:
     wanted = [" Dashed: what is wanted."] if plan.request.half_width is not None else [""]
+    sentence = power_sentence(plan)
     return [
         f"Half-width of the {percent(plan.confidence)} interval per channel and its power against a true "
         f"interaction of {plan.true_interaction:.3g} {plan.energy_unit}, if every scatter is what it seems; "
-        f"shaded: what 8 of 10 outcomes lie between.{wanted[0]}"
+        f"shaded: what 8 of 10 outcomes lie between.{wanted[0]}",
+        f"{sentence[0].upper()}{sentence[1:]}.",
     ]
 
 

@@ -5,11 +5,19 @@ from __future__ import annotations
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
 
-from ..rounding import DIGIT_RULES, SMALLEST_P, decimals_for, number, p_words, span, with_uncertainty
+from ..rounding import (
+    DIGIT_RULES,
+    MOST_FREEDOM,
+    SMALLEST_P,
+    decimals_for,
+    number,
+    p_words,
+    span,
+    with_uncertainty,
+)
 from .document import MISSING, Cell
 from .words import printable
 
-MOST_FREEDOM = 1000  # more are told as a limit: Student's t is then the normal distribution
 Limits = tuple[float | None, float | None]
 
 

@@ -10,6 +10,7 @@ from ...result import CellRow, Result
 from ..legend import CAUTION, interval_words, percent, sign_sentences
 from ..methods import ADJUSTMENTS, batch_sentence, charge_sentence, counted
 from ..ordering import grouped
+from ..rounding import MOST_FREEDOM
 from .document import MISSING, Group, Note
 from .words import Words, joined, words
 
@@ -34,7 +35,9 @@ def coupling_notes(result: Result, columns: Collection[str]) -> list[Note]:
         "simultaneous": words("Interval for all cycles: holds every cycle at once at that level."),
         "dof": _FREEDOM,
         "p_adjusted": _adjusted(result),
-        "shrunken": words("Shrunken *I*: less what chance is likely to have added to the strongest."),
+        "shrunken": words(
+            "Shrunken *I*: less what chance is likely to have added to the strongest; takes four cycles."
+        ),
         "rank": words("Rank by strength, with the ranks that the data allow."),
         "cells": words("*n*, cells behind the median voltage of a corner, fewest to most."),
         "batches": _batches(result),
@@ -167,7 +170,10 @@ def _adjusted(result: Result) -> Words:
     return words(f"*p*~adj~, two-sided *p* value adjusted for {counted(number, 'cycle')} by {name}.")
 
 
-_FREEDOM = words("*ν*, Welch-Satterthwaite degrees of freedom.")
+_FREEDOM = words(
+    f"*ν*, Welch-Satterthwaite degrees of freedom; with more than {MOST_FREEDOM} Student's *t* is as good as "
+    "normal."
+)
 _FAVOURS = words(
     "Favours: the state that the native residues' interaction favours, where its sign is established."
 )

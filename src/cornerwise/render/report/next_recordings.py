@@ -6,6 +6,7 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 
 from ...result import InteractionRow, NextStepRow, Result
+from ...units import in_percent
 from ..planning import shares_words
 from ..rounding import decimals_for, number
 from .views import CycleView
@@ -37,18 +38,20 @@ def next_views(result: Result, cycles: Sequence[CycleView]) -> list[NextView]:
     """
     anchors = {one.row.cycle: one.anchor for one in cycles}
     rows = sorted(result.next_steps, key=lambda row: (row.further is None, row.further or 0))
-    return [_view(row, anchors[row.cycle]) for row in rows]
+    return [_view(row, anchors[row.cycle], result.settings.confidence) for row in rows]
 
 
-def _view(row: NextStepRow, anchor: str) -> NextView:
+def _view(row: NextStepRow, anchor: str, confidence: float) -> NextView:
     decimals = decimals_for(row.half_width, 3)
+    adjusted = row.half_width is not None and row.confidence > confidence
+    level = f" (at {in_percent(row.confidence, 1)})" if adjusted else ""
     which = shares_words(row.shares)
     if row.limit is not None:
         which = f"held back by {row.limit}: {row.remedy}"
     return NextView(
         anchor=anchor,
         row=row,
-        now=number(row.half_width, decimals),
+        now=number(row.half_width, decimals) + level,
         wanted=number(row.half_width_wanted, decimals),
         next="" if row.limit is not None else f"{row.next_construct}, {row.next_kind}",
         after="" if row.limit is not None else number(row.half_width_after_next, decimals),

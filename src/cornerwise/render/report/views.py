@@ -8,6 +8,7 @@ from dataclasses import dataclass
 from markupsafe import Markup
 
 from ...flags import Flag
+from ...ranking import FEWEST_TO_SHRINK
 from ...result import BackgroundRow, CellRow, ConstructRow, InteractionRow, Result
 from ..explanation import explain
 from ..figures.files import CycleFigures
@@ -15,7 +16,7 @@ from ..figures.style import SINGLE_COLUMN_MM
 from ..figures.vector import svg_inline
 from ..legend import distance_words
 from ..ordering import by_strength, grouped
-from ..rounding import decimals_for, number, p_words, span, typeset, with_uncertainty
+from ..rounding import decimals_for, freedom_words, number, p_words, span, typeset, with_uncertainty
 from .strips import Strips
 
 FIGURE_TITLES = {
@@ -221,14 +222,12 @@ def _facts(row: InteractionRow) -> list[tuple[str, str]]:
         ("bootstrap interval", span((row.boot_low, row.boot_high), u)),
         ("Monte Carlo interval", span((row.monte_carlo_low, row.monte_carlo_high), u)),
         ("interval for all cycles at once", span((row.simultaneous_low, row.simultaneous_high), u)),
-        ("degrees of freedom", "" if row.dof is None else f"{row.dof:.1f}"),
+        ("degrees of freedom", freedom_words(row.dof).replace(" degrees of freedom", "")),
         ("p, p adjusted", ", ".join(filter(None, (p_words(row.p_value), p_words(row.p_adjusted))))),
         ("rank", rank_words(row)),
         (
             "expected of a repetition (shrunken)",
-            ""
-            if row.shrunken == row.interaction
-            else _with_unit(number(row.shrunken, decimals_for(u)), unit),
+            _shrunken(row),
         ),
         ("native pair", row.opposite_charges or ""),
         ("distance of side chains", distance_words(row)),
@@ -257,6 +256,13 @@ def _lower_order(row: BackgroundRow) -> tuple[str, str, str, str]:
         typeset(with_uncertainty(row.interaction, row.std_uncertainty)),
         typeset(span((row.low, row.high), row.std_uncertainty)),
     )
+
+
+def _shrunken(row: InteractionRow) -> str:
+    """What to expect of a repetition, or why that is not known."""
+    if row.shrunken is None:
+        return "" if row.rank is None else f"takes {FEWEST_TO_SHRINK} cycles"
+    return _with_unit(number(row.shrunken, decimals_for(row.std_uncertainty)), row.energy_unit)
 
 
 def _with_unit(text: str, unit: str) -> str:
