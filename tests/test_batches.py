@@ -199,6 +199,8 @@ def test_a_construct_alone_counts_batches_only_when_they_are_its_own() -> None:
     _, (shared,) = alone(book.ledger, "WT", book.shared_batches)
     ledger, (own,) = alone(book.ledger, "A1G/C2S", book.shared_batches)
     assert (shared.rule, own.rule) == ("cells", "batch means")
+    assert shared.reason == "other constructs share the batches, so it holds for the batches recorded"
+    assert own.reason == "it has batches of its own"
     energy = book.energies["A1G/C2S"].energy
     values = made[3].median_mv.values
     halves = np.array([values[:2].mean(), values[2:].mean()])

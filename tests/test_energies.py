@@ -14,7 +14,7 @@ from cornerwise.interactions import interact, interaction_draws
 from cornerwise.measurements import Measurement
 from cornerwise.mutations import Cycle, find_cycles
 from cornerwise.quantities import Summary
-from cornerwise.sources import linear
+from cornerwise.sources import Component, linear
 from cornerwise.units import EnergyUnit
 
 LABELS = ("WT", "A1G", "C2S", "A1G/C2S")
@@ -284,3 +284,48 @@ def test_third_order_is_the_change_of_a_pair_between_backgrounds() -> None:
     found = interact(triple, book, "WT").energy
     assert found.value == pytest.approx(KCAL * 10 * (in_third_mutant - in_wild_type))
     assert book.ledger.spread(found).variance == pytest.approx((KCAL * 10) ** 2 * 8)
+
+
+def test_draws_of_paired_cells_are_resampled_products() -> None:
+    rng = np.random.default_rng(3)
+    v, q = rng.normal(-40, 8, 6), rng.normal(13, 2, 6)
+    book = _book([measurement("WT", cells(v), cells(q))])
+    by_cell = book.ledger.draws(Component("charge x median", "WT"))
+    assert book.energy_draws("WT") == pytest.approx(KCAL * by_cell, rel=1e-12)
+
+
+@pytest.mark.parametrize("paired", [True, False])
+@pytest.mark.parametrize("conservative", [True, False])
+def test_draws_lie_around_the_energy_at_the_reference_voltage(conservative: bool, paired: bool) -> None:
+    rng = np.random.default_rng(4)
+    v, q = rng.normal(-40, 0.5, 8), rng.normal(13, 0.1, 8)
+    made = [measurement("WT", cells(v), cells(q, "c" if paired else "n"))]
+    book = _book(made, reference_voltage_mv=-60.0, replicates=20_000)
+    energy = book.energies["WT"].energy
+    assert energy.value == pytest.approx(KCAL * 13 * 20, rel=0.02)
+    drawn = book.energy_draws("WT", conservative=conservative)
+    assert drawn.mean() == pytest.approx(energy.value, abs=0.01)
+    # The reference voltage meets the same drawn charge: Q (V - Vref) and not Q V - constant.
+    assert drawn.std() == pytest.approx(math.sqrt(book.ledger.spread(energy).variance), rel=0.25)
+
+
+@pytest.mark.parametrize("paired", [True, False])
+def test_an_offset_moves_the_draws_the_way_it_moves_the_energy(paired: bool) -> None:
+    rng = np.random.default_rng(5)
+    v, q = rng.normal(-40, 0.01, 5), rng.normal(13, 0.001, 5)
+    book = _book([measurement("WT", cells(v), cells(q, "c" if paired else "n"))], voltage_offset_mv=2.0)
+    offset = book.ledger.draws(Component("voltage offset"))
+    moved = book.energy_draws("WT") - book.energies["WT"].energy.value
+    sensitivity = book.energies["WT"].energy.sensitivities[Component("voltage offset")]
+    assert sensitivity == pytest.approx(KCAL * 13.0, rel=1e-3)
+    assert moved == pytest.approx(sensitivity * offset, abs=0.02)
+
+
+def test_draws_of_partly_shared_cells_hold_their_covariance() -> None:
+    v = {"c0": -60.0, "c1": -20.0, "a": -39.0, "b": -41.0}
+    q = {"c0": 10.0, "c1": 16.0, "d": 13.0, "e": 13.5}
+    book = _book([measurement("WT", v, q)], replicates=200_000)
+    covariance, means = 120.0, -40.0 * 13.125
+    # The mean of the products of resampled means adds cov(mean v, mean q): 2 of 4 x 4 cells.
+    expected = KCAL * (means + covariance * (1 - 2 / 16) + covariance * 2 / 16 / (4 / 3))
+    assert book.energy_draws("WT").mean() == pytest.approx(expected, abs=0.1)

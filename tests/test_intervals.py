@@ -3,6 +3,7 @@ import math
 import numpy as np
 import pytest
 from scipy import stats
+from statsmodels.stats.multitest import multipletests
 
 from cornerwise import intervals
 from cornerwise.intervals import Interval
@@ -75,3 +76,22 @@ def test_where_an_interval_lies(
     assert interval.excludes(0.0) == excludes_0
     assert interval.inside(-1, 1) == inside_1
     assert interval.outside(-1, 1) == outside_1
+
+
+@pytest.mark.parametrize(("method", "name"), [("holm", "holm"), ("benjamini-hochberg", "fdr_bh")])
+@pytest.mark.parametrize("p", [[0.01, 0.04, 0.03, 0.9, 0.005], [0.02, 0.02, 0.5, 0.02], [0.6], [0.0, 1.0]])
+def test_adjusted_p_values_against_statsmodels(
+    p: list[float], method: intervals.Adjustment, name: str
+) -> None:
+    adjusted = intervals.adjusted_p_values([*p[:1], math.nan, *p[1:]], method)
+    assert math.isnan(adjusted.pop(1))
+    assert adjusted == pytest.approx(multipletests(p, method=name)[1])
+    if method == "holm":
+        assert intervals.adjusted_p_values(p) == pytest.approx(adjusted)
+
+
+def test_an_interval_that_ends_at_a_bound_is_not_outside_it() -> None:
+    assert not Interval(-3.0, -1.0).outside(-1.0, 1.0)
+    assert not Interval(1.0, 3.0).outside(-1.0, 1.0)
+    assert Interval(1.1, 3.0).outside(-1.0, 1.0)
+    assert Interval(-3.0, -1.1).outside(-1.0, 1.0)

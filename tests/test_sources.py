@@ -263,3 +263,21 @@ def test_conservative_draws_of_partly_shared_cells() -> None:
     assert np.cov(drawn) == pytest.approx(of_means * dof / (dof - 2), rel=0.03)
     means = [row[seen].mean() for row, seen in zip(source.values, source.shown, strict=True)]
     assert drawn.mean(axis=1) == pytest.approx(means, abs=0.01)
+
+
+def test_footprint_has_one_error_a_cell() -> None:
+    source = _partly(14, 2, 3, 1)
+    gradient = np.array([2.0, -1.0])
+    (errors,) = source.footprint(list(gradient)).values()
+    per_cell = np.zeros(6)
+    for weight, row, shown in zip(gradient, source.values, source.shown, strict=True):
+        n = shown.sum()
+        per_cell[shown] += weight * (row[shown] - row[shown].mean()) / math.sqrt(n * (n - 1))
+    assert errors.shape == (6,)
+    assert errors / np.linalg.norm(errors) == pytest.approx(per_cell / np.linalg.norm(per_cell))
+    assert float(np.sum(errors**2)) == pytest.approx(source.spread(list(gradient)).variance)
+
+
+def test_cells_that_are_all_alike_leave_no_footprint() -> None:
+    source = cell_source("alike", {V: _sample(cells([2.0, 2.0, 2.0]))})
+    assert np.array_equal(source.footprint([3.0])[V], np.zeros(3))

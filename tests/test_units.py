@@ -47,3 +47,8 @@ def test_refusals_of_unknown_units_list_those_there_are() -> None:
 )
 def test_percentages_in_sentences(fraction: float, options: dict, text: str) -> None:
     assert units.in_percent(fraction, **options) == text
+
+
+@pytest.mark.parametrize(("unit", "coulomb"), [("fC", 1e-15), ("pC", 1e-12), ("nC", 1e-9)])
+def test_elementary_charges_in_a_unit(unit: units.ChargeUnit, coulomb: float) -> None:
+    assert units.elementary_charges(unit) == pytest.approx(coulomb / 1.602176634e-19, rel=1e-12)
