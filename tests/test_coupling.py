@@ -11,6 +11,7 @@ from scipy import stats
 
 from cornerwise.campaign import Campaign, ChargeSummary, Construct, StatedCharge
 from cornerwise.coupling import couple
+from cornerwise.mutations import CycleRequest
 from cornerwise.result import Result
 
 RNG = np.random.default_rng(11)
@@ -194,3 +195,21 @@ def test_ranks_follow_strength() -> None:
     ranked = sorted(_ranked(campaign([*FOUR, *more])), key=lambda pair: pair[0] or 0)
     assert [rank for rank, _ in ranked] == [1, 2, 3]
     assert [size for _, size in ranked] == sorted((size for _, size in ranked), reverse=True)
+
+
+@pytest.mark.parametrize(("lone", "named"), [(5, 5), (6, 5)])
+def test_constructs_in_no_cycle_are_noted(lone: int, named: int) -> None:
+    """One line each up to five, which is what the survey prints, and the number of the others."""
+    doubles = [f"E5A/K{70 + i}M" for i in range(lone)]
+    given = campaign([*FOUR, *(construct(label, _cells(-31)) for label in doubles)])
+    notes = [note for note in couple(given).notes if "no cycle" in note]
+    assert notes[:named] == [f"{label}: no cycle, it lacks {label[4:]}" for label in doubles[:named]]
+    assert len(notes) == named + (lone > named)
+    assert lone == named or notes[-1].startswith("no cycle of 1 more construct either")
+
+
+def test_constructs_left_out_of_the_cycles_asked_for_are_not_noted() -> None:
+    lone = campaign([*FOUR, construct("E5A/K7M", _cells(-31))])
+    asked = dataclasses.replace(lone, requests=(CycleRequest(mutations=lone.cycles[0].mutations),))
+    assert any("no cycle" in note for note in couple(lone).notes)
+    assert not any("no cycle" in note for note in couple(asked).notes)

@@ -14,11 +14,14 @@ from .construct_rows import cell_rows, construct_row
 from .energies import EnergyBook
 from .interaction_rows import Corners, interaction_rows
 from .measurements import SET_ASIDE, Measurement, measure
+from .mutations import incomplete_cycles, lacking
 from .plan_rows import NextStepRow
 from .planning.next_steps import next_steps
 from .result import Result
 from .rows import BackgroundRow, BudgetRow, CellRow, ConstructRow, InteractionRow
 from .tables import Table
+
+MOST_INCOMPLETE = 5  # constructs without a cycle that are named
 
 _RECORDED_VERSIONS = ("cornerwise", "numpy", "scipy", "pandas")
 
@@ -62,6 +65,20 @@ def _notes(measurements: Sequence[Measurement], settings: Settings) -> tuple[str
             f"{settings.subunits}; it has been divided nowhere but in per_subunit.csv"
         )
     return tuple(notes)
+
+
+def _incomplete_notes(campaign: Campaign) -> tuple[str, ...]:
+    """Constructs with two mutations or more that are in no energy, since their cycle lacks a corner."""
+    if campaign.requests:  # whoever names the cycles to be computed leaves out the others on purpose
+        return ()
+    labels = {frozenset(construct.mutations): construct.label for construct in campaign.constructs}
+    incomplete = incomplete_cycles(labels)
+    told = [lacking(label, missing) for label, missing in incomplete[:MOST_INCOMPLETE]]
+    if more := len(incomplete) - len(told):
+        told.append(
+            f"no cycle of {more} more construct{'s' * (more > 1)} either; cornerwise check names them all"
+        )
+    return tuple(told)
 
 
 def _units_notes(
@@ -148,6 +165,7 @@ def couple(campaign: Campaign, progress: Progress | None = None) -> Result:
         flags=(*(flag for _, own, _ in described for flag in own), *flags),
         notes=(
             *campaign.notes,
+            *_incomplete_notes(campaign),
             *_notes(measured, settings),
             *_units_notes(interactions, list(rows.values())),
             *ranking_notes(interactions),

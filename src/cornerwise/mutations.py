@@ -339,6 +339,17 @@ def incomplete_cycles(labels: Mapping[Mutations, str]) -> tuple[tuple[str, tuple
     return tuple((label, missing) for label, missing in lacking if missing)
 
 
+def lacking(label: str, missing: Iterable[str]) -> str:
+    """Say of a construct what its cycle lacks, both as `incomplete_cycles` gives them.
+
+    Examples
+    --------
+    >>> lacking("E181A/R212Q", ["R212Q"])
+    'E181A/R212Q: no cycle, it lacks R212Q'
+    """
+    return f"{label}: no cycle, it lacks {', '.join(missing)}"
+
+
 def _named_or_counted(mutations: Mutations, labels: Mapping[Mutations, str]) -> tuple[str, ...]:
     if len(mutations) <= HIGHEST_LISTED_ORDER:
         return missing_corners(mutations, labels)

@@ -1,12 +1,13 @@
 """Labels to mutations, the background, and which cycles there are."""
 
+from collections.abc import Sequence
 from pathlib import Path
 
 import pytest
 
 from cornerwise.campaign import Campaign
 from cornerwise.intake import read
-from intake.writing import LABELS, TOML, assert_refused, curve_rows, folder, problems
+from intake.writing import LABELS, TOML, assert_refused, curve_rows, folder, problems, wide_rows
 
 
 def campaign(path: Path, labels: tuple[str, ...], toml: str = TOML) -> Campaign:
@@ -127,10 +128,8 @@ def test_mutations_of_a_construct_without_data(label: str, match: str, tmp_path:
 
 def test_a_wild_type_without_data(tmp_path: Path) -> None:
     path = folder(tmp_path / "a", TOML.replace("WT", "WT1"))
-    found = problems(path)
-    assert found[0].origin.column == "wild_type"
-    assert "the wild type 'WT1', of which there are no data" in str(found[0])
-    assert "did you mean 'WT'?" in str(found[0])
+    match = r"the wild type 'WT1', of which there are no data.*did you mean 'WT'\?"
+    assert_refused(path, file="campaign.toml", column="wild_type", match=match)
 
 
 @pytest.mark.parametrize(
@@ -158,3 +157,64 @@ def test_a_setting_below_the_mutations(tmp_path: Path) -> None:
 def test_mutations_that_are_no_table(tmp_path: Path) -> None:
     path = folder(tmp_path / "a", TOML + 'mutations = ["E181A"]\n')
     assert_refused(path, file="campaign.toml", column="mutations", match="a list; expected a table")
+
+
+def _charges(labels: Sequence[str]) -> str:
+    return "construct,cell,charge_e0\n" + "".join(f"{label},c1,13\n" for label in labels)
+
+
+@pytest.mark.parametrize("wide", [False, True])
+def test_a_label_misspelt_in_the_curves_is_told_there(wide: bool, tmp_path: Path) -> None:
+    """The singles tell which of two spellings of a double is meant; the other way would lose the cycle."""
+    labels = [label.replace("E181A/", "E18A/") for label in LABELS]
+    curves = wide_rows(f"{label}/c1" for label in labels) if wide else curve_rows(labels)
+    place = (1, "E18A/R212Q/c1") if wide else (26, "construct")
+    path = folder(tmp_path / "a", curves=curves, charges=_charges(LABELS))
+    match = (
+        "'E18A/R212Q', where charges.csv has 'E181A/R212Q'.*did you mean 'E181A/R212Q'.*correct curves.csv"
+    )
+    assert_refused(path, file="curves.csv", row=place[0], column=place[1], match=match)
+
+
+def test_a_label_misspelt_in_the_charges_is_told_there(tmp_path: Path) -> None:
+    charges = _charges([label.replace("E181A/", "E18A/") for label in LABELS])
+    path = folder(tmp_path / "a", charges=charges)
+    match = "charges of 'E18A/R212Q'.*did you mean 'E181A/R212Q'"
+    assert_refused(path, file="charges.csv", row=5, column="construct", match=match)
+
+
+@pytest.mark.parametrize(("label", "match"), [("E181", "did you mean 'E181A'"), ("wt", "write 'WT'")])
+def test_a_label_that_cannot_be_read_is_told_once(label: str, match: str, tmp_path: Path) -> None:
+    """Neither its charges nor those of the label that was meant are called missing beside it."""
+    meant = "WT" if label == "wt" else "E181A"
+    spoilt = [label if one == meant else one for one in LABELS]
+    toml = 'wild_type = "WT"\n'
+    path = folder(tmp_path / "a", toml, charges=_charges(spoilt))
+    assert_refused(path, file="charges.csv", row=2 + LABELS.index(meant), column="construct", match=match)
+    path = folder(tmp_path / "b", toml, curves=curve_rows(spoilt), charges=_charges(LABELS))
+    row = 2 + 8 * LABELS.index(meant)
+    assert_refused(path, file="curves.csv", row=row, column="construct", match=match)
+
+
+@pytest.mark.parametrize(
+    ("named", "there", "match"),
+    [
+        ("wt", "WT", "did you mean 'WT'"),
+        ("wildtype", "WT", "did you mean 'WT'"),
+        ("WTT", "WT", "did you mean 'WT'"),
+        ("C52S", "WT", "did you mean 'WT'"),
+        ("control", "WT9", "correct the label"),
+    ],
+)
+def test_a_wild_type_spelt_otherwise_than_in_the_tables(
+    named: str, there: str, match: str, tmp_path: Path
+) -> None:
+    """Read on as it is spelt there; a label with a number may be a mutant's and is not taken for it."""
+    labels = (there, *LABELS[1:])
+    toml = f'wild_type = "{named}"\n'
+    path = folder(tmp_path / "a", toml, curves=curve_rows(labels), charges=_charges(labels))
+    first, *others = problems(path)
+    assert (first.origin.file, first.origin.row, first.origin.column) == ("campaign.toml", 1, "wild_type")
+    assert f"the wild type '{named}', of which there are no data" in first.found
+    assert match in first.remedy
+    assert bool(others) == (match == "correct the label")

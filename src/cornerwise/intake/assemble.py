@@ -6,13 +6,14 @@ from collections import defaultdict
 
 from ..campaign import Campaign, ChargeReplicate, ChargeSummary, Construct, Curve, OpeningCurve
 from ..mutations import Mutation
-from .checks import check
+from .checks import check, meant_wild_type
 from .cycles import cycles_of
 from .exclusions import check_exclusions
 from .findings import Findings, refuse_many
 from .labels import Genotypes, read_genotypes
 from .pair_distances import pair_distances
 from .parts import Parts
+from .shared_cells import unpaired_cells
 
 MOST_CONSTRUCTS = 5000
 
@@ -35,8 +36,9 @@ def assemble(parts: Parts, findings: Findings) -> Campaign:
     if len(parts.seen) > MOST_CONSTRUCTS:
         refuse_many(f"{len(parts.seen)} constructs", MOST_CONSTRUCTS, findings)
         return Campaign(settings=parts.settings, constructs=(), cycles=())
+    parts = meant_wild_type(parts, findings)
     genotypes = read_genotypes(parts.seen, parts.settings.wild_type, parts.listed, findings)
-    check(parts, genotypes.aliases, findings)
+    check(parts, genotypes, findings)
     known = parts.settings.wild_type in parts.seen
     cycles = (
         cycles_of(parts.requests, genotypes, parts.document, findings)
@@ -44,7 +46,7 @@ def assemble(parts: Parts, findings: Findings) -> Campaign:
         else ()
     )
     check_exclusions(parts, cycles if parts.requests else (), findings)
-    distances, notes = pair_distances(parts, genotypes, cycles, findings)
+    distances, of_distances = pair_distances(parts, genotypes, cycles, findings)
     return Campaign(
         settings=parts.settings,
         constructs=_constructs(parts, genotypes),
@@ -54,7 +56,7 @@ def assemble(parts: Parts, findings: Findings) -> Campaign:
         exclusions=tuple(parts.exclusions),
         inputs=parts.inputs,
         distances=distances,
-        notes=notes,
+        notes=(*parts.notes, *unpaired_cells(parts), *of_distances),
     )
 
 

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections import Counter, defaultdict
-from collections.abc import Collection, Mapping
+from collections.abc import Collection, Iterable, Mapping
 from dataclasses import dataclass
 
 from ..errors import Origin
@@ -24,6 +24,10 @@ class Genotypes:
     def labels(self) -> dict[Mutations, str]:
         """The construct that carries exactly these mutations."""
         return {frozenset(mutations): label for label, mutations in self.by_label.items()}
+
+    def refused(self, labels: Iterable[str]) -> set[str]:
+        """Those of `labels` that were refused as they are spelt."""
+        return set(labels) - self.by_label.keys()
 
 
 def read_genotypes(

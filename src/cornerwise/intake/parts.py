@@ -38,6 +38,7 @@ class Parts:
     model: Model | None  # what the structure's file holds; None when it could not be read
     charges_file: str | None  # None when there is no table of charges
     inputs: tuple[InputFile, ...]
+    notes: tuple[str, ...] = ()  # what a reader of the numbers should know of the files
 
     @property
     def seen(self) -> dict[str, Origin]:

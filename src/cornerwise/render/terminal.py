@@ -15,6 +15,7 @@ from rich.text import Text
 
 from ..campaign import Settings
 from ..flags import Flag
+from ..mutations import lacking
 from ..result import Result
 from ..surveying import Survey, SurveyRow
 from .legend import (
@@ -338,7 +339,7 @@ def _show_survey(survey: Survey, screen: Console) -> None:
     screen.print()
     count = len(survey.cycles)
     lines = [f"{count} complete cycle{'' if count == 1 else 's'}: {', '.join(survey.cycles)}"]
-    lines += [f"{label}: no cycle, it lacks {', '.join(missing)}" for label, missing in survey.incomplete]
+    lines += [lacking(label, missing) for label, missing in survey.incomplete]
     if survey.background:
         lines.append(f"Background of every construct: {'/'.join(survey.background)}")
     lines += [f"Note: {note}" for note in survey.notes]
