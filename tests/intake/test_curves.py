@@ -13,6 +13,7 @@ from intake.writing import (
     VOLTAGES,
     Rows,
     assert_refused,
+    changed,
     content,
     curve_rows,
     folder,
@@ -131,10 +132,76 @@ def test_a_point_twice(tmp_path: Path) -> None:
     )
 
 
-def test_every_repeated_point_is_told(tmp_path: Path) -> None:
+@pytest.mark.parametrize(
+    ("points", "match"), [(1, "the other in row 2; expected"), (3, "row 2, and 2 more voltages twice; exp")]
+)
+def test_repeated_points_of_a_cell_are_told_once(points: int, match: str, tmp_path: Path) -> None:
     rows = curve_rows()
-    found = problems(folder(tmp_path / "a", curves=[*rows, *rows[1:9]]))
-    assert [problem.origin.row for problem in found] == list(range(34, 42))
+    path = folder(tmp_path / "a", curves=[*rows, *rows[1 : 1 + points]])
+    assert_refused(path, file="curves.csv", row=34, column="voltage_mV", match=f"{match}.*; delete one of")
+
+
+def test_repeated_points_of_two_cells_are_told_for_each(tmp_path: Path) -> None:
+    rows = curve_rows()
+    found = problems(folder(tmp_path / "a", curves=[*rows, *rows[1:9], *rows[9:11]]))
+    assert [problem.origin.row for problem in found] == [34, 42]
+
+
+@pytest.mark.parametrize("wide", [False, True])
+def test_lost_minus_signs_are_told_once_a_curve(wide: bool, tmp_path: Path) -> None:
+    """Voltages from -120 to 20 without their signs: 20 comes twice; one voltage below 0 is no loss of all."""
+    rows = wide_rows() if wide else curve_rows()
+    place = rows[0].index("voltage_mV")
+    lost = [[field.lstrip("-") if i == place else field for i, field in enumerate(row)] for row in rows]
+    found = problems(folder(tmp_path / "a", curves=lost))
+    assert [problem.origin.row for problem in found] == ([9] if wide else [9, 17, 25, 33])
+    assert all("minus signs may have been lost, no voltage has one" in one.remedy for one in found)
+    kept = changed(lost, 2, "voltage_mV", "-120")
+    assert "minus signs" not in problems(folder(tmp_path / "b", curves=kept))[0].remedy
+
+
+@pytest.mark.parametrize(
+    ("header", "match"),
+    [
+        ("E181Ac2", "'E181Ac2' without a slash before the cell.*did you mean E181A/c2"),
+        ("WT c2", "did you mean WT/c2"),
+        ("WT_c2", "did you mean WT/c2"),
+        ("E181A/R212Qc2", "did you mean E181A/R212Q/c2"),
+        ("WT", "write WT, a slash and the cell's label"),
+        ("K95N c2", "the unknown column 'K95N c2'.*delete the column"),  # no other header has it
+    ],
+)
+def test_a_wide_header_without_its_slash(header: str, match: str, tmp_path: Path) -> None:
+    path = folder(tmp_path / "a", curves=wide_rows([*(f"{label}/c1" for label in LABELS), header]))
+    assert_refused(path, file="curves.csv", row=1, column=header, match=match)
+
+
+def test_cells_that_begin_as_another_label_ends(tmp_path: Path) -> None:
+    """E181A/R2 is a cell of E181A, and WT/11 one of WT, whatever the other headers."""
+    names = [*(f"{label}/c1" for label in LABELS), "E181A/R2", "WT/1", "WT/11"]
+    found = read(folder(tmp_path / "a", curves=wide_rows(names)))
+    assert [curve.cell for curve in found.construct("WT").curves] == ["1", "11", "c1"]
+    assert [curve.cell for curve in found.construct("E181A").curves] == ["R2", "c1"]
+
+
+@pytest.mark.parametrize(("falling", "told"), [(1, 1), (5, 5), (6, 1), (8, 1)])
+@pytest.mark.parametrize("wide", [False, True])
+def test_many_curves_that_fall_are_told_once(falling: int, told: int, wide: bool, tmp_path: Path) -> None:
+    """Up to five one by one; more, or all eight there are, as one inverted column."""
+    rows = curve_rows(cells=("c1", "c2"))
+    if wide:
+        rows = wide_rows(f"{label}/{cell}" for label in LABELS for cell in ("c1", "c2"))
+    for number in range(falling):
+        for point in range(8):
+            row, column = (point + 1, number + 1) if wide else (1 + 8 * number + point, 3)
+            rows[row][column] = f"-{rows[row][column]}"
+    found = problems(folder(tmp_path / "a", curves=rows))
+    assert len(found) == told
+    if told < falling:
+        how_many = "all 8 curves falling" if falling == 8 else "6 curves that fall"
+        assert found[0].origin.column == ("voltage_mV" if wide else "charge")
+        assert how_many in found[0].found
+        assert "voltages or charges are inverted" in found[0].remedy
 
 
 @pytest.mark.parametrize(

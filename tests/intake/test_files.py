@@ -52,6 +52,50 @@ def test_names_that_are_nearly_right(name: str, expected: str, campaign: Path) -
     assert_refused(campaign, file=name, match=f"{expected}.*save it under this name.*else move it")
 
 
+@pytest.mark.parametrize("name", ["curves.csv", "curve.csv", "curves.txt"])
+def test_a_table_that_is_not_read_has_no_consequences(name: str, campaign: Path) -> None:
+    """Neither curves nor those of every construct with a charge are called missing beside it."""
+    charges = "construct,cell,charge_e0\nWT,c1,13\nE181A,c1,13\n"
+    (campaign / "charges.csv").write_text(charges)
+    (campaign / "curves.csv").unlink()
+    if name == "curves.csv":
+        (campaign / name).mkdir()
+    else:
+        (campaign / name).write_text(CURVES)
+    match = "a folder, a device or a link" if name == "curves.csv" else "save it under this name"
+    assert_refused(campaign, file=name, match=match)
+
+
+def test_a_folder_in_place_of_the_campaign_file(campaign: Path) -> None:
+    (campaign / "campaign.toml").unlink()
+    (campaign / "campaign.toml").mkdir()
+    assert_refused(campaign, file="campaign.toml", match="a folder, a device or a link")
+
+
+@pytest.mark.parametrize("name", ["Kurven.csv", "truth.TSV", "raw data.xlsx"])
+def test_other_tables_in_the_folder_are_noted(name: str, campaign: Path) -> None:
+    (campaign / name).write_text("whatever")
+    assert read(campaign).notes == (f"not read: {name}",)
+
+
+@pytest.mark.parametrize(
+    "name", ["old/Kurven.csv", ".Kurven.csv", "~$Kurven.xlsx", "notes.txt", "Kurven.png"]
+)
+def test_what_is_no_table_of_the_folder_is_not_noted(name: str, campaign: Path) -> None:
+    (campaign / "old").mkdir()
+    (campaign / name).write_text("whatever")
+    assert read(campaign).notes == ()
+
+
+@pytest.mark.parametrize(("number", "end"), [(5, "t3.csv, t4.csv"), (6, "t4.csv and 1 more")])
+def test_the_note_names_five_tables(number: int, end: str, campaign: Path) -> None:
+    for i in range(number):
+        (campaign / f"t{i}.csv").write_text("whatever")
+    (note,) = read(campaign).notes
+    assert note.startswith("not read: t0.csv, ")
+    assert note.endswith(end)
+
+
 def test_two_files_of_one_table(campaign: Path) -> None:
     (campaign / "curves.tsv").write_text(CURVES)
     assert_refused(campaign, file="curves.tsv", match="the files curves.csv and curves.tsv; expected one")

@@ -227,3 +227,48 @@ def test_an_invisible_character_in_a_label(tmp_path: Path) -> None:
     found = problems(folder(tmp_path / "a", curves=rows))
     assert (found[0].origin.row, found[0].origin.column) == (4, "cell")
     assert "invisible character (U+200B)" in str(found[0])
+
+
+@pytest.mark.parametrize("table", ["curves", "charges", "medians", "openings"])
+def test_a_header_with_nothing_below_it(table: str, tmp_path: Path) -> None:
+    """The table is named and nothing that would be in it is called missing."""
+    headers = {
+        "curves": "construct,cell,voltage_mV,charge",
+        "charges": "construct,cell,charge_e0",
+        "medians": "construct,median_mV,sem_mV,n",
+        "openings": "construct,cell,voltage_mV,open_probability",
+    }
+    tables = {"curves": text_of(curve_rows()), "charges": "construct,cell,charge_e0\nWT,c1,13\nE181A,c1,13\n"}
+    tables |= {table: f"{headers[table]}\n"}
+    path = folder(tmp_path / "a", 'wild_type = "WT"\n', **tables)
+    match = "found a header and nothing below it; .*; fill in the file or delete it"
+    assert_refused(path, file=f"{table}.csv", row=1, match=match)
+
+
+@pytest.mark.parametrize(
+    "units", [["-", "-", "mV", "pC"], ["", "", "(mV)", "[nC]"], ["", "", "mV", "a.u."], ["", "", "mV", "µC"]]
+)
+def test_a_row_of_units(units: list[str], tmp_path: Path) -> None:
+    header, *body = curve_rows()
+    path = folder(tmp_path / "a", curves=[header, units, *body])
+    match = "row 2 looks like a row of units.*delete it; the unit belongs in the header"
+    assert_refused(path, file="curves.csv", row=2, match=match)
+
+
+def test_a_row_of_units_in_a_wide_table(tmp_path: Path) -> None:
+    header, *body = wide_rows()
+    path = folder(tmp_path / "a", curves=text_of([header, ["mV", *["pC"] * len(LABELS)], *body], ";"))
+    assert_refused(path, file="curves.csv", row=2, match="looks like a row of units")
+
+
+@pytest.mark.parametrize("row", [["WT", "c9", "mV", "pC"], ["-", "-", "mV", "0.5"], ["-", "-", "-", "-"]])
+def test_a_row_that_holds_more_than_units(row: list[str], tmp_path: Path) -> None:
+    header, *body = curve_rows()
+    found = problems(folder(tmp_path / "a", curves=[header, row, *body]))
+    assert not any("row of units" in problem.found for problem in found)
+
+
+def test_a_row_of_units_further_down(tmp_path: Path) -> None:
+    header, first, *body = curve_rows()
+    found = problems(folder(tmp_path / "a", curves=[header, first, ["", "", "mV", "pC"], *body]))
+    assert not any("row of units" in problem.found for problem in found)

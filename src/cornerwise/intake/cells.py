@@ -13,6 +13,9 @@ from ..errors import Origin
 from .findings import Findings, shown
 from .table import IntArray, Table, TextArray, factorize
 
+MOST_FALLING = 5  # curves that are told one by one
+_RISING = "charge that rises with voltage, from resting to activated"
+
 
 @dataclass(frozen=True, kw_only=True, slots=True, eq=False)
 class Points:
@@ -82,7 +85,7 @@ def curves_of(points: Points, findings: Findings) -> tuple[Curve, ...]:
     """
     named = np.flatnonzero((points.construct != "") & (points.cell != ""))
     sound = np.isfinite(points.voltage_mv) & np.isfinite(points.value)
-    curves, narrow = [], []
+    curves, narrow, falling = list[Curve](), list[Curve](), list[Curve]()
     for members in cells_in(points, named):
         curve = _curve(points, members)
         if np.isfinite(points.voltage_mv[members]).all() and refuse_voltages(points, members, findings):
@@ -93,11 +96,14 @@ def curves_of(points: Points, findings: Findings) -> tuple[Curve, ...]:
             fault = _shape_fault(curve, points.table.raw.lost)
             if fault == "narrow":
                 narrow.append(curve)
+            elif fault == "falls":
+                falling.append(curve)
             elif fault is not None:
                 _refuse_shape(curve, fault, findings)
             else:
                 curves.append(curve)
     refuse_narrow(points, narrow, others=len(curves), findings=findings)
+    _refuse_falling(points, falling, others=len(curves), findings=findings)
     return tuple(sorted(curves, key=lambda curve: (curve.construct, curve.cell)))
 
 
@@ -232,11 +238,28 @@ def _refuse_shape(curve: Curve, fault: str, findings: Findings) -> None:
         ),
         "falls": (
             f"a curve that falls: the charge of the cell {name} decreases with voltage",
-            "charge that rises with voltage, from resting to activated",
+            _RISING,
             "flip the sign of the charges (or of the voltages, whichever is turned round)",
         ),
     }[fault]
     findings.add(curve.origin, found=found, expected=expected, remedy=remedy)
+
+
+def _refuse_falling(points: Points, falling: Sequence[Curve], *, others: int, findings: Findings) -> None:
+    """Refuse curves that fall; told once when they are all or many: then a whole column is inverted."""
+    if len(falling) <= MOST_FALLING and (others or len(falling) < 2):
+        for curve in falling:
+            _refuse_shape(curve, "falls", findings)
+        return
+    how_many = f"{len(falling)} curves that fall" if others else f"all {len(falling)} curves falling"
+    table, first = points.table, falling[0]
+    findings.add(
+        table.raw.header_origin(table.header("voltage" if points.wide else "charge")),
+        found=f"{how_many}, the first that of the cell {first.construct}/{first.cell}",
+        expected=_RISING,
+        remedy="voltages or charges are inverted: flip the sign of all charges, or of all voltages, "
+        "whichever is turned round",
+    )
 
 
 def refuse_narrow(

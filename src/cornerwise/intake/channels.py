@@ -141,6 +141,8 @@ def _refuse_needless(table: Table) -> None:
     found = "a channel count without the cell's charge in fC, pC or nC"
     expected = "nothing beside charge_e0, which is the charge of one channel already"
     remedy = f"delete the count, or give the charge of the whole cell as {RAW_CHARGE.headers[1]}"
+    if "charge" in table and table.header("charge") not in CHARGE.headers:
+        return  # whose charge it is cannot be told before the header is mended, which is asked for
     for base in ("channels", "channels_sem"):
         if base in table and "charge" in table and RAW not in table:
             place = table.raw.header_origin(table.header(base))

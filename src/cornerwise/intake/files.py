@@ -5,7 +5,8 @@ from __future__ import annotations
 import hashlib
 import os
 from collections import defaultdict
-from collections.abc import Iterator
+from collections.abc import Iterator, Mapping
+from dataclasses import dataclass
 from pathlib import Path
 
 from ..campaign import InputFile
@@ -23,7 +24,16 @@ _IN_CAMPAIGN_FILE = ("exclude", "exclusions")  # a table of this name would chan
 _TABLE_LIKE = (*SUFFIXES, ".xls", ".xlsm", ".xlsb", ".ods", ".tab", ".dat", ".txt")
 
 
-def locate(folder: Path, findings: Findings) -> dict[str, Path]:
+@dataclass(frozen=True, kw_only=True, slots=True)
+class Located:
+    """What a folder holds of a campaign."""
+
+    paths: Mapping[str, Path]  # of ``campaign`` and the tables that are there
+    at_fault: frozenset[str]  # tables of which something is there that is refused, and nothing to read
+    unread: tuple[str, ...]  # names of other tables
+
+
+def locate(folder: Path, findings: Findings) -> Located:
     """Find the files of a campaign.
 
     Parameters
@@ -38,11 +48,12 @@ def locate(folder: Path, findings: Findings) -> dict[str, Path]:
 
     Returns
     -------
-    dict of str to Path
-        ``campaign`` and the tables that are there.
+    Located
+        ``campaign`` and the tables, and what may have been meant to be one.
     """
+    blocked: set[str] = set()
     try:
-        files = sorted(_files_in(folder, findings))
+        files = sorted(_files_in(folder, blocked, findings))
     except OSError as error:
         findings.add(
             Origin(file=str(folder)),
@@ -50,7 +61,8 @@ def locate(folder: Path, findings: Findings) -> dict[str, Path]:
             expected="a readable folder",
             remedy="check its permissions",
         )
-        return {}
+        return Located(paths={}, at_fault=frozenset(), unread=())
+    unread: list[str] = []
     known: dict[str, list[Path]] = defaultdict(list)
     for path in files:
         stem, suffix = path.stem.casefold(), path.suffix.casefold()
@@ -58,31 +70,42 @@ def locate(folder: Path, findings: Findings) -> dict[str, Path]:
             known["campaign"].append(path)
         elif stem in TABLES and suffix in SUFFIXES:
             known[stem].append(path)
-        else:
-            _judge_stray(path, findings)
+        elif meant := _judge_stray(path, findings):
+            blocked.add(meant)
+        elif suffix in SUFFIXES:
+            unread.append(visible(path.name))
     _refuse_several(known, findings)
-    if "campaign" not in known:
+    if "campaign" not in known.keys() | blocked:
         _refuse_missing_campaign(folder, files, findings)
-    if not {"curves", "medians"} & known.keys():
+    if not {"curves", "medians"} & (known.keys() | blocked):
         findings.add(
             Origin(),
             found="neither curves nor medians in the folder",
             expected=f"a table curves or medians, as {listing(SUFFIXES)}",
             remedy="add curves.csv",
         )
-    return {name: known[name][0] for name in ("campaign", *TABLES) if name in known}
+    return Located(
+        paths={name: known[name][0] for name in ("campaign", *TABLES) if name in known},
+        at_fault=frozenset(blocked - known.keys()),
+        unread=tuple(unread),
+    )
 
 
-def _files_in(folder: Path, findings: Findings) -> Iterator[Path]:
-    """Files of a folder that are the user's own; one with a known name that cannot be read is a fault."""
+def _files_in(folder: Path, blocked: set[str], findings: Findings) -> Iterator[Path]:
+    """Files of a folder that are the user's own; a known name of anything else is a fault, and blocked."""
     for path in folder.iterdir():
         if path.name.startswith(_LEFT_BEHIND):
             continue
-        if path.is_symlink() and not stays_below(folder, path):
-            _refuse_link(path, findings)
-        elif path.is_file():
+        is_outside = path.is_symlink() and not stays_below(folder, path)
+        if path.is_file() and not is_outside:
             yield path
-        elif _is_known(path):
+        elif not _is_known(path):
+            continue
+        elif is_outside:
+            blocked.add(path.stem.casefold())
+            _refuse_link(path, findings)
+        else:
+            blocked.add(path.stem.casefold())
             findings.add(
                 Origin(file=path.name),
                 found="a folder, a device or a link that leads nowhere",
@@ -102,13 +125,12 @@ def stays_below(folder: Path, path: Path) -> bool:
 
 
 def _refuse_link(path: Path, findings: Findings) -> None:
-    if _is_known(path):
-        findings.add(
-            Origin(file=path.name),
-            found="a link to something outside the folder",
-            expected="the campaign's files inside its folder",
-            remedy="put a copy of the file there, so that the campaign is whole wherever it is kept",
-        )
+    findings.add(
+        Origin(file=path.name),
+        found="a link to something outside the folder",
+        expected="the campaign's files inside its folder",
+        remedy="put a copy of the file there, so that the campaign is whole wherever it is kept",
+    )
 
 
 def _refuse_several(known: dict[str, list[Path]], findings: Findings) -> None:
@@ -165,11 +187,11 @@ def read_bytes(
     return data, InputFile(name=visible(name), sha256=hashlib.sha256(data).hexdigest())
 
 
-def _judge_stray(path: Path, findings: Findings) -> None:
-    """Refuse a table that was most likely meant to be read."""
+def _judge_stray(path: Path, findings: Findings) -> str | None:
+    """Refuse a table that was most likely meant to be read; return which."""
     stem, suffix = path.stem.casefold(), path.suffix.casefold()
     if suffix not in _TABLE_LIKE:
-        return
+        return None
     if nearest(stem, _IN_CAMPAIGN_FILE):
         findings.add(
             Origin(file=path.name),
@@ -177,12 +199,12 @@ def _judge_stray(path: Path, findings: Findings) -> None:
             expected=f"[[exclude]] entries in {CAMPAIGN_FILE}",
             remedy=f"write them into {CAMPAIGN_FILE}, or move the file out of the folder",
         )
-        return
+        return "exclude"
     names = ("campaign", *TABLES)
     inside = next((name for name in names if name in stem and (stem == name or suffix != ".txt")), None)
     close = inside or nearest(stem, names)
     if close is None:
-        return
+        return None
     allowed = CAMPAIGN_FILE if close == "campaign" else listing(f"{close}{ending}" for ending in SUFFIXES)
     findings.add(
         Origin(file=path.name),
@@ -190,6 +212,8 @@ def _judge_stray(path: Path, findings: Findings) -> None:
         expected=allowed,
         remedy="save it under this name if it belongs to the campaign, else move it out of the folder",
     )
+    # Another file that is called like campaign.toml does not stand for it.
+    return "stray campaign" if close == "campaign" else close
 
 
 def _refuse_missing_campaign(folder: Path, files: list[Path], findings: Findings) -> None:

@@ -7,6 +7,9 @@ voltages go into the tidy one.
 
 from __future__ import annotations
 
+from collections import Counter
+from collections.abc import Collection
+
 import numpy as np
 
 from ..campaign import FloatArray
@@ -18,6 +21,8 @@ from .table import Table, TextArray, factorize
 from .voltages import VOLTAGE_VALUES, read_voltages
 
 VOLTAGE = Field(base="voltage", units=("mV", "V"), values=VOLTAGE_VALUES, meaning="membrane voltage")
+_OF_MINUS = "minus signs may have been lost, no voltage has one: put them back; or "
+_OF_REPEATS = "delete one of them, average them, or give the second recording a cell label of its own"
 _CELL = Field(base="construct/cell", required=False)  # for the messages
 
 
@@ -53,8 +58,11 @@ def _cell_names(raw: RawTable, findings: Findings) -> dict[int, tuple[str, str] 
     """Construct and cell of each header with a slash, by column index; None where it names no new cell."""
     names: dict[int, tuple[str, str] | None] = {}
     headers: dict[tuple[str, str], str] = {}
+    labels = {header.rsplit("/", 1)[0].strip() for header in raw.header if "/" in header} - {""}
     for index, header in enumerate(raw.header):
-        if "/" in header:
+        if meant := _without_slash(header, labels):
+            names[index] = _refuse_no_slash(raw, header, meant, findings)
+        elif "/" in header:
             name = _cell_of(raw, header, findings)
             if name is not None and headers.setdefault(name, header) != header:
                 _refuse_cell(raw, header, f"the cell of {shown(headers[name])} again", findings)
@@ -76,6 +84,32 @@ def _cell_of(raw: RawTable, header: str, findings: Findings) -> tuple[str, str] 
     return construct, cell
 
 
+def _without_slash(header: str, labels: Collection[str]) -> tuple[str, str] | None:
+    """Construct and cell of a header whose slash was lost; `labels` are the constructs of the others.
+
+    In E181A/R212Qc1 the slash stands inside the label: the longest label counts.
+    """
+    begun = [label for label in labels if header.startswith(label)]
+    label = max(begun, key=len, default="")
+    cell = header.removeprefix(label).strip(" _-.:,;|")
+    if not label or header.removeprefix(label).lstrip().startswith("/") or header in VOLTAGE.headers:
+        return None
+    is_split = "/" in header and (not cell or parse_label(label) is None or "/" not in label)
+    return None if is_split or "/" in cell else (label, cell)
+
+
+def _refuse_no_slash(
+    raw: RawTable, header: str, meant: tuple[str, str], findings: Findings
+) -> tuple[str, str] | None:
+    label, cell = meant
+    remedy = f"did you mean {label}/{cell}?" if cell else f"write {label}, a slash and the cell's label"
+    findings.add(
+        raw.header_origin(header), found=f"{shown(header)} without a slash before the cell",
+        expected="construct/cell, another cell in every column", remedy=remedy,
+    )  # fmt: skip
+    return (label, cell) if cell else None
+
+
 def _refuse_cell(raw: RawTable, header: str, found: str, findings: Findings) -> None:
     findings.add(
         raw.header_origin(header),
@@ -91,14 +125,24 @@ def once_only(table: Table, construct: TextArray, cell: TextArray, voltage_mv: F
     order = np.lexsort((np.arange(len(table)), voltage_mv, group))
     same = (np.diff(group[order]) == 0) & (np.diff(voltage_mv[order]) == 0)
     once = voltage_mv.copy()
-    for place in np.flatnonzero(same) + 1:
-        once[order[place]] = np.nan
+    places = np.flatnonzero(same) + 1
+    places = places[np.argsort(order[places])]
+    count = Counter(group[order[places]].tolist())
+    told: set[int] = set()
+    for place in places:
+        second, own = int(order[place]), int(group[order[place]])
+        once[second] = np.nan
+        if own in told:
+            continue
+        told.add(own)
+        others = f", and {count[own] - 1} more voltages twice" if count[own] > 1 else ""
+        no_minus = bool(np.all(voltage_mv[(group == own) & np.isfinite(voltage_mv)] >= 0))
         table.refuse(
-            int(order[place]),
+            second,
             "voltage",
-            found=f"a second value at {voltage_mv[order[place]]:g} mV, "
-            f"the other in row {table.raw.rows[order[place - 1]]}",
+            found=f"a second value at {voltage_mv[second]:g} mV, "
+            f"the other in row {table.raw.rows[order[place - 1]]}{others}",
             expected="each voltage once in a cell",
-            remedy="delete one of them, average them, or give the second recording a cell label of its own",
+            remedy=_OF_MINUS * no_minus + _OF_REPEATS,
         )
     return once

@@ -10,7 +10,7 @@ from __future__ import annotations
 import os
 from collections.abc import Callable, Mapping, Sequence
 from contextlib import suppress
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from pathlib import Path
 from typing import TYPE_CHECKING, TypeVar
 
@@ -32,9 +32,12 @@ from .parts import Parts
 from .settings import KEYS, SECTIONS, Document, read_settings
 from .structure import StructureFile, open_structure
 from .toml_file import read_toml
+from .unit_row import without_unit_row
 
 if TYPE_CHECKING:
     from .coordinates import Model
+
+MOST_UNREAD = 5  # tables in the folder that are named though no campaign has them
 
 _Read = TypeVar("_Read")
 
@@ -47,6 +50,7 @@ class Source:
     tables: Mapping[str, RawTable | None]  # those that are there; None when one could not be read
     inputs: tuple[InputFile, ...]
     structure: StructureFile | None = None
+    notes: tuple[str, ...] = ()
 
 
 def read(path: str | os.PathLike[str]) -> Campaign:
@@ -103,11 +107,11 @@ def _nearby(path: Path) -> str:
 
 
 def _open_folder(folder: Path, findings: Findings) -> Source:
-    paths = locate(folder, findings)
+    located = locate(folder, findings)
     document: Document | None = None
-    tables: dict[str, RawTable | None] = {}
+    tables: dict[str, RawTable | None] = {name: None for name in TABLES if name in located.at_fault}
     inputs: list[InputFile] = []
-    for name, path in paths.items():
+    for name, path in located.paths.items():
         findings.take_up(path.name)
         contents = read_bytes(path, findings)
         if contents is not None:
@@ -120,7 +124,14 @@ def _open_folder(folder: Path, findings: Findings) -> Source:
             if rows > text.MOST_ROWS:
                 tables[name] = None
                 text.refuse_long(path.name, f"{rows} rows with those of the other tables", findings)
-    return _with_structure(document, tables, inputs, folder, findings)
+    source = _with_structure(document, tables, inputs, folder, findings)
+    return replace(source, notes=_of_unread(located.unread))
+
+
+def _of_unread(names: Sequence[str]) -> tuple[str, ...]:
+    """Note of the tables in a folder that no campaign has; one sentence or none."""
+    more = f" and {len(names) - MOST_UNREAD} more" if len(names) > MOST_UNREAD else ""
+    return (f"not read: {', '.join(names[:MOST_UNREAD])}{more}",) if names else ()
 
 
 def _with_structure(
@@ -195,6 +206,7 @@ def _campaign(source: Source | None, findings: Findings) -> Campaign | None:
         openings=openings_read, distances=distances_read, model=model,
         structure=source.structure.request if source.structure else None,
         charges_file=charges.file if charges else None, inputs=source.inputs,
+        notes=source.notes,
     )  # fmt: skip
     return assemble(parts, findings)
 
@@ -208,4 +220,11 @@ def _read(
 ) -> _Read:
     """What the table `name` says; nothing when it is not there or could not be opened."""
     table = source.tables.get(name)
-    return nothing(readable=name not in source.tables) if table is None else read_table(table, findings)
+    if table is None:
+        return nothing(readable=name not in source.tables)
+    table = without_unit_row(table, findings)
+    read_from_it = read_table(table, findings)
+    if len(table.rows) or table.lost:
+        return read_from_it
+    text.refuse_no_rows(table, findings)
+    return nothing(readable=False)

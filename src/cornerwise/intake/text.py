@@ -269,6 +269,14 @@ def refuse_empty(file: str, findings: Findings) -> None:
     )  # fmt: skip
 
 
+def refuse_no_rows(raw: RawTable, findings: Findings) -> None:
+    """Refuse a table that ends with its header."""
+    findings.add(
+        Origin(file=raw.file, row=raw.header_row), found="a header and nothing below it",
+        expected="a header and one row per value", remedy="fill in the file or delete it",
+    )  # fmt: skip
+
+
 def refuse_long(file: str, found: str, findings: Findings) -> None:
     """Refuse a table with too many rows."""
     findings.add(
