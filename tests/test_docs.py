@@ -15,6 +15,7 @@ from cornerwise import charges
 from cornerwise.flags import FLAG_CODES
 from cornerwise.measurements import FEWEST_CELLS, RANGE_DIFFERENCE_MV
 from cornerwise.median import curve_quality
+from cornerwise.median.extrapolation import REFUSED_MISSING, REFUSED_OWN_MISSING
 from cornerwise.units import in_percent
 from cornerwise.verdicts import ChargeVerdict, InteractionVerdict, ShortcutVerdict
 
@@ -53,12 +54,17 @@ def test_every_flag_and_verdict_has_its_paragraph() -> None:
         ("unsaturated-low", f"More than {in_percent(curve_quality.MISSING_LIMIT)} of"),
         ("unsaturated-low", f"more than {curve_quality.DOUBT_LIMIT_MV:g} mV"),
         ("sloping-plateau", f"more than {in_percent(curve_quality.SLOPE_LIMIT)} of"),
+        ("unsaturated-low", f"more than {in_percent(REFUSED_MISSING)} of the charge of the construct's mean"),
+        ("unsaturated-low", f"more than {in_percent(REFUSED_OWN_MISSING)} of one cell's"),
         ("not-monotonic", f"more than {in_percent(curve_quality.REVERSAL_LIMIT)} of"),
+        ("not-monotonic", f"more than {curve_quality.REVERSAL_IN_NOISE:g} times the noise"),
         ("coarse-steps", f"Fewer than {curve_quality.POINTS_LIMIT} points, or fewer than "
          f"{curve_quality.STEPS_LIMIT:g} steps"),
         ("noisy", f"more than {in_percent(curve_quality.NOISE_LIMIT)} of"),
         ("area-disagrees", f"more than {curve_quality.DISAGREEMENT_LIMIT_MV:g} mV"),
+        ("area-disagrees", f"more than {curve_quality.DISAGREEMENT_IN_NOISE:g} times what noise"),
         ("outlying-cell", f"{in_percent(curve_quality.OUTLIER_P)} over all"),
+        ("outlying-cell", f"at least {curve_quality.OUTLIER_LIMIT_MV:g} mV"),
         ("few-cells", f"Fewer than {FEWEST_CELLS} cells"),
         ("charge-implausible", "outside {:g} to {:g} e0".format(*charges.PLAUSIBLE_CHARGE_E0)),
         ("charge-implausible", f"more than {charges.PLAUSIBLE_LOSS_PER_MUTATION_E0:g} e0"),
