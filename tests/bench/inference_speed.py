@@ -3,8 +3,8 @@
     python tests/bench/inference_speed.py [--large]
 
 Medians and charges are given, so no curve is fitted. Beside it, in the same run, one call of
-``scipy.stats.bootstrap`` a cycle on the same cells, its total measured on 100 cycles and scaled to all. Seconds are those of the processor, whatever else runs.
-Prints a Markdown table; asserts nothing.
+``scipy.stats.bootstrap`` a cycle on the same cells, its total measured on 100 cycles and scaled to all.
+Seconds are those of the processor, whatever else runs. Prints a Markdown table; asserts nothing.
 """
 
 from __future__ import annotations

@@ -2,9 +2,10 @@
 
     python tests/bench/many_pairs.py [--campaigns 2000] [--cells 5] [--workers 2]
 
-Every campaign is computed by the package's own functions from simulated cells (normal; medians scatter by
-3 mV, the total charge is stated). A verdict is false where a pair without any interaction is called coupled
-or detected; the strongest is the pair whose estimate is the largest. Prints a Markdown table; asserts nothing.
+Every campaign is computed by the package's own functions from simulated cells (normal; medians scatter by 3
+mV, the total charge is stated). A verdict is false where a pair without any interaction is called coupled
+or detected; the strongest is the pair whose estimate is the largest. Prints a Markdown table; asserts
+nothing.
 """
 
 from __future__ import annotations
@@ -86,7 +87,9 @@ def one_campaign(scenario: str, n: int, seed: int) -> dict[str, float]:
             all(not one.simultaneous.excludes(t) for one, t in zip(standing, true, strict=True))
         ),
         "rank limits hold": float(np.mean((limits[:, 0] <= above) & (below <= limits[:, 1]))),
-        "rank limits of the strongest hold": float(limits[top, 0] <= above[top] and below[top] <= limits[top, 1]),
+        "rank limits of the strongest hold": float(
+            limits[top, 0] <= above[top] and below[top] <= limits[top, 1]
+        ),
         "width of rank limits": float(np.mean(limits[:, 1] - limits[:, 0] + 1)),
         "bias of the strongest": float(abs(values[top]) - np.sign(values[top]) * true[top]),
         "bias of the strongest, shrunken": float(abs(shrunken[top]) - np.sign(values[top]) * true[top]),

@@ -76,3 +76,31 @@ def test_unknown_cycle_names_the_nearest() -> None:
         explain(_result(WILD), "E5A/R9K")
     with pytest.raises(UsageError, match="there are E5A/R9Q"):
         explain(_result(WILD), "zzz")
+
+
+def test_what_would_change_it_names_cells_and_no_looser_criterion() -> None:
+    result = _result([11.4, 13.6, 15.5, 12.2, 14.0])
+    row, text = result.interactions[0], explain(result, "E5A/R9Q")
+    double = row.corner_charges[-1]
+    assert row.shortcut_verdict == double.verdict == "unresolved"
+    assert double.cells_needed is not None
+    assert double.cells_needed > 5
+    assert (
+        f"{double.cells_needed} charge values each on E5A/R9Q and WT (there are 5 and 5) would give that "
+        "charge a verdict"
+    ) in text
+    far = text.partition("How far the shortcut is from valid: ")[2]
+    assert (
+        f"the interval of the bias reaches {row.passing_tolerance:.2g} kcal/mol (the tolerance is 0.5)" in far
+    )
+    assert "% from equality (the margin is 10 %)" in far
+    assert far.endswith("limits are to be chosen before looking.")
+    assert "with a margin of" not in text
+    assert "would be tolerable" not in text
+
+
+def test_a_shared_charge_has_no_count_of_its_own() -> None:
+    result = _result([11.4, 13.6, 15.5, 12.2, 14.0], charge="wild-type")
+    assert "charge values each on E5A/R9Q and WT would give that charge a verdict" in explain(
+        result, "E5A/R9Q"
+    )

@@ -303,30 +303,65 @@ def _next_recording(result: Result, row: InteractionRow) -> list[str]:
     ]
 
 
-def _outlook(result: Result, row: InteractionRow, budget: list[BudgetRow]) -> str:
-    parts = _next_recording(result, row)
-    settled = row.shortcut_verdict == "valid"
-    wider = row.passing_margin is not None and row.passing_margin > result.settings.charge_margin
-    if not settled and row.shortcut_verdict != "untested" and wider and row.passing_margin is not None:
+def _still_valid(result: Result, row: InteractionRow) -> list[str]:
+    """How strict the criteria may be for a shortcut that is valid to stay so."""
+    if row.shortcut_verdict != "valid" or row.passing_margin is None:
+        return []
+    return [
+        f"the shortcut stays valid down to a margin of {percent(round(row.passing_margin, 3))} and a "
+        f"tolerance of {row.passing_tolerance:.2g} {result.settings.energy_unit}"
+    ]
+
+
+def _how_far(result: Result, row: InteractionRow) -> str:
+    """How far charges and bias are from what a valid shortcut takes; no advice to move the criteria."""
+    settings, margin = result.settings, row.passing_margin
+    if row.shortcut_verdict == "valid":
+        return ""
+    parts = []
+    if margin is not None and margin > settings.charge_margin and row.shortcut_verdict != "untested":
         parts.append(
-            f"every charge would count as equal with a margin of {percent(round(row.passing_margin, 3))}"
+            f"the intervals of the charges reach {percent(round(margin, 3))} from equality (the margin is "
+            f"{percent(settings.charge_margin)})"
         )
-    if settled and row.passing_margin is not None:
+    if row.passing_tolerance is not None:
         parts.append(
-            f"the shortcut stays valid down to a margin of {percent(round(row.passing_margin, 3))} and a "
-            f"tolerance of {row.passing_tolerance:.2g} {result.settings.energy_unit}"
+            f"the interval of the bias reaches {row.passing_tolerance:.2g} {settings.energy_unit} (the "
+            f"tolerance is {settings.energy_tolerance:.3g})"
         )
-    elif row.passing_tolerance is not None:
-        tolerance = f"{row.passing_tolerance:.2g} {result.settings.energy_unit}"
-        parts.append(f"the bias would be tolerable with a tolerance of {tolerance}")
-    open_verdict = any(one.verdict == "unresolved" for one in row.corner_charges)
-    if open_verdict and row.charge_cells_needed is not None:
-        parts.append(
-            f"at the scatter seen, {row.charge_cells_needed} charge values on each construct would give "
-            "every charge a verdict"
-        )
+    said = ", ".join(parts)
+    return (
+        f" How far the shortcut is from valid: {said}; limits are to be chosen before looking."
+        if said
+        else ""
+    )
+
+
+def _more_charges(result: Result, row: InteractionRow) -> list[str]:
+    """Charge values that would give every charge a verdict, as far as that is known."""
     if row.shortcut_verdict == "untested":
-        parts.append("measuring the assumed charges would test the shortcut")
+        return ["measuring the assumed charges would test the shortcut"]
+    own = result.settings.charge == "measured"  # else the counts are those of the shared charge
+    counts = {one.construct: one.charge_n if own else None for one in result.constructs}
+    wild_type = counts[row.wild_type]
+    parts = []
+    for one in row.corner_charges:
+        there, needed = counts[one.construct], one.cells_needed
+        if one.verdict != "unresolved" or needed is None:
+            continue
+        known = there is not None and wild_type is not None
+        if known and needed <= min(there or 0, wild_type or 0):  # open for another reason than their number
+            continue
+        now = f" (there are {there} and {wild_type})" if known else ""
+        parts.append(
+            f"{needed} charge values each on {one.construct} and {row.wild_type}{now} would give that charge "
+            "a verdict, if ratio and scatter stay what they are"
+        )
+    return parts
+
+
+def _outlook(result: Result, row: InteractionRow, budget: list[BudgetRow]) -> str:
+    parts = [*_next_recording(result, row), *_still_valid(result, row), *_more_charges(result, row)]
     known = [part for part in budget if part.share is not None]
     if known:
         most = known[0]
@@ -334,4 +369,5 @@ def _outlook(result: Result, row: InteractionRow, budget: list[BudgetRow]) -> st
             f"the largest part of the squared uncertainty, {in_percent(most.share or 0.0)}, comes from "
             f"{most.source}"
         )
-    return f"What would change it: {'; '.join(parts)}." if parts else ""
+    change = f"What would change it: {'; '.join(parts)}." if parts else ""
+    return f"{change}{_how_far(result, row)}".strip()

@@ -44,6 +44,35 @@ def _words(sheet: Sheet) -> list[str]:
     return [mark.text.replace("−", "-") for mark in sheet.marks if isinstance(mark, Words)]
 
 
+_REVERSED = "Where an odd order stands beside a name, the words above the axis change places."
+
+
+@pytest.mark.parametrize("width", [85.0, 180.0])
+def test_a_cycle_of_odd_order_among_pairs_is_marked(result: Result, width: float) -> None:
+    (sheet,) = overview_sheets(result, width)["interactions"]
+    marks = [mark for mark in sheet.marks if isinstance(mark, Words)]
+    (mark,) = [one for one in marks if one.text == "(order 3)"]
+    (name,) = [one for one in marks if one.text == "E5A/R9Q/K12A"]
+    assert mark.at[1] == name.at[1]
+    assert name.at[0] + width_of(name.text, name.size) < mark.at[0]
+    assert {"← activated", "resting →"} <= set(_words(sheet))
+    assert _REVERSED in " ".join(_words(sheet))
+
+
+@pytest.mark.parametrize(("orders", "left"), [({3}, "← resting"), ({2}, "← activated")])
+def test_the_words_above_the_axis_are_those_of_the_only_kind_of_order(
+    result: Result, orders: set[int], left: str
+) -> None:
+    some = [row for row in result.interactions if row.order in orders]
+    (sheet,) = overview_sheets(replace(result, interactions=Table(InteractionRow, some)), 180.0)[
+        "interactions"
+    ]
+    words = _words(sheet)
+    assert left in words
+    assert not [word for word in words if word.startswith("(order")]
+    assert _REVERSED not in " ".join(words)
+
+
 @pytest.mark.parametrize("width", [85.0, 180.0])
 def test_the_square_shows_corners_edges_and_the_interaction(result: Result, width: float) -> None:
     row = result.interactions[0]

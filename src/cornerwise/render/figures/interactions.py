@@ -8,7 +8,7 @@ from ...result import InteractionRow, Result
 from ..legend import formula_and_sign
 from ..ordering import by_strength
 from ..rounding import with_uncertainty
-from .lettering import signed, width_of
+from .lettering import signed, sized, width_of
 from .marks import Sheet, Symbol
 from .scales import Scale, around, rule_below
 from .style import FULL_WIDTH_MM, SMALL_TYPE, TALLEST_MM, TYPE, Ink
@@ -28,7 +28,16 @@ def interaction_sheets(result: Result, width: float) -> list[Sheet]:
     rows = [row for row in by_strength(result.interactions) if row.interaction is not None]
     each = int((TALLEST_MM - _TOP - _BOTTOM) / _LINE_MM)
     scale = scale_limits(rows, result) if rows else (0.0, 1.0)
-    return [_sheet(rows[start : start + each], result, scale, width) for start in range(0, len(rows), each)]
+    only_odd = all(row.order % 2 for row in rows)
+    return [
+        _sheet(rows[start : start + each], result, scale, width, only_odd=only_odd)
+        for start in range(0, len(rows), each)
+    ]
+
+
+def _order(row: InteractionRow, *, only_odd: bool) -> str:
+    """Word beside the name of a cycle whose sign reads the other way than the words above the axis."""
+    return f"(order {row.order})" if row.order % 2 and not only_odd else ""
 
 
 def scale_limits(rows: Sequence[InteractionRow], result: Result) -> tuple[float, float]:
@@ -42,21 +51,33 @@ def scale_limits(rows: Sequence[InteractionRow], result: Result) -> tuple[float,
 
 
 def _sheet(
-    rows: Sequence[InteractionRow], result: Result, limits: tuple[float, float], width: float
+    rows: Sequence[InteractionRow],
+    result: Result,
+    limits: tuple[float, float],
+    width: float,
+    *,
+    only_odd: bool,
 ) -> Sheet:
     wide = width == FULL_WIDTH_MM
     height = _TOP + len(rows) * _LINE_MM + _BOTTOM
     sheet = Sheet(
         width=width, height=height, title=f"Interaction energies of {len(rows)} cycles, strongest first"
     )
-    names = min(max(width_of(row.cycle, TYPE) for row in rows) + 1.0, 0.3 * width)
+    orders = [_order(row, only_odd=only_odd) for row in rows]
+    beside = [width_of(order, SMALL_TYPE) + 1.0 if order else 0.0 for order in orders]
+    widest = max(width_of(row.cycle, TYPE) + more for row, more in zip(rows, beside, strict=True))
+    names = min(widest + 1.0, 0.3 * width + max(beside))
     words = 64.0 if wide else 17.0
     scale = Scale(low=limits[0], high=limits[1], start=names + 2.0, end=width - words)
     bottom = _TOP + len(rows) * _LINE_MM
-    _ground(sheet, scale, result.settings.energy_threshold, bottom)
+    _ground(sheet, scale, result.settings.energy_threshold, bottom, only_odd=only_odd)
     for place, row in enumerate(rows):
         y = _TOP + (place + 0.5) * _LINE_MM
-        sheet.name((0.5, y + 0.9), row.cycle, names)
+        name, size = sized(row.cycle, TYPE, names - beside[place])
+        sheet.words((0.5, y + 0.9), name, size=size)
+        if orders[place]:
+            at = (0.5 + width_of(name, size) + 1.0, y + 0.9)
+            sheet.words(at, orders[place], size=SMALL_TYPE, ink="pale")
         draw_interval(sheet, scale, row, y)
         _words(sheet, row, scale.end + 2.5, y + 0.9, wide=wide)
     rule_below(sheet, scale, bottom)
@@ -64,14 +85,17 @@ def _sheet(
     unit = f"I ({result.settings.energy_unit} per channel)"
     sheet.words((middle, bottom + 7.6), unit, anchor="middle")
     sheet.foot(formula_and_sign((row.order for row in rows), result.settings.reference_voltage_mv))
+    if any(orders):
+        sheet.foot(["Where an odd order stands beside a name, the words above the axis change places."])
     return sheet
 
 
-def _ground(sheet: Sheet, scale: Scale, threshold: float, bottom: float) -> None:
+def _ground(sheet: Sheet, scale: Scale, threshold: float, bottom: float, *, only_odd: bool) -> None:
     """Band within the threshold, line at 0, and what either side means."""
     sheet.box(scale.inside(-threshold), _TOP, scale.inside(threshold), bottom, ink="band")
     sheet.line([(scale(0.0), _TOP), (scale(0.0), bottom)], width=0.22, ink="pale")
-    for side, words, anchor in ((-1, "← activated", "end"), (1, "resting →", "start")):
+    left, right = ("resting", "activated") if only_odd else ("activated", "resting")
+    for side, words, anchor in ((-1, f"← {left}", "end"), (1, f"{right} →", "start")):
         at = (scale(0.0) + side * 1.2, _TOP - 1.6)
         sheet.words(at, words, size=SMALL_TYPE, anchor="end" if anchor == "end" else "start", ink="pale")
 
