@@ -35,7 +35,8 @@ class Origin:
         if self.row is not None:
             parts.append(f"row {self.row}")
         if self.column is not None:
-            parts.append(f"column {self.column}" if self.row is not None else self.column)
+            kind = "key" if self.file.casefold().endswith(".toml") else "column"
+            parts.append(f"{kind} {self.column}" if self.row is not None else self.column)
         return ", ".join(parts)
 
 

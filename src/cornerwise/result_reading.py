@@ -75,7 +75,9 @@ def read_result(path: str | os.PathLike[str]) -> Result:
             with place.open("rb") as stream:
                 data = stream.read(MOST_BYTES + 1)
         text = data.decode("utf-8")
-    except (OSError, UnicodeDecodeError) as error:
+    except UnicodeDecodeError:
+        _refuse(file, "no result.json: bytes that are no text", "a result.json written by cornerwise")
+    except OSError as error:
         _refuse(file, f"no readable file ({error})", "a result.json written by cornerwise")
     if len(data) > MOST_BYTES:
         _refuse(file, f"more than {MOST_BYTES / 1e6:.0f} MB", "a result.json written by cornerwise")

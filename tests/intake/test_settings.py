@@ -152,7 +152,7 @@ def test_unknown_keys(key: str, meant: str, tmp_path: Path) -> None:
 def test_a_misspelt_section_is_read_on(section: str, tmp_path: Path) -> None:
     """So the fault inside it is told in the same run."""
     found = problems(folder(tmp_path / "a", f"{BASE}[[{section}s]]\nname = 3\ncell = 3\n"))
-    assert [str(problem.origin) for problem in found[:1]] == [f"campaign.toml, row 3, column {section}s"]
+    assert [str(problem.origin) for problem in found[:1]] == [f"campaign.toml, row 3, key {section}s"]
     assert f"did you mean {section}?" in str(found[0])
     assert [problem.origin.row for problem in found[1:]]  # of what stands in the entry
 
@@ -212,7 +212,6 @@ def test_no_wild_type(tmp_path: Path) -> None:
     [
         (BASE + "seed = \n", 3),
         (BASE + "seed = −1\n", 3),
-        (BASE + 'wild_type = "WT"\n', 3),
         ("wild_type = WT\n" + CHARGE, 1),
         (BASE + "seed = 1,5\n", 3),
         (BASE + "[mutations", 3),
@@ -221,6 +220,38 @@ def test_no_wild_type(tmp_path: Path) -> None:
 def test_a_line_that_is_no_toml(toml: str, row: int, tmp_path: Path) -> None:
     path = folder(tmp_path / "a", toml)
     assert_refused(path, file="campaign.toml", row=row, match="no TOML")
+
+
+@pytest.mark.parametrize(
+    ("more", "row", "key", "first"),
+    [
+        ("seed = 4\nfirst = 2\nseed = [\n5]\n", 5, "seed", 3),
+        ("[mutations]\nx = []\nx = []\n", 5, "mutations.x", 4),
+        ("[mutations]\n[mutations]\n", 4, "mutations", 3),
+        ('[[cycle]]\nname = "a"\n[[cycle]]\nname = "b"\nname = "c"\n', 7, "cycle.name", 6),
+        ("structure.offset = 1\nstructure.offset = 2\n", 4, "structure.offset", 3),
+    ],
+)
+def test_a_key_that_comes_twice(more: str, row: int, key: str, first: int, tmp_path: Path) -> None:
+    path = folder(tmp_path / "a", BASE + more)
+    match = f"the key {key} comes twice, first in row {first}; .*delete one of the two"
+    assert_refused(path, file="campaign.toml", row=row, column=key, match=match)
+
+
+@pytest.mark.parametrize(
+    ("more", "row"),
+    [
+        ('title = "a\nseed = 3\n', 3),
+        ("# a note\n\ntitle = 'a\nseed = 3\n", 5),
+        ('seed = 3\ntitle = """a\n', 4),
+        ('title = "a', 3),
+    ],
+)
+def test_a_text_without_its_closing_quote(more: str, row: int, tmp_path: Path) -> None:
+    path = folder(tmp_path / "a", BASE + more)
+    assert_refused(
+        path, file="campaign.toml", row=row, match="a text without its closing quote.*close the quote"
+    )
 
 
 def test_the_tables_are_read_though_the_settings_are_not(tmp_path: Path) -> None:

@@ -120,6 +120,50 @@ def test_an_open_quote(field: str, tmp_path: Path) -> None:
     assert_refused(path, file="curves.csv", row=34, match="cannot be split.*close the quote")
 
 
+@pytest.mark.parametrize(
+    ("start", "kind", "also"),
+    [
+        (b"\x89PNG\r\n\x1a\n", "a PNG image", False),
+        (b"%PDF-1.7\n", "a PDF document", False),
+        (b"PK\x03\x04", "a ZIP archive or a workbook", True),
+        (b"\xd0\xcf\x11\xe0\xa1\xb1\x1a\xe1", "an old Excel workbook", True),
+    ],
+)
+def test_a_file_that_is_no_text(start: bytes, kind: str, also: bool, tmp_path: Path) -> None:
+    path = folder(tmp_path / "a", curves=start + bytes(range(256)))
+    assert_refused(path, file="curves.csv", match=f"looks like {kind}.*save them as curves.csv")
+    assert ("with the ending .xlsx" in problems(path)[0].remedy) == also
+
+
+TITLES = {
+    "one": ("Cells of May\n", 1),
+    "of several fields": ("Cells of May,,,\n", 1),
+    "with commas": ("Cells, all of them\n\nrecorded in May\n", 1),
+    "below a comment": ("# a note\nCells of May\n", 2),
+}
+
+
+@pytest.mark.parametrize(("title", "row"), TITLES.values(), ids=TITLES)
+def test_titles_above_the_header_are_told_once(title: str, row: int, tmp_path: Path) -> None:
+    match = "'Cells.*above the header.*delete the lines above the header, or begin them with #"
+    assert_refused(folder(tmp_path / "a", curves=title + PLAIN), file="curves.csv", row=row, match=match)
+
+
+def test_what_stands_below_a_title_is_read_with_its_rows(tmp_path: Path) -> None:
+    """Twenty lines above the header are looked over; a fault below keeps its row."""
+    above = "".join(f"note {i}\n" for i in range(20))
+    found = problems(folder(tmp_path / "a", curves=above + PLAIN.replace("0.08", "x", 1)))
+    assert [(one.origin.row, one.origin.column) for one in found] == [(1, None), (24, "charge")]
+    beyond = problems(folder(tmp_path / "b", curves="note\n" + above + PLAIN))
+    assert [one.remedy for one in beyond] == ["delete the lines above the header, or begin them with #"]
+
+
+def test_titles_above_a_header_of_unknown_columns(tmp_path: Path) -> None:
+    curves = "Zellen vom Mai\n" + text_of([["Zelle", "Ladung"], ["c1", "0.5"]], ";")
+    match = "'Zellen vom Mai' above the header"
+    assert_refused(folder(tmp_path / "a", curves=curves), file="curves.csv", row=1, match=match)
+
+
 def test_a_single_column(tmp_path: Path) -> None:
     path = folder(tmp_path / "a", curves=text_of(curve_rows(), "|"))
     assert_refused(path, file="curves.csv", row=1, match="a single column.*commas, semicolons or tabs")

@@ -84,7 +84,7 @@ def test_a_line_begins_with_its_key(statements: dict[str, str], between: list[st
 
 def test_a_fault_of_the_settings_names_its_line(tmp_path: Path) -> None:
     path = folder(tmp_path / "a", '# a note\ntitle = """one \\\nline"""\n' + TOML + "seed = -1\n")
-    assert_refused(path, file="campaign.toml", row=6, column="seed", match="row 6, column seed: found")
+    assert_refused(path, file="campaign.toml", row=6, column="seed", match="row 6, key seed: found")
 
 
 def test_a_missing_key_is_told_at_its_table(tmp_path: Path) -> None:

@@ -342,3 +342,9 @@ def test_a_sheet_with_too_many_rows(tmp_path: Path, monkeypatch: pytest.MonkeyPa
     path = saved(book(tmp_path))
     monkeypatch.setattr(book_room, "MOST_ROWS", 20)
     assert_refused(path, file="book.xlsx, sheet curves", match="33 rows; expected at most")
+
+
+def test_titles_above_the_header_of_a_sheet(tmp_path: Path) -> None:
+    path = saved(book(tmp_path, curves=[["Cells of May"], [], *curve_cells()]))
+    match = "'Cells of May' above the header; .*delete the lines above"
+    assert_refused(path, file="book.xlsx, sheet curves", row=1, match=match)

@@ -17,7 +17,17 @@ from .header import RawTable
 from .package import DamagedBook, Package
 from .sheets import Displayed, Sheets, Unreadable, Value, column_letters
 from .table import SPREADSHEET_ERRORS
-from .text import MOST_ROWS, Record, composed, refuse_empty, refuse_long, tabulate
+from .text import (
+    MOST_ROWS,
+    MOST_TITLES,
+    Record,
+    composed,
+    refuse_empty,
+    refuse_long,
+    refuse_titles,
+    tabulate,
+    titles_above,
+)
 
 TEXT_COLUMNS = (
     "construct", "cell", "batch", "phase", "method", "citation", "name", "mutations", "reason",
@@ -114,6 +124,9 @@ def read_sheet(book: Book, title: str, findings: Findings) -> RawTable | None:
     if not rows or book.rows_of_tables > MOST_ROWS:
         refuse_long(file, f"{book.rows_of_tables} rows", findings) if rows else refuse_empty(file, findings)
         return None
+    if titles := titles_above([_names(values) for _, values in rows[: MOST_TITLES + 1]]):
+        refuse_titles(file, rows[0][0], cell_text(rows[0][1][0]), findings)
+        rows = rows[titles:]
     header = _names(rows[0][1])
     labels = {index for index, name in enumerate(header) if name in TEXT_COLUMNS}
     records: list[Record] = []

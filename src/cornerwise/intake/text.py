@@ -27,6 +27,7 @@ DELIMITERS = {",": "commas", ";": "semicolons", "\t": "tabs"}
 MOST_ROWS = 1_000_000
 MOST_COLUMNS = 16_384
 MOST_FIELDS = 8_000_000  # of a table
+MOST_TITLES = 20  # lines above a header in which it is looked for
 LONGEST_HEADER = 100_000  # letters in which column names are looked for
 
 _MOST_ACCENTS = 30
@@ -42,6 +43,11 @@ _MARKS = (
     (codecs.BOM_UTF16_LE, "utf-16"),
     (codecs.BOM_UTF16_BE, "utf-16"),
 )
+_KINDS = {
+    b"\x89PNG": "a PNG image", b"\xff\xd8\xff": "a JPEG image", b"GIF8": "a GIF image",
+    b"%PDF": "a PDF document", b"PK\x03\x04": "a ZIP archive or a workbook",
+    b"\xd0\xcf\x11\xe0": "an old Excel workbook", b"{\\rtf": "a document of a word processor",
+}  # fmt: skip
 _COLUMN_WORDS = frozenset(
     (
         *("construct", "cell", "batch", "voltage", "charge", "holding", "phase", "median", "sem", "n"),
@@ -65,8 +71,20 @@ def encoding_of(data: bytes) -> str:
     return "utf-8"
 
 
+def _kind_of(data: bytes) -> str | None:
+    """What a file that is no text is, by its first bytes."""
+    return next((kind for start, kind in _KINDS.items() if data.startswith(start)), None)
+
+
 def decode(data: bytes, file: str, findings: Findings) -> str | None:
     """Turn the bytes of a file into text with plain line ends; None when that fails, which is a fault."""
+    if kind := _kind_of(data):
+        findings.add(
+            Origin(file=file), found=f"a file that looks like {kind}", expected="a text file",
+            remedy=f"export the values as text and save them as {file}"
+            + " or, if it is a workbook, with the ending .xlsx" * kind.startswith(("a ZIP", "an old")),
+        )  # fmt: skip
+        return None
     encoding = encoding_of(data)
     try:
         text = data.decode(encoding)
@@ -122,7 +140,7 @@ def split(text: str, file: str, findings: Findings) -> RawTable | None:
     if rows > MOST_ROWS:
         refuse_long(file, f"{rows} rows", findings)
         return None
-    lines = [_without_comment(line) for line in text.split("\n")]
+    lines = _below_titles([_without_comment(line) for line in text.split("\n")], file, findings)
     first = next((line for line in lines if line), "")
     if refused_wide(file, max(map(first.count, DELIMITERS)) + 1, findings):
         return None
@@ -135,7 +153,8 @@ def split(text: str, file: str, findings: Findings) -> RawTable | None:
             refuse_empty(file, findings)
         return None
     if len(records[0][1]) < 2:
-        _refuse_single_column(file, records[0][0], first, findings)
+        below = any(line.count(mark) for line in lines if line for mark in DELIMITERS)
+        (refuse_titles if below else _refuse_single_column)(file, records[0][0], first, findings)
         return None
     return tabulate(records, delimiter, file, findings, lost=lost)
 
@@ -148,13 +167,43 @@ def sniff(header: str) -> str:
     >>> sniff("voltage_mV,E181A;R212Q/c1,E181A;R212Q/c2")
     ','
     """
+    return max(DELIMITERS, key=lambda delimiter: _known_columns(_fields(header, delimiter)))
 
-    def score(delimiter: str) -> tuple[int, int]:
-        fields = next(csv.reader([header[:LONGEST_HEADER]], delimiter=delimiter), [])
-        known = [field for field in fields if field.strip().partition("_")[0].casefold() in _COLUMN_WORDS]
-        return len(known), len(fields)
 
-    return max(DELIMITERS, key=score)
+def _fields(line: str, delimiter: str) -> list[str]:
+    """Fields of a line that is looked at before the table is split."""
+    return next(csv.reader([line[:LONGEST_HEADER]], delimiter=delimiter), [])
+
+
+def _known_columns(fields: Sequence[str]) -> tuple[int, int]:
+    """How many fields begin like a known column, and how many there are."""
+    known = [field for field in fields if field.strip().partition("_")[0].casefold() in _COLUMN_WORDS]
+    return len(known), len(fields)
+
+
+def _below_titles(lines: list[str], file: str, findings: Findings) -> list[str]:
+    """Lines of a table, those above its header taken off, which are a fault; row numbers stay."""
+    filled = [number for number, line in enumerate(lines) if line][: MOST_TITLES + 1]
+    titles = titles_above([_fields(lines[number], sniff(lines[number])) for number in filled])
+    if not titles:
+        return lines
+    refuse_titles(file, filled[0] + 1, lines[filled[0]], findings)
+    header = filled[titles]
+    return [""] * header + lines[header:]
+
+
+def titles_above(rows: Sequence[Sequence[str]]) -> int:
+    """How many of the first rows stand above the header: the first row with a known column, if not the first.
+
+    Examples
+    --------
+    >>> titles_above([["Cells of May"], ["construct", "cell"], ["WT", "c1"]])
+    1
+    >>> titles_above([["Zelle", "Ladung"], ["c1", "1"]])
+    0
+    """
+    counts = [_known_columns(row) for row in rows[: MOST_TITLES + 1]]
+    return next((number for number, (known, fields) in enumerate(counts) if known and fields > 1), 0)
 
 
 def tabulate(
@@ -303,6 +352,16 @@ def refused_large(file: str, fields: int, findings: Findings) -> bool:
             remedy="keep one point per voltage step, not the recorded traces",
         )  # fmt: skip
     return fields > MOST_FIELDS
+
+
+def refuse_titles(file: str, row: int, line: str, findings: Findings) -> None:
+    """Refuse lines above the header."""
+    findings.add(
+        Origin(file=file, row=row),
+        found=f"{shown(line)} above the header",
+        expected="the header first",
+        remedy="delete the lines above the header, or begin them with #",
+    )
 
 
 def _refuse_single_column(file: str, row: int, line: str, findings: Findings) -> None:

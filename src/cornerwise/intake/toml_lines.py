@@ -47,6 +47,57 @@ def lines_of_keys(text: str) -> dict[Path, int]:
     return lines
 
 
+def repeated_key(text: str) -> tuple[str, int, int] | None:
+    r"""Find the first key or table that is set a second time.
+
+    Parameters
+    ----------
+    text : str
+        A text whose statements are TOML one by one, with plain line ends.
+
+    Returns
+    -------
+    tuple of (str, int, int) or None
+        Its name, the parts joined by dots, its line and the line where it was set first.
+
+    Examples
+    --------
+    >>> repeated_key("seed = 3\nsubunits = 4\nseed = 5\n")
+    ('seed', 3, 1)
+    """
+    first: dict[Path, int] = {}
+    entries: dict[Path, int] = {}
+    table: Path = ()
+    for line, statement, values in _statements(text):
+        paths = list(_paths(values))
+        heads = {path[:length] for path in paths for length in range(1, len(path))}
+        here = [(*table, *path) for path in paths if path not in heads]
+        if statement.lstrip().startswith("["):
+            table = _counted(_header(values), entries, begins=statement.lstrip().startswith("[["))
+            here = [table]
+        for path in here:
+            if path in first:
+                return ".".join(part for part in path if isinstance(part, str)), line, first[path]
+            first[path] = line
+    return None
+
+
+def unfinished_line(text: str) -> int:
+    r"""Find the line of the first statement that does not end.
+
+    Examples
+    --------
+    >>> unfinished_line("seed = 3\n\ntitle = 'a\nsubunits = 4\n")
+    3
+    """
+    after = 0
+    for line, statement, _ in _statements(text):
+        after = line + statement.count("\n")
+    lines = text.split("\n")
+    is_blank = (not line.strip() or line.lstrip().startswith("#") for line in lines[after:])
+    return after + 1 + next((number for number, blank in enumerate(is_blank) if not blank), 0)
+
+
 def _statements(text: str) -> Iterator[tuple[int, str, Mapping[str, object]]]:
     """First line, text and values of each statement."""
     gathered: list[str] = []
