@@ -172,9 +172,11 @@ def test_a_count_beside_the_charge_of_one_channel(column: str, tmp_path: Path) -
 @pytest.mark.parametrize("header", ["charge", "charge_uC"])
 def test_a_count_beside_a_charge_without_a_known_unit(header: str, tmp_path: Path) -> None:
     """Only the header is told: whether the count is needless shows once the unit is known."""
-    path = folder(tmp_path / "a", MEASURED, charges=changed(RAW, 1, "charge_pC", header))
     match = "the quantity with its unit, charge_e0, charge_fC, charge_pC or charge_nC"
-    assert_refused(path, file="charges.csv", row=1, column=header, match=match)
+    for number, value in enumerate(("6", "6000", "0.006")):
+        rows = [RAW[0], *([*row[:2], value, *row[3:]] for row in RAW[1:])]
+        path = folder(tmp_path / str(number), MEASURED, charges=changed(rows, 1, "charge_pC", header))
+        assert_refused(path, file="charges.csv", row=1, column=header, match=match)
 
 
 def test_two_raw_units(tmp_path: Path) -> None:

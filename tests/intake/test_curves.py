@@ -167,6 +167,7 @@ def test_lost_minus_signs_are_told_once_a_curve(wide: bool, tmp_path: Path) -> N
         ("WT c2", "did you mean WT/c2"),
         ("WT_c2", "did you mean WT/c2"),
         ("E181A/R212Qc2", "did you mean E181A/R212Q/c2"),
+        ("E181Ac1", "write E181A, a slash and the cell's label"),  # E181A/c1 is another column
         ("WT", "write WT, a slash and the cell's label"),
         ("K95N c2", "the unknown column 'K95N c2'.*delete the column"),  # no other header has it
     ],
@@ -200,7 +201,7 @@ def test_many_curves_that_fall_are_told_once(falling: int, told: int, wide: bool
     if told < falling:
         how_many = "all 8 curves falling" if falling == 8 else "6 curves that fall"
         assert found[0].origin.column == ("voltage_mV" if wide else "charge")
-        assert how_many in found[0].found
+        assert f"{how_many}: WT/c1, WT/c2, E181A/c1, E181A/c2, R212Q/c1 and" in found[0].found
         assert "voltages or charges are inverted" in found[0].remedy
 
 

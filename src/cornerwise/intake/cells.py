@@ -252,10 +252,12 @@ def _refuse_falling(points: Points, falling: Sequence[Curve], *, others: int, fi
             _refuse_shape(curve, "falls", findings)
         return
     how_many = f"{len(falling)} curves that fall" if others else f"all {len(falling)} curves falling"
-    table, first = points.table, falling[0]
+    names = [f"{curve.construct}/{curve.cell}" for curve in falling]
+    more = f" and {len(names) - MOST_FALLING} more" if len(names) > MOST_FALLING else ""
+    table = points.table
     findings.add(
         table.raw.header_origin(table.header("voltage" if points.wide else "charge")),
-        found=f"{how_many}, the first that of the cell {first.construct}/{first.cell}",
+        found=f"{how_many}: {', '.join(names[:MOST_FALLING])}{more}",
         expected=_RISING,
         remedy="voltages or charges are inverted: flip the sign of all charges, or of all voltages, "
         "whichever is turned round",

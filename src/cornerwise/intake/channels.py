@@ -99,6 +99,8 @@ def charge_per_channel(table: Table, of_cells: BoolArray) -> tuple[FloatArray, F
         unit = next((name for name in RAW_UNITS if name == table.unit(RAW)), RAW_UNITS[0])
         with np.errstate(over="ignore"):  # what overflows is impossible, and refused as such
             charge = np.where(is_raw, raw * elementary_charges(unit) / channels, charge)
+    if _is_unclear(table):
+        charge = np.full(len(table), np.nan)
     charge = _possible(table, charge, is_raw)
     return charge, charge * sem / channels
 
@@ -136,13 +138,18 @@ def _channels(table: Table, is_raw: BoolArray) -> FloatArray:
     return np.where(is_raw & ~too_few, channels, np.nan)
 
 
+def _is_unclear(table: Table) -> bool:
+    """Whether a charge beside counts may be a channel's or a cell's: its header, refused, lacks the unit."""
+    return "channels" in table and "charge" in table and table.header("charge") not in CHARGE.headers
+
+
 def _refuse_needless(table: Table) -> None:
     """Refuse channel counts beside what is the charge of one channel; told once without raw charge."""
     found = "a channel count without the cell's charge in fC, pC or nC"
     expected = "nothing beside charge_e0, which is the charge of one channel already"
     remedy = f"delete the count, or give the charge of the whole cell as {RAW_CHARGE.headers[1]}"
-    if "charge" in table and table.header("charge") not in CHARGE.headers:
-        return  # whose charge it is cannot be told before the header is mended, which is asked for
+    if _is_unclear(table):
+        return
     for base in ("channels", "channels_sem"):
         if base in table and "charge" in table and RAW not in table:
             place = table.raw.header_origin(table.header(base))

@@ -61,7 +61,8 @@ def _cell_names(raw: RawTable, findings: Findings) -> dict[int, tuple[str, str] 
     labels = {header.rsplit("/", 1)[0].strip() for header in raw.header if "/" in header} - {""}
     for index, header in enumerate(raw.header):
         if meant := _without_slash(header, labels):
-            names[index] = _refuse_no_slash(raw, header, meant, findings)
+            is_taken = f"{meant[0]}/{meant[1]}" in raw.header or meant in names.values()
+            names[index] = _refuse_no_slash(raw, header, meant, findings, is_taken=is_taken)
         elif "/" in header:
             name = _cell_of(raw, header, findings)
             if name is not None and headers.setdefault(name, header) != header:
@@ -99,9 +100,10 @@ def _without_slash(header: str, labels: Collection[str]) -> tuple[str, str] | No
 
 
 def _refuse_no_slash(
-    raw: RawTable, header: str, meant: tuple[str, str], findings: Findings
+    raw: RawTable, header: str, meant: tuple[str, str], findings: Findings, *, is_taken: bool
 ) -> tuple[str, str] | None:
-    label, cell = meant
+    """Refuse a header whose slash was lost; return the cell it was meant to name, if that is a new one."""
+    label, cell = meant if not is_taken else (meant[0], "")
     remedy = f"did you mean {label}/{cell}?" if cell else f"write {label}, a slash and the cell's label"
     findings.add(
         raw.header_origin(header), found=f"{shown(header)} without a slash before the cell",
