@@ -150,8 +150,24 @@ def test_cells_where_batches_are_not_all_stated(batches: list) -> None:
     found, book = _interaction(made)
     plain = sum(SCALE**2 * np.var(m.median_mv.values, ddof=1) / m.median_mv.n for m in made)
     assert {units.rule for units in found.units} == {"cells"}
+    unstated = all(batch is None for own in batches for batch in own)
+    assert {units.reason for units in found.units} == {"" if unstated else "some cells have no batch"}
     assert found.ledger is book.ledger
     assert found.ledger.spread(found.energy).variance == pytest.approx(plain)
+
+
+def test_cells_where_only_some_show_both_numbers() -> None:
+    made = []
+    for label, mean in zip(LABELS, MEANS, strict=True):
+        days = ["d1", "d1", "d2", "d2"]
+        medians = batched([mean, mean + 1, mean - 1, mean + 2], days)
+        charges = batched([13.0, 13.4, 12.8], days[:3])
+        made.append(measurement(label, medians, charges))
+    found, book = _interaction(made, charge="measured")
+    assert [(u.family, u.rule, u.reason) for u in found.units] == [
+        ("paired cells", "cells", "only some cells show both charge and median")
+    ]
+    assert found.ledger is book.ledger
 
 
 def test_two_halves_that_share_batches_each_are_still_within() -> None:

@@ -95,3 +95,36 @@ def test_an_interval_that_ends_at_a_bound_is_not_outside_it() -> None:
     assert not Interval(1.0, 3.0).outside(-1.0, 1.0)
     assert Interval(1.1, 3.0).outside(-1.0, 1.0)
     assert Interval(-3.0, -1.1).outside(-1.0, 1.0)
+
+
+def test_a_value_at_a_limit_is_not_excluded() -> None:
+    interval = Interval(-1.0, 3.0)
+    assert [interval.excludes(value) for value in (-1.0, 3.0, 0.0, -1.1, 3.1)] == [
+        False, False, False, True, True
+    ]  # fmt: skip
+
+
+def test_welch_satterthwaite_by_hand_and_where_there_is_none() -> None:
+    found = intervals.welch_satterthwaite
+    assert found([1.0, 2.0], [3.0, 5.0]) == pytest.approx(9 / (1 / 3 + 4 / 5))
+    assert found([1.0, 0.0], [3.0, 0.0]) == 3.0  # what adds nothing has no say
+    assert math.isnan(found([1.0, 2.0], [0.0, 4.0]))
+    assert math.isnan(found([math.nan, 1.0], [3.0, 4.0]))
+
+
+def test_percentiles_that_can_be_read_are_not_stretched() -> None:
+    draws = np.random.default_rng(1).gamma(2.0, 1.0, 10_000)
+    found = intervals.expanded_percentile_interval(2.0, draws, math.inf, 0.9)
+    assert found == pytest.approx(np.quantile(draws, [0.05, 0.95]), rel=1e-12)
+
+
+def test_both_sides_are_stretched_alike() -> None:
+    draws = np.random.default_rng(2).gamma(2.0, 1.0, 100)
+    found = intervals.expanded_percentile_interval(2.0, draws, 3.0, 0.95)
+    stretch = stats.t.ppf(0.975, 3) / stats.norm.ppf(0.9)  # ten of a hundred lie beyond the tenth percentile
+    expected = 2.0 + (np.quantile(draws, [0.1, 0.9]) - 2.0) * stretch
+    assert found == pytest.approx(expected, rel=1e-9)
+
+
+def test_no_adjusted_p_value_is_above_one() -> None:
+    assert intervals.adjusted_p_values([0.6, 0.7]) == [1.0, 1.0]

@@ -45,13 +45,20 @@ def test_what_two_quantities_share_is_added_before_it_is_squared() -> None:
 
 def test_budget_shares_add_up_and_come_largest_first() -> None:
     ledger = _ledger(
-        StatedSource(name="small", component=V, mean=0.0, std_uncertainty=3.0),
-        StatedSource(name="large", component=X, mean=0.0, std_uncertainty=4.0),
+        StatedSource(name="a small one", component=V, mean=0.0, std_uncertainty=3.0),
+        StatedSource(name="the large one", component=X, mean=0.0, std_uncertainty=4.0),
+        StatedSource(name="another small one", component=Q, mean=0.0, std_uncertainty=3.0),
     )
-    budget = ledger.budget(linear([(1.0, _one(V)), (1.0, _one(X))]))
-    assert [part.source for part in budget] == ["large", "small"]
-    assert [part.contribution for part in budget] == pytest.approx([4.0, 3.0])
-    assert [part.share for part in budget] == pytest.approx([0.64, 0.36])
+    budget = ledger.budget(linear([(1.0, _one(V)), (1.0, _one(X)), (1.0, _one(Q))]))
+    assert [part.source for part in budget] == ["the large one", "a small one", "another small one"]
+    assert [part.contribution for part in budget] == pytest.approx([4.0, 3.0, 3.0])
+    assert [part.share for part in budget] == pytest.approx([16 / 34, 9 / 34, 9 / 34])
+
+
+def test_what_is_known_exactly_has_no_shares() -> None:
+    ledger = _ledger(StatedSource(name="exact", component=V, mean=1.0, std_uncertainty=0.0))
+    (part,) = ledger.budget(_one(V))
+    assert (part.contribution, part.share) == (0.0, 0.0)
 
 
 def test_cells_that_show_both_numbers_keep_their_covariance() -> None:
@@ -112,7 +119,7 @@ def test_a_covariance_from_two_shared_cells_never_makes_the_variance_negative() 
 def test_one_cell_shows_no_scatter() -> None:
     source = cell_source("one", {V: _sample({"c0": 3.0})})
     assert math.isnan(source.spread([1.0]).variance)
-    assert source.spread([0.0]).variance == 0
+    assert source.spread([0.0]) == (0.0, math.inf)
     assert np.all(source.draws(np.random.default_rng(0), 5) == 3.0)
 
 
