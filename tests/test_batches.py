@@ -69,6 +69,7 @@ def test_complete_blocks_are_least_squares_on_construct_and_batch() -> None:
     found, _ = _interaction(made)
     value, u, _ = _least_squares(made)
     assert [units.rule for units in found.units] == ["within batches"]
+    assert found.units[0].reason == "the constructs share their batches, whose effects cancel"
     assert found.energy.value == pytest.approx(value, rel=1e-10)
     # In complete blocks the sum over constructs of q SS/nu is the pooled variance, whatever each scatter.
     assert math.sqrt(found.ledger.spread(found.energy).variance) == pytest.approx(u, rel=1e-10)
@@ -124,6 +125,7 @@ def test_own_batches_make_batch_means_the_units() -> None:
     found, _ = _interaction(made)
     (units,) = found.units
     assert (units.rule, units.cells, units.batches) == ("batch means", 14, 8)
+    assert units.reason == "the constructs do not share their batches"
     means = [
         [np.mean([v for v, b in zip(m.median_mv.values, m.median_mv.batches, strict=True) if b == name])
          for name in sorted(set(m.median_mv.batches))]
@@ -140,7 +142,7 @@ def test_a_single_batch_at_one_corner_leaves_cells() -> None:
     found, _ = _interaction(_made([["x", "x", "x"], *OWN[1:]]))
     (units,) = found.units
     assert units.rule == "cells"
-    assert "single batch" in units.reason
+    assert units.reason == "a construct has a single batch, so differences between batches are left out"
     assert found.ledger.spread(found.energy).dof > 3
 
 
@@ -154,6 +156,14 @@ def test_cells_where_batches_are_not_all_stated(batches: list) -> None:
     assert {units.reason for units in found.units} == {"" if unstated else "some cells have no batch"}
     assert found.ledger is book.ledger
     assert found.ledger.spread(found.energy).variance == pytest.approx(plain)
+
+
+def test_cells_of_one_batch() -> None:
+    found, book = _interaction(_made([["x", "x", "x"]] * 4))
+    assert [(u.rule, u.batches, u.reason) for u in found.units] == [
+        ("cells", 1, "all cells come from one batch")
+    ]
+    assert found.ledger is book.ledger
 
 
 def test_cells_where_only_some_show_both_numbers() -> None:

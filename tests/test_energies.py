@@ -329,3 +329,28 @@ def test_draws_of_partly_shared_cells_hold_their_covariance() -> None:
     # The mean of the products of resampled means adds cov(mean v, mean q): 2 of 4 x 4 cells.
     expected = KCAL * (means + covariance * (1 - 2 / 16) + covariance * 2 / 16 / (4 / 3))
     assert book.energy_draws("WT").mean() == pytest.approx(expected, abs=0.1)
+
+
+def test_sources_are_called_what_they_are() -> None:
+    made = _summaries((-44.0, -48.0, -54.0, -50.0), (1.2, 1.1, 1.4, 1.0))
+    book = _book(made, charge=StatedCharge(value_e0=13.0, sem_e0=0.5), voltage_offset_mv=1.0)
+    names = {source.name for source in book.ledger.sources}
+    assert "stated total charge, shared by all constructs" in names
+    assert "voltage offset, common to all curves" in names
+    assert book.ledger.draws(Component("voltage offset")).mean() == pytest.approx(0.0, abs=0.15)
+    without = _book(made, charge=StatedCharge(value_e0=13.0, sem_e0=0.5))
+    assert "voltage offset, common to all curves" not in {source.name for source in without.ledger.sources}
+    paired = _book([measurement("WT", cells([-40.0, -41.0, -42.0]), cells([13.0, 12.0, 12.5]))])
+    assert "cells of WT (median and charge)" in {source.name for source in paired.ledger.sources}
+
+
+def test_a_construct_without_a_usable_cell_has_no_energy_and_says_so() -> None:
+    stated = StatedCharge(value_e0=13.0, sem_e0=0.5)
+    book = _book([measurement("WT", {}), measurement("A1G", cells([-40.0, -41.0]))], charge=stated)
+    (source,) = [one for one in book.ledger.sources if Component("median", "WT") in one.components]
+    assert "WT" in source.name
+    energy = book.energies["WT"].energy
+    assert math.isnan(energy.value)
+    assert math.isnan(book.ledger.spread(energy).variance)
+    assert np.isnan(book.ledger.draws(Component("median", "WT"))).all()
+    assert math.isfinite(book.energies["A1G"].energy.value)
