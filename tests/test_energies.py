@@ -354,3 +354,19 @@ def test_a_construct_without_a_usable_cell_has_no_energy_and_says_so() -> None:
     assert math.isnan(book.ledger.spread(energy).variance)
     assert np.isnan(book.ledger.draws(Component("median", "WT"))).all()
     assert math.isfinite(book.energies["A1G"].energy.value)
+
+
+def test_stated_charge_at_a_reference_voltage_in_units_of_kt() -> None:
+    made = [measurement("WT", cells([-40.0, -42.0]), truncation_mv=3.0)]
+    stated = StatedCharge(value_e0=13.0, sem_e0=0.5)
+    book = _book(made, charge=stated, reference_voltage_mv=-60.0, energy_unit="kT", temperature_c=25.0)
+    energy = book.energies["WT"]
+    assert energy.charge_source == "stated"
+    assert energy.median.value == -41.0  # what was extrapolated is an uncertainty, no shift
+    kt_mv = 1.380649e-23 * 298.15 / 1.602176634e-19 * 1000  # exact in the SI, values from memory
+    assert energy.energy.value == pytest.approx(13.0 * (-41.0 + 60.0) / kt_mv, rel=1e-9)
+
+
+def test_no_charge_at_all_is_told_with_the_construct() -> None:
+    with pytest.raises(KeyError, match="no total charge is known for WT or for the wild type"):
+        _book([measurement("WT", cells([-40.0, -42.0]))])
