@@ -13,7 +13,7 @@ from cornerwise.result import Result
 
 require_browser("the report has")
 
-from playwright.sync_api import Browser, Page  # noqa: E402
+from playwright.sync_api import Browser, Page, expect  # noqa: E402
 
 
 @pytest.fixture(scope="module")
@@ -95,20 +95,20 @@ def test_a_link_opens_its_cycle_even_a_filtered_one(opened: Page) -> None:
     assert opened.locator("details.cycle[open]").count() == 0
     opened.locator("#cycle-table tbody a").first.click()
     cycle = opened.locator("details.cycle").first
-    assert cycle.get_attribute("open") is not None
+    expect(cycle).to_have_attribute("open", "")  # once the browser has told the page of the new address
     assert cycle.locator("figure svg").count() >= 3
     assert cycle.locator("figure svg").first.is_visible()
     opened.get_by_label("Name holds").fill("no such cycle")
     assert _shown(opened) == []
     opened.locator("#answer a[href='#cycle-2']").first.click()
-    assert opened.locator("#cycle-2").get_attribute("open") is not None
+    expect(opened.locator("#cycle-2")).to_have_attribute("open", "")
 
 
 def test_a_cycle_opens_by_keyboard(opened: Page) -> None:
     summary = opened.locator("details.cycle summary").first
     summary.focus()
     opened.keyboard.press("Enter")
-    assert opened.locator("details.cycle").first.get_attribute("open") is not None
+    expect(opened.locator("details.cycle").first).to_have_attribute("open", "")
 
 
 def test_open_all_and_close_all(opened: Page, result: Result) -> None:
